@@ -1,0 +1,75 @@
+//! The only place that knows a terminal.
+
+mod args;
+mod progress;
+
+use std::io::Write;
+use std::sync::atomic::{AtomicBool, Ordering};
+use std::sync::Arc;
+use std::time::Instant;
+
+use clap::Parser;
+use kinmark::error::Error;
+use kinmark::pipeline::{self, Finished};
+use kinmark::prepare::prepare;
+use kinmark::report::CAUTION;
+
+use args::{Cli, Command, Locate};
+use progress::Progress;
+
+/// Exit code after Ctrl-C: 128 and the number of the signal.
+const INTERRUPTED: i32 = 130;
+
+/// Parses the command line and does what it says.
+pub fn run() -> Result<(), Error> {
+    match Cli::parse().command {
+        Command::Locate(options) => locate(&options),
+    }
+}
+
+fn locate(options: &Locate) -> Result<(), Error> {
+    let started = Instant::now();
+    let interrupted = stop_on_interrupt();
+    let study = prepare(&options.study, options.request())?;
+    let quiet = study.conduct.quiet;
+    let progress = Progress::new(quiet, interrupted);
+    let finished = pipeline::run(study, &options.out, &progress, started)?;
+    show(&finished, quiet);
+    Ok(())
+}
+
+/// Answers and the caution to standard output, the rest to standard error.
+fn show(finished: &Finished, quiet: bool) {
+    let (mut out, mut err) = (std::io::stdout(), std::io::stderr());
+    // A reader that has closed the pipe has seen enough: no error.
+    let _ = out.write_all(finished.summary.as_bytes());
+    let _ = out.flush();
+    if !quiet {
+        for warning in &finished.warnings {
+            let _ = writeln!(err, "warning: {warning}");
+        }
+        let _ = writeln!(err, "Tables and run record: {}", finished.folder.display());
+        let _ = err.flush();
+    }
+    let _ = writeln!(out, "\n{CAUTION}");
+    let _ = out.flush();
+}
+
+/// Tells a flag when the user presses Ctrl-C, and gives up at once the second time.
+fn stop_on_interrupt() -> Arc<AtomicBool> {
+    let interrupted = Arc::new(AtomicBool::new(false));
+    let flag = Arc::clone(&interrupted);
+    let handler = ctrlc::set_handler(move || {
+        if flag.swap(true, Ordering::Relaxed) {
+            #[allow(clippy::exit)] // The first Ctrl-C asked nicely.
+            std::process::exit(INTERRUPTED);
+        }
+    });
+    if let Err(error) = handler {
+        let _ = writeln!(
+            std::io::stderr(),
+            "warning: Ctrl-C will end the run without tidying up: {error}"
+        );
+    }
+    interrupted
+}

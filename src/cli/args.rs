@@ -1,0 +1,185 @@
+//! The command line: what every option means, its unit and its default.
+
+use std::path::PathBuf;
+
+use clap::{Args, Parser, Subcommand};
+use kinmark::settings::Request;
+
+/// Map homologous brain parcels between two species.
+///
+/// From a connectivity matrix for each species and a table of landmark parcels assumed homologous:
+/// where every other parcel falls in the other species' space, which parcels there correspond, and
+/// how well landmarks fare when they are left out.
+#[derive(Debug, Parser)]
+#[command(
+    name = "kinmark",
+    version,
+    help_expected = true,
+    arg_required_else_help = true,
+    after_help = kinmark::report::CAUTION
+)]
+pub struct Cli {
+    /// What to do.
+    #[command(subcommand)]
+    pub command: Command,
+}
+
+/// The commands.
+#[derive(Debug, Subcommand)]
+pub enum Command {
+    /// Place every parcel of either species in the other's space and write the tables
+    Locate(Locate),
+}
+
+/// Options of `locate`. Each is also a key in the study file's [settings]; the command line wins.
+#[derive(Debug, Args)]
+#[command(after_help = kinmark::report::CAUTION)]
+pub struct Locate {
+    /// Study file (TOML): both species, their matrices, the landmark table
+    pub study: PathBuf,
+
+    /// Folder for the tables; must be absent, empty, or an unfinished run of the same study
+    #[arg(long, value_name = "DIR")]
+    pub out: PathBuf,
+
+    #[command(flatten)]
+    settings: SettingOptions,
+}
+
+/// Settings as text, checked by the same rules as in a study file.
+#[derive(Debug, Args)]
+struct SettingOptions {
+    /// Bootstrap replicates: more make support and standard errors smoother [default: 1000]
+    #[arg(long, value_name = "N", value_parser = checked("replicates"))]
+    replicates: Option<String>,
+
+    /// How many of them also rank, for the rank intervals [default: 200]
+    #[arg(long, value_name = "N", value_parser = checked("rank-replicates"))]
+    rank_replicates: Option<String>,
+
+    /// Seed of every random draw; the same seed gives the same tables [default: 1]
+    #[arg(long, value_name = "N", value_parser = checked("seed"))]
+    seed: Option<String>,
+
+    /// Worker threads; changes no number [default: one for each processor]
+    #[arg(long, value_name = "N", value_parser = checked("threads"))]
+    threads: Option<String>,
+
+    /// Axes of the joint spaces: auto lets left-out landmarks choose [default: auto]
+    #[arg(long, value_name = "auto|N", value_parser = checked("axes"))]
+    axes: Option<String>,
+
+    /// How connectivity becomes coordinates: diffusion map, or principal components of profiles
+    /// [default: diffusion]
+    #[arg(long, value_name = "diffusion|components", value_parser = checked("embedding"))]
+    embedding: Option<String>,
+
+    /// Density exponent of the diffusion map, 0 to 1: 1 removes the density of parcels from it
+    /// [default: 0.5]
+    #[arg(long, value_name = "X", value_parser = checked("density-exponent"))]
+    density_exponent: Option<String>,
+
+    /// Diffusion time in steps: larger keeps coarser structure, 0 weighs all times together
+    /// [default: 1]
+    #[arg(long, value_name = "T", value_parser = checked("diffusion-time"))]
+    diffusion_time: Option<String>,
+
+    /// What ranks counterparts: distance in one joint space, or auto, the better by left-out
+    /// landmarks [default: auto]
+    #[arg(long, value_name = "auto|procrustes|canonical", value_parser = checked("evidence"))]
+    evidence: Option<String>,
+
+    /// Ridge of the canonical correlation in units of the landmarks' mean variance; 0 is classical
+    /// [default: 0.4]
+    #[arg(long, value_name = "X", value_parser = checked("ridge"))]
+    ridge: Option<String>,
+
+    /// How landmark blocks are drawn in a replicate; bayesian never drops one quite
+    /// [default: bayesian]
+    #[arg(long, value_name = "bayesian|ordinary", value_parser = checked("resampling"))]
+    resampling: Option<String>,
+
+    /// Counterparts listed for each parcel [default: 10]
+    #[arg(long, value_name = "N|all", value_parser = checked("top"))]
+    top: Option<String>,
+
+    /// Show no progress and no warnings on the terminal; both stay in run.json
+    #[arg(long)]
+    quiet: bool,
+
+    /// Replace a finished run in DIR, once the new one is complete
+    #[arg(long)]
+    replace: bool,
+
+    /// Write no report page (accepted for later versions; there is no report page yet)
+    #[arg(long)]
+    no_report: bool,
+}
+
+impl Locate {
+    /// The settings asked for.
+    pub fn request(&self) -> Request {
+        let given = &self.settings;
+        let flag = |on: bool| on.then(|| "true".to_owned());
+        let (quiet, replace, no_report) =
+            (flag(given.quiet), flag(given.replace), flag(given.no_report));
+        let mut request = Request::default();
+        for (key, value) in [
+            ("replicates", &given.replicates),
+            ("rank-replicates", &given.rank_replicates),
+            ("seed", &given.seed),
+            ("threads", &given.threads),
+            ("axes", &given.axes),
+            ("embedding", &given.embedding),
+            ("density-exponent", &given.density_exponent),
+            ("diffusion-time", &given.diffusion_time),
+            ("evidence", &given.evidence),
+            ("ridge", &given.ridge),
+            ("resampling", &given.resampling),
+            ("top", &given.top),
+            ("quiet", &quiet),
+            ("replace", &replace),
+            ("no-report", &no_report),
+        ] {
+            if let Some(text) = value {
+                request
+                    .set(key, text)
+                    .expect("values were checked when they were parsed");
+            }
+        }
+        request
+    }
+}
+
+/// A parser that lets a setting's own rules judge the text.
+fn checked(key: &'static str) -> impl Fn(&str) -> Result<String, String> + Clone {
+    move |text| {
+        Request::default()
+            .set(key, text)
+            .map(|()| text.to_owned())
+            .map_err(|e| e.to_string())
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use clap::CommandFactory;
+
+    #[test]
+    fn every_option_is_explained() {
+        Cli::command().debug_assert();
+    }
+
+    #[test]
+    fn every_setting_has_an_option() {
+        let command = Cli::command();
+        let locate = command.find_subcommand("locate").unwrap();
+        for key in Request::KEYS {
+            assert!(
+                locate.get_arguments().any(|a| a.get_long() == Some(key)),
+                "--{key}"
+            );
+        }
+    }
+}

@@ -1,0 +1,143 @@
+//! One species' connectivity: who connects to whom, how strongly, and what was not observed.
+
+use ndarray::Array2;
+use thiserror::Error;
+
+/// Labels, weights or mask of a connectivity that do not fit together.
+#[derive(Debug, Clone, PartialEq, Eq, Error)]
+pub enum ShapeError {
+    /// Another number of labels than rows or columns.
+    #[error("{labels} labels for {entries} {axis}")]
+    Labels {
+        /// `rows` or `columns`.
+        axis: &'static str,
+        /// Labels given.
+        labels: usize,
+        /// Rows or columns of the matrix.
+        entries: usize,
+    },
+    /// A mask of another shape than the weights.
+    #[error("the mask is {found:?}, the matrix {expected:?}")]
+    Mask {
+        /// Shape of the weights.
+        expected: (usize, usize),
+        /// Shape of the mask.
+        found: (usize, usize),
+    },
+}
+
+/// Connection weights between sources (rows) and targets (columns), each with labels of its own.
+///
+/// Row labels and column labels are kept apart because tracer data are rectangular, and a mask
+/// tells entries that were never observed from absent connections.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Connectivity {
+    row_labels: Vec<String>,
+    column_labels: Vec<String>,
+    weights: Array2<f64>,
+    missing: Option<Array2<bool>>,
+}
+
+impl Connectivity {
+    /// Puts labels, weights `(rows, columns)` and the mask of missing entries together; `None`
+    /// means that every entry was observed.
+    ///
+    /// # Errors
+    /// [`ShapeError`] where the sizes disagree.
+    pub fn new(
+        row_labels: Vec<String>,
+        column_labels: Vec<String>,
+        weights: Array2<f64>,
+        missing: Option<Array2<bool>>,
+    ) -> Result<Self, ShapeError> {
+        for (axis, labels, entries) in [
+            ("rows", row_labels.len(), weights.nrows()),
+            ("columns", column_labels.len(), weights.ncols()),
+        ] {
+            if labels != entries {
+                return Err(ShapeError::Labels {
+                    axis,
+                    labels,
+                    entries,
+                });
+            }
+        }
+        if let Some(mask) = &missing {
+            if mask.dim() != weights.dim() {
+                return Err(ShapeError::Mask {
+                    expected: weights.dim(),
+                    found: mask.dim(),
+                });
+            }
+        }
+        Ok(Connectivity {
+            row_labels,
+            column_labels,
+            weights,
+            missing,
+        })
+    }
+
+    /// Labels of the sources.
+    #[must_use]
+    pub fn row_labels(&self) -> &[String] {
+        &self.row_labels
+    }
+
+    /// Labels of the targets.
+    #[must_use]
+    pub fn column_labels(&self) -> &[String] {
+        &self.column_labels
+    }
+
+    /// Weights `(sources, targets)`; entries that are missing hold no meaning.
+    #[must_use]
+    pub fn weights(&self) -> &Array2<f64> {
+        &self.weights
+    }
+
+    /// The weights, to be changed in place; their shape stays.
+    pub(crate) fn weights_mut(&mut self) -> ndarray::ArrayViewMut2<'_, f64> {
+        self.weights.view_mut()
+    }
+
+    /// Whether the entry was never observed, so that its weight must not be read.
+    #[must_use]
+    pub fn is_missing(&self, row: usize, column: usize) -> bool {
+        self.missing.as_ref().is_some_and(|m| m[(row, column)])
+    }
+
+    /// Whether rows and columns are the same parcels in the same order.
+    #[must_use]
+    pub fn is_square(&self) -> bool {
+        self.row_labels == self.column_labels
+    }
+
+    /// Whether the entry is the diagonal, which is not data: a parcel's link with itself.
+    #[must_use]
+    pub fn is_self(&self, row: usize, column: usize) -> bool {
+        if self.is_square() {
+            row == column
+        } else {
+            self.row_labels[row] == self.column_labels[column]
+        }
+    }
+
+    /// The same data with the named rows and columns only, in the order given.
+    #[must_use]
+    pub fn select(&self, rows: &[usize], columns: &[usize]) -> Connectivity {
+        let pick = |labels: &[String], at: &[usize]| at.iter().map(|&i| labels[i].clone()).collect();
+        Connectivity {
+            row_labels: pick(&self.row_labels, rows),
+            column_labels: pick(&self.column_labels, columns),
+            weights: Array2::from_shape_fn((rows.len(), columns.len()), |(i, j)| {
+                self.weights[(rows[i], columns[j])]
+            }),
+            missing: self.missing.as_ref().map(|mask| {
+                Array2::from_shape_fn((rows.len(), columns.len()), |(i, j)| {
+                    mask[(rows[i], columns[j])]
+                })
+            }),
+        }
+    }
+}

@@ -1,0 +1,95 @@
+//! The parcels of one species that take part, and those that cannot.
+
+/// One species' parcels. Those with connections stand in bytewise order of their labels, so that no
+/// result depends on the order of the input and ties go to the first.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Parcels {
+    species: String,
+    labels: Vec<String>,
+    as_listed: Vec<usize>,
+    isolated: Vec<String>,
+}
+
+impl Parcels {
+    /// Takes the species' name, the labels in the order of its file, and for each whether the parcel
+    /// has any connection.
+    #[must_use]
+    pub fn new(species: &str, listed: &[String], connected: &[bool]) -> Self {
+        let mut kept: Vec<usize> = (0..listed.len()).filter(|&i| connected[i]).collect();
+        let in_file = kept.clone();
+        kept.sort_by(|&i, &j| listed[i].as_bytes().cmp(listed[j].as_bytes()));
+        let mut place = vec![usize::MAX; listed.len()];
+        for (at, &i) in kept.iter().enumerate() {
+            place[i] = at;
+        }
+        Parcels {
+            species: species.to_owned(),
+            labels: kept.iter().map(|&i| listed[i].clone()).collect(),
+            as_listed: in_file.into_iter().map(|i| place[i]).collect(),
+            isolated: (0..listed.len())
+                .filter(|&i| !connected[i])
+                .map(|i| listed[i].clone())
+                .collect(),
+        }
+    }
+
+    /// The species' name.
+    #[must_use]
+    pub fn species(&self) -> &str {
+        &self.species
+    }
+
+    /// Labels of the parcels with connections, in bytewise order.
+    #[must_use]
+    pub fn labels(&self) -> &[String] {
+        &self.labels
+    }
+
+    /// Number of parcels with connections.
+    #[must_use]
+    pub fn len(&self) -> usize {
+        self.labels.len()
+    }
+
+    /// Whether no parcel has a connection.
+    #[must_use]
+    pub fn is_empty(&self) -> bool {
+        self.labels.is_empty()
+    }
+
+    /// Indices of the parcels in the order of the input file.
+    #[must_use]
+    pub fn as_listed(&self) -> &[usize] {
+        &self.as_listed
+    }
+
+    /// Labels of parcels without any connection, in the order of the input file.
+    #[must_use]
+    pub fn isolated(&self) -> &[String] {
+        &self.isolated
+    }
+
+    /// Index of a parcel with connections.
+    #[must_use]
+    pub fn find(&self, label: &str) -> Option<usize> {
+        self.labels
+            .binary_search_by(|known| known.as_bytes().cmp(label.as_bytes()))
+            .ok()
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn labels_are_text_in_bytewise_order() {
+        let listed = ["2", "10", "a", "lone", "B"].map(str::to_owned);
+        let parcels = Parcels::new("x", &listed, &[true, true, true, false, true]);
+        assert_eq!(parcels.labels(), ["10", "2", "B", "a"]);
+        assert_eq!(parcels.as_listed(), [1, 0, 3, 2]);
+        assert_eq!(parcels.isolated(), ["lone"]);
+        assert_eq!(parcels.find("2"), Some(1));
+        assert_eq!(parcels.find("lone"), None);
+    }
+}

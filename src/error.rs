@@ -1,0 +1,41 @@
+//! What can stop a run, and the exit code it maps to.
+
+use thiserror::Error;
+
+use crate::input::InputError;
+use crate::report::FolderError;
+use crate::watch::Interrupted;
+
+/// Anything that stops a run.
+#[derive(Debug, Error)]
+pub enum Error {
+    /// A fault in the input.
+    #[error(transparent)]
+    Input(#[from] InputError),
+    /// A folder that cannot take the run.
+    #[error(transparent)]
+    Folder(#[from] FolderError),
+    /// Told to stop.
+    #[error("interrupted; nothing was written")]
+    Interrupted(#[from] Interrupted),
+    /// No worker threads could be started.
+    #[error("cannot start {threads} worker threads: {source}; ask for fewer with --threads")]
+    Threads {
+        /// Threads asked for.
+        threads: usize,
+        /// Why not.
+        source: rayon::ThreadPoolBuildError,
+    },
+}
+
+impl Error {
+    /// The exit code of the program: 2 for input, usage or file system, 130 when interrupted. (A
+    /// fault of the program itself panics, and ends with 1.)
+    #[must_use]
+    pub fn exit_code(&self) -> u8 {
+        match self {
+            Error::Input(_) | Error::Folder(_) | Error::Threads { .. } => 2,
+            Error::Interrupted(_) => 130,
+        }
+    }
+}

@@ -1,0 +1,103 @@
+//! Kinds of evidence for homology, behind one trait: from two species and their landmarks to how
+//! unlike any two parcels are.
+
+mod joint_distance;
+
+pub use joint_distance::JointDistance;
+
+use ndarray::{Array2, Axis};
+use thiserror::Error;
+
+use crate::bootstrap::Stream;
+use crate::domain::{Landmarks, Pair};
+use crate::species::Species;
+
+/// What every kind of evidence may use.
+#[derive(Debug, Clone)]
+pub struct Material<'m> {
+    /// Both species.
+    pub species: Pair<&'m Species>,
+    /// The landmarks.
+    pub landmarks: &'m Landmarks,
+    /// Coordinates of the landmarks in each embedding `(landmarks, axes)`; a landmark of several
+    /// parcels stands at their centroid.
+    pub anchors: Pair<Array2<f64>>,
+}
+
+impl<'m> Material<'m> {
+    /// Finds where the landmarks lie in each embedding.
+    #[must_use]
+    pub fn new(species: Pair<&'m Species>, landmarks: &'m Landmarks) -> Material<'m> {
+        let anchors = Pair::from_fn(|side| {
+            let coordinates = &species[side].embedding.coordinates;
+            let mut anchors = Array2::zeros((landmarks.len(), coordinates.ncols()));
+            for (mut anchor, landmark) in anchors.rows_mut().into_iter().zip(landmarks.list()) {
+                let members = coordinates.select(Axis(0), &landmark.parcels[side]);
+                anchor.assign(
+                    &members
+                        .mean_axis(Axis(0))
+                        .expect("a landmark has at least one parcel on each side"),
+                );
+            }
+            anchors
+        });
+        Material {
+            species,
+            landmarks,
+            anchors,
+        }
+    }
+
+    /// Coordinates of both species' parcels, `(parcels, axes)` each.
+    #[must_use]
+    pub fn embedded(&self) -> Pair<&'m Array2<f64>> {
+        self.species.map(|species| &species.embedding.coordinates)
+    }
+
+    /// The landmarks' own weights, with some blocks counting more or less: `block(b)` times the
+    /// weight from the table, 0 for left out.
+    #[must_use]
+    pub fn weights(&self, block: impl Fn(usize) -> f64) -> Vec<f64> {
+        self.landmarks
+            .list()
+            .iter()
+            .map(|landmark| landmark.weight.get() * block(landmark.block))
+            .collect()
+    }
+}
+
+/// Why a kind of evidence has nothing to say about a study.
+#[derive(Debug, Clone, PartialEq, Eq, Error)]
+#[error("evidence {kind} is unavailable: {why}")]
+pub struct Unavailable {
+    /// The kind.
+    pub kind: String,
+    /// The reason.
+    pub why: String,
+}
+
+/// A kind of evidence.
+pub trait Evidence: Send + Sync {
+    /// Its name in settings and tables.
+    fn name(&self) -> String;
+
+    /// Learns from the landmarks. `weights` holds one number for each, 0 meaning that the landmark
+    /// is left out and nothing about its pairing may be used. Fitting again without a landmark must
+    /// be cheap: left-out figures repeat it for every one.
+    ///
+    /// # Errors
+    /// [`Unavailable`] where this study does not have what the kind needs.
+    fn fit<'m>(
+        &self,
+        material: &Material<'m>,
+        weights: &[f64],
+        chance: &mut Stream,
+    ) -> Result<Box<dyn Fitted + 'm>, Unavailable>;
+}
+
+/// Evidence that has learnt from the landmarks.
+pub trait Fitted: Send + Sync {
+    /// Fills `out[(i, j)]` with how unlike parcel `a[i]` of species a and parcel `b[j]` of species b
+    /// are. Only the order within one fit means anything: less is more alike.
+    fn dissimilarities(&self, a: &[usize], b: &[usize], out: &mut Array2<f64>);
+}

@@ -1,0 +1,63 @@
+//! Distance in a joint space, Procrustes or canonical.
+
+use ndarray::Array2;
+
+use super::{Evidence, Fitted, Material, Unavailable};
+use crate::align::{self, Params};
+use crate::bootstrap::Stream;
+
+/// Squared distance between positions in a joint space.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct JointDistance(pub Params);
+
+impl Evidence for JointDistance {
+    fn name(&self) -> String {
+        format!("{} on {} axes", self.0.alignment, self.0.axes)
+    }
+
+    fn fit<'m>(
+        &self,
+        material: &Material<'m>,
+        weights: &[f64],
+        _chance: &mut Stream,
+    ) -> Result<Box<dyn Fitted + 'm>, Unavailable> {
+        let map = align::fit(self.0, material.anchors.as_ref(), weights).map_err(|e| {
+            Unavailable {
+                kind: self.name(),
+                why: e.to_string(),
+            }
+        })?;
+        let positions = map.positions(material.embedded());
+        Ok(Box::new(Positions {
+            a: positions.a,
+            b_by_axis: positions.b.reversed_axes().as_standard_layout().into_owned(),
+        }))
+    }
+}
+
+/// Positions of both species; those of b axis by axis, so that one parcel of a is compared with many
+/// of b in step.
+struct Positions {
+    a: Array2<f64>,
+    b_by_axis: Array2<f64>,
+}
+
+impl Fitted for Positions {
+    fn dissimilarities(&self, a: &[usize], b: &[usize], out: &mut Array2<f64>) {
+        let others = Array2::from_shape_fn((self.b_by_axis.nrows(), b.len()), |(axis, j)| {
+            self.b_by_axis[(axis, b[j])]
+        });
+        out.fill(0.0);
+        for (mut row, &parcel) in out.rows_mut().into_iter().zip(a) {
+            let row = row.as_slice_mut().expect("rows of `out` are contiguous");
+            for (axis, &x) in self.a.row(parcel).iter().enumerate() {
+                let others = others.row(axis);
+                let others = others.as_slice().expect("gathered row by row above");
+                for (sum, y) in row.iter_mut().zip(others) {
+                    let gap = x - y;
+                    *sum += gap * gap;
+                }
+            }
+        }
+    }
+}

@@ -1,0 +1,124 @@
+//! The number of axes and the alignment that left-out landmarks favour.
+
+use serde::Serialize;
+
+use super::trials::{Trials, Way};
+use crate::align::{Alignment, PerAlignment};
+
+/// Left-out error of one number of axes.
+#[derive(Debug, Clone, Copy, PartialEq, Serialize)]
+pub struct Point {
+    /// Axes of the joint space.
+    pub axes: usize,
+    /// Mean left-out error over blocks: 0 where every counterpart comes first, 1 where all come last.
+    pub error: f64,
+    /// Its standard error over blocks.
+    pub standard_error: f64,
+}
+
+/// Left-out error of one alignment against its number of axes.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct Curve {
+    /// The alignment.
+    pub alignment: Alignment,
+    /// One point for each number of axes that was tried.
+    pub points: Vec<Point>,
+}
+
+/// What a run settles on.
+#[derive(Debug, Clone, Copy, PartialEq, Eq, Serialize)]
+pub struct Choice {
+    /// Axes of each alignment.
+    pub axes: PerAlignment<usize>,
+    /// The alignment whose distances rank.
+    pub evidence: Alignment,
+    /// Index of the way of ranking that this amounts to.
+    #[serde(skip)]
+    pub way: usize,
+}
+
+/// Chooses by left-out landmarks, `without` one block altogether where asked. For each alignment the
+/// fewest axes whose error exceeds the least by no more than one standard error of the difference
+/// (over blocks; the one-standard-error rule of Breiman et al. 1984, on paired differences because
+/// the same blocks judge every number of axes). Then the alignment with the smaller error, unless
+/// `evidence` names one.
+///
+/// # Panics
+/// If `ways` lacks an alignment.
+#[must_use]
+pub fn choose(
+    ways: &[Way],
+    trials: &Trials,
+    evidence: Option<Alignment>,
+    without: Option<usize>,
+) -> Choice {
+    let best = PerAlignment::from_fn(|alignment| {
+        let tried: Vec<(usize, Vec<f64>)> = ways
+            .iter()
+            .enumerate()
+            .filter(|(_, way)| way.alignment() == alignment)
+            .map(|(at, _)| (at, trials.errors(at, without)))
+            .collect();
+        let (_, least) = tried
+            .iter()
+            .min_by(|x, y| mean(&x.1).total_cmp(&mean(&y.1)))
+            .expect("every alignment is tried");
+        let (at, errors) = tried
+            .iter()
+            .find(|(_, errors)| {
+                let excess: Vec<f64> = errors.iter().zip(least).map(|(x, y)| x - y).collect();
+                mean(&excess) <= standard_error(&excess)
+            })
+            .expect("the least itself qualifies");
+        (*at, mean(errors))
+    });
+    let evidence = evidence.unwrap_or_else(|| {
+        if best.procrustes.1 < best.canonical.1 {
+            Alignment::Procrustes
+        } else {
+            Alignment::Canonical
+        }
+    });
+    Choice {
+        axes: PerAlignment::from_fn(|alignment| ways[best[alignment].0].axes()),
+        evidence,
+        way: best[evidence].0,
+    }
+}
+
+impl Curve {
+    /// The whole curve of an alignment, for people to look at.
+    #[must_use]
+    pub fn of(alignment: Alignment, ways: &[Way], trials: &Trials) -> Curve {
+        Curve {
+            alignment,
+            points: ways
+                .iter()
+                .enumerate()
+                .filter(|(_, way)| way.alignment() == alignment)
+                .map(|(at, way)| {
+                    let errors = trials.errors(at, None);
+                    Point {
+                        axes: way.axes(),
+                        error: mean(&errors),
+                        standard_error: standard_error(&errors),
+                    }
+                })
+                .collect(),
+        }
+    }
+}
+
+fn mean(values: &[f64]) -> f64 {
+    values.iter().sum::<f64>() / values.len() as f64
+}
+
+fn standard_error(values: &[f64]) -> f64 {
+    let n = values.len() as f64;
+    if n < 2.0 {
+        return 0.0;
+    }
+    let mean = mean(values);
+    let squares: f64 = values.iter().map(|x| (x - mean).powi(2)).sum();
+    (squares / (n - 1.0) / n).sqrt()
+}

@@ -1,0 +1,274 @@
+//! Every way of ranking, fitted without each block of landmarks and without each pair of blocks.
+
+use ndarray::Array2;
+use rayon::prelude::*;
+use rand::Rng;
+
+use crate::align::{Alignment, Params};
+use crate::bootstrap::{Purpose, Stream};
+use crate::domain::{Landmark, Landmarks, Pair, Seed, Side};
+use crate::evidence::{Evidence, Fitted, JointDistance, Material};
+use crate::place;
+use crate::watch::{Interrupted, Watch};
+
+/// One way of ranking that left-out landmarks are to judge.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct Way(pub Params);
+
+impl Way {
+    /// The alignment whose distances rank.
+    #[must_use]
+    pub fn alignment(&self) -> Alignment {
+        self.0.alignment
+    }
+
+    /// Axes of its joint space.
+    #[must_use]
+    pub fn axes(&self) -> usize {
+        self.0.axes
+    }
+
+    /// The evidence itself.
+    #[must_use]
+    pub fn evidence(&self) -> JointDistance {
+        JointDistance(self.0)
+    }
+}
+
+/// The member of each landmark that is asked for when the landmark is left out, drawn by the seed. A
+/// landmark of several parcels is asked by one of them, since a centroid is less noisy than the
+/// single parcels that users ask about.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Asked(Vec<Pair<usize>>);
+
+impl Asked {
+    /// Draws the members.
+    #[must_use]
+    pub fn draw(landmarks: &Landmarks, seed: Seed) -> Asked {
+        Asked(
+            landmarks
+                .list()
+                .iter()
+                .enumerate()
+                .map(|(at, landmark)| {
+                    let mut chance = Stream::new(seed, Purpose::AskedMember, at as u64);
+                    Pair::from_fn(|side| {
+                        let members = &landmark.parcels[side];
+                        members[chance.gen_range(0..members.len())]
+                    })
+                })
+                .collect(),
+        )
+    }
+
+    /// The member of a landmark that is asked, on each side.
+    #[must_use]
+    pub fn of(&self, landmark: usize) -> Pair<usize> {
+        self.0[landmark]
+    }
+}
+
+/// Where the counterpart of a left-out landmark comes, seen from one species.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub struct Placed {
+    /// Rank of the best member opposite, 1 being right.
+    pub rank: usize,
+    /// Candidates: the other species' open parcels and the landmark's own.
+    pub candidates: usize,
+}
+
+impl Placed {
+    /// Error of the rank on a logarithmic scale: 0 for the first of all, 1 for the last. The log
+    /// makes first against fifth count as much as tenth against fiftieth.
+    #[must_use]
+    pub fn error(self) -> f64 {
+        if self.candidates < 2 {
+            return 0.0;
+        }
+        (self.rank as f64).ln() / (self.candidates as f64).ln()
+    }
+
+    /// Share of the candidates that are no better placed than the counterpart, in (0, 1].
+    #[must_use]
+    pub fn percentile(self) -> f64 {
+        1.0 - (self.rank as f64 - 1.0) / self.candidates as f64
+    }
+}
+
+/// Error of a landmark: the mean of both directions.
+fn error(placed: Pair<Placed>) -> f64 {
+    (placed.a.error() + placed.b.error()) / 2.0
+}
+
+/// What left-out landmarks say about every way of ranking.
+#[derive(Debug, Clone)]
+pub struct Trials {
+    /// `[way][landmark]`, its block left out.
+    pub single: Vec<Vec<Pair<Placed>>>,
+    /// `[way][outer block][landmark]`: error with two blocks left out, the landmark's and the outer
+    /// one; the landmark's own block holds what `single` says. Empty where there is one way only.
+    nested: Vec<Vec<Vec<f64>>>,
+    blocks: Vec<usize>,
+}
+
+impl Trials {
+    /// Mean error of each block under a way of ranking, `without` one block altogether where asked.
+    #[must_use]
+    pub fn errors(&self, way: usize, without: Option<usize>) -> Vec<f64> {
+        let blocks = self.blocks.iter().max().map_or(0, |b| b + 1);
+        let mut sums = vec![(0.0, 0.0); blocks];
+        for (landmark, &block) in self.blocks.iter().enumerate() {
+            let error = match without {
+                None => error(self.single[way][landmark]),
+                Some(outer) => self.nested[way][outer][landmark],
+            };
+            sums[block].0 += error;
+            sums[block].1 += 1.0;
+        }
+        sums.iter()
+            .enumerate()
+            .filter(|(block, _)| without != Some(*block))
+            .map(|(_, (sum, count))| sum / count)
+            .collect()
+    }
+}
+
+/// Fits every way without every block and, where there is a choice to be made, without every pair of
+/// blocks, so that the choice can be repeated without the landmark it is judged by.
+///
+/// # Errors
+/// [`Interrupted`] where the watch says so.
+///
+/// # Panics
+/// If a way cannot be fitted, which the checks on landmarks rule out.
+pub fn run(
+    material: &Material<'_>,
+    ways: &[Way],
+    open: &Pair<Vec<usize>>,
+    asked: &Asked,
+    seed: Seed,
+    watch: &dyn Watch,
+) -> Result<Trials, Interrupted> {
+    let landmarks = material.landmarks;
+    let blocks = landmarks.blocks();
+    let needs_nesting = ways.len() > 1 && blocks > 3;
+    let pairs: Vec<(usize, usize)> = (0..blocks)
+        .flat_map(|i| (i..blocks).map(move |j| (i, j)))
+        .filter(|(i, j)| i == j || needs_nesting)
+        .collect();
+    watch.begin("left-out landmarks", pairs.len());
+    let placed: Vec<Vec<Vec<(usize, Pair<Placed>)>>> = pairs
+        .par_iter()
+        .map(|&(i, j)| {
+            let found = if watch.interrupted() {
+                Vec::new()
+            } else {
+                let weights = material.weights(|b| if b == i || b == j { 0.0 } else { 1.0 });
+                ways.iter()
+                    .map(|way| {
+                        let index = (i * blocks + j) as u64;
+                        let mut chance = Stream::new(seed, Purpose::EvidenceLeftOut, index);
+                        let fitted = way
+                            .evidence()
+                            .fit(material, &weights, &mut chance)
+                            .expect("three landmarks or more remain, with checked weights");
+                        landmarks
+                            .list()
+                            .iter()
+                            .enumerate()
+                            .filter(|(_, l)| l.block == i || l.block == j)
+                            .map(|(at, l)| (at, place_one(&*fitted, l, asked.of(at), open)))
+                            .collect()
+                    })
+                    .collect()
+            };
+            watch.advance(1);
+            found
+        })
+        .collect();
+    watch.end();
+    if watch.interrupted() {
+        return Err(Interrupted);
+    }
+
+    let nobody = Placed {
+        rank: 1,
+        candidates: 1,
+    };
+    let mut single = vec![
+        vec![
+            Pair {
+                a: nobody,
+                b: nobody
+            };
+            landmarks.len()
+        ];
+        ways.len()
+    ];
+    let mut nested = vec![vec![vec![0.0; landmarks.len()]; blocks]; ways.len()];
+    for (&(i, j), by_way) in pairs.iter().zip(&placed) {
+        for (way, found) in by_way.iter().enumerate() {
+            for &(landmark, placed) in found {
+                if i == j {
+                    single[way][landmark] = placed;
+                }
+                let own = landmarks.list()[landmark].block;
+                let outer = if own == i { j } else { i };
+                nested[way][outer][landmark] = error(placed);
+            }
+        }
+    }
+    if !needs_nesting {
+        // With three blocks no second one can be spared, so the choice is judged as it was made.
+        for (way, by_outer) in nested.iter_mut().enumerate() {
+            for errors in by_outer {
+                for (landmark, e) in errors.iter_mut().enumerate() {
+                    *e = error(single[way][landmark]);
+                }
+            }
+        }
+    }
+    Ok(Trials {
+        single,
+        nested,
+        blocks: landmarks.list().iter().map(|l| l.block).collect(),
+    })
+}
+
+/// Rank of a left-out landmark's counterpart, both ways.
+fn place_one(
+    fitted: &dyn Fitted,
+    landmark: &Landmark,
+    asked: Pair<usize>,
+    open: &Pair<Vec<usize>>,
+) -> Pair<Placed> {
+    Pair::from_fn(|from| {
+        let to = from.opposite();
+        let mut candidates = [&open[to][..], &landmark.parcels[to][..]].concat();
+        candidates.sort_unstable();
+        let question = [asked[from]];
+        let dissimilarities: Vec<f64> = match from {
+            Side::A => {
+                let mut out = Array2::zeros((1, candidates.len()));
+                fitted.dissimilarities(&question, &candidates, &mut out);
+                out.into_iter().collect()
+            }
+            Side::B => {
+                let mut out = Array2::zeros((candidates.len(), 1));
+                fitted.dissimilarities(&candidates, &question, &mut out);
+                out.into_iter().collect()
+            }
+        };
+        let rank = candidates
+            .iter()
+            .enumerate()
+            .filter(|(_, candidate)| landmark.parcels[to].contains(candidate))
+            .map(|(at, _)| place::rank(&dissimilarities, at))
+            .min()
+            .expect("a landmark has at least one parcel on each side");
+        Placed {
+            rank,
+            candidates: candidates.len(),
+        }
+    })
+}

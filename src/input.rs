@@ -1,0 +1,17 @@
+//! Files to domain types. Every fault names file, line, column and parcel, and says what to do.
+
+mod delimited;
+mod error;
+mod landmark_table;
+mod matrix;
+mod nearest;
+mod sides;
+mod source;
+mod study_file;
+
+pub use error::{InputError, Place, Problem};
+pub use landmark_table::read as read_landmarks;
+pub use matrix::read as read_matrix;
+pub use nearest::{nearest, nearest_few};
+pub use source::{InputFile, Source};
+pub use study_file::{read as read_study_file, SpeciesFile, StudyFile};

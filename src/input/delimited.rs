@@ -1,0 +1,147 @@
+//! Text tables with commas, semicolons or tabs between cells.
+
+use csv::StringRecord;
+
+use super::error::{InputError, Place, Problem};
+use super::source::Source;
+
+/// What separates the cells of a table.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Separator {
+    /// `,`
+    Comma,
+    /// `;`
+    Semicolon,
+    /// A tab.
+    Tab,
+}
+
+impl Separator {
+    const ALL: [Separator; 3] = [Separator::Comma, Separator::Semicolon, Separator::Tab];
+
+    fn byte(self) -> u8 {
+        match self {
+            Separator::Comma => b',',
+            Separator::Semicolon => b';',
+            Separator::Tab => b'\t',
+        }
+    }
+
+    /// The separator in words, for messages.
+    pub fn name(self) -> &'static str {
+        match self {
+            Separator::Comma => "(comma)",
+            Separator::Semicolon => "(semicolon)",
+            Separator::Tab => "(tab)",
+        }
+    }
+
+    /// The one that occurs most often outside quotes in the first line.
+    fn of(text: &str) -> Separator {
+        let first = text.lines().find(|l| !l.trim().is_empty()).unwrap_or("");
+        let count = |separator: Separator| {
+            let mut quoted = false;
+            first
+                .bytes()
+                .filter(|b| {
+                    quoted ^= *b == b'"';
+                    !quoted && *b == separator.byte()
+                })
+                .count()
+        };
+        // `max_by_key` keeps the last of equals; commas are the commonest, so they come last.
+        Separator::ALL
+            .into_iter()
+            .rev()
+            .max_by_key(|s| count(*s))
+            .unwrap_or(Separator::Comma)
+    }
+}
+
+/// One row of a table: its line in the file and its cells, without surrounding blanks.
+#[derive(Debug, Clone)]
+pub struct Row {
+    /// Line the row starts on, counted from 1.
+    pub line: u64,
+    /// The cells.
+    pub cells: StringRecord,
+}
+
+/// A table as read: a header and rows of the same width.
+#[derive(Debug)]
+pub struct Table {
+    /// What separated the cells.
+    pub separator: Separator,
+    /// The first row.
+    pub header: Row,
+    /// All others.
+    pub rows: Vec<Row>,
+}
+
+/// Splits a text into rows, all as wide as the header.
+///
+/// # Errors
+/// [`InputError`] for a single column or a ragged row.
+pub fn parse(source: &Source) -> Result<Table, InputError> {
+    let separator = Separator::of(&source.text);
+    let mut reader = csv::ReaderBuilder::new()
+        .has_headers(false)
+        .flexible(true)
+        .delimiter(separator.byte())
+        .trim(csv::Trim::All)
+        .from_reader(source.text.as_bytes());
+    let mut rows = Vec::new();
+    let mut cells = StringRecord::new();
+    loop {
+        match reader.read_record(&mut cells) {
+            Ok(false) => break,
+            Ok(true) => rows.push(Row {
+                line: cells.position().map_or(0, csv::Position::line),
+                cells: cells.clone(),
+            }),
+            Err(e) => {
+                return Err(InputError::new(
+                    Place::file(source.path()),
+                    Problem::Unreadable(e.to_string()),
+                ))
+            }
+        }
+    }
+    // A line of separators only is what spreadsheets leave below a table.
+    rows.retain(|row| row.cells.iter().any(|c| !c.is_empty()));
+    let mut rows = rows.into_iter();
+    let Some(header) = rows.next() else {
+        return Err(InputError::new(
+            Place::file(source.path()),
+            Problem::EmptyFile,
+        ));
+    };
+    if header.cells.len() < 2 {
+        return Err(InputError::new(
+            Place::line(source.path(), header.line),
+            Problem::OneColumn,
+        ));
+    }
+    let rows: Vec<Row> = rows.collect();
+    for row in &rows {
+        if row.cells.len() != header.cells.len() {
+            let place = Place::line(source.path(), row.line);
+            return Err(InputError::new(
+                match row.cells.get(0) {
+                    Some(label) if !label.is_empty() => place.parcel(label),
+                    _ => place,
+                },
+                Problem::Ragged {
+                    expected: header.cells.len(),
+                    found: row.cells.len(),
+                    separator: separator.name(),
+                },
+            ));
+        }
+    }
+    Ok(Table {
+        separator,
+        header,
+        rows,
+    })
+}

@@ -1,0 +1,363 @@
+//! What can be wrong with an input file: where, what was expected, what came, what to do.
+
+use std::fmt;
+use std::path::{Path, PathBuf};
+
+use crate::domain::Side;
+
+/// A place in an input file, as exactly as it is known.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct Place {
+    /// The file.
+    pub file: PathBuf,
+    /// Line, counted from 1.
+    pub line: Option<u64>,
+    /// Column of a table or character of a line, counted from 1.
+    pub column: Option<usize>,
+    /// Parcel or landmark the entry belongs to.
+    pub parcel: Option<String>,
+}
+
+impl Place {
+    /// A whole file.
+    #[must_use]
+    pub fn file(file: &Path) -> Self {
+        Place {
+            file: file.to_path_buf(),
+            line: None,
+            column: None,
+            parcel: None,
+        }
+    }
+
+    /// A line of a file.
+    #[must_use]
+    pub fn line(file: &Path, line: u64) -> Self {
+        Place {
+            line: Some(line),
+            ..Place::file(file)
+        }
+    }
+
+    /// The same line, at a column.
+    #[must_use]
+    pub fn column(self, column: usize) -> Self {
+        Place {
+            column: Some(column),
+            ..self
+        }
+    }
+
+    /// The same place, naming the parcel or landmark.
+    #[must_use]
+    pub fn parcel(self, parcel: &str) -> Self {
+        Place {
+            parcel: Some(parcel.to_owned()),
+            ..self
+        }
+    }
+}
+
+impl fmt::Display for Place {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        write!(f, "{}", self.file.display())?;
+        if let Some(line) = self.line {
+            write!(f, ", line {line}")?;
+        }
+        if let Some(column) = self.column {
+            write!(f, ", column {column}")?;
+        }
+        if let Some(parcel) = &self.parcel {
+            write!(f, " ({parcel})")?;
+        }
+        Ok(())
+    }
+}
+
+/// A fault in an input file.
+#[derive(Debug, Clone, PartialEq, thiserror::Error)]
+#[error("{place}: {problem}")]
+pub struct InputError {
+    /// Where.
+    pub place: Place,
+    /// What.
+    pub problem: Problem,
+}
+
+impl InputError {
+    /// Puts place and problem together.
+    #[must_use]
+    pub fn new(place: Place, problem: Problem) -> Self {
+        InputError { place, problem }
+    }
+}
+
+/// What is wrong. The wording of every message lives here.
+#[derive(Debug, Clone, PartialEq, thiserror::Error)]
+pub enum Problem {
+    /// No such file.
+    #[error("there is no such file; check the path (in a study file it is relative to that file's folder)")]
+    NotFound,
+    /// A folder stands where a file was expected.
+    #[error("expected a file, found a folder; name a file in it")]
+    IsFolder,
+    /// The system refused to read it.
+    #[error("cannot be read: {0}")]
+    Unreadable(String),
+    /// Nothing in it.
+    #[error("the file is empty; expected a header line and data")]
+    EmptyFile,
+    /// UTF-16 text.
+    #[error("expected UTF-8 text, found UTF-16; save the file again as UTF-8 (in a spreadsheet: CSV UTF-8)")]
+    Utf16,
+    /// Bytes that are no text.
+    #[error("expected UTF-8 text, found bytes that are none; save the file as CSV in UTF-8")]
+    NotText,
+    /// A study file that is no TOML.
+    #[error("not valid TOML: {0}")]
+    Toml(String),
+    /// A key the study file does not know.
+    #[error("unknown key {found:?} in {table}; did you mean {nearest:?}? Known here: {known}")]
+    UnknownKey {
+        /// The key.
+        found: String,
+        /// Table it stands in.
+        table: String,
+        /// Most similar known key.
+        nearest: String,
+        /// All known keys.
+        known: String,
+    },
+    /// A key that must be there is not.
+    #[error("{table} lacks the key {key:?}; add a line such as: {example}")]
+    MissingKey {
+        /// The key.
+        key: &'static str,
+        /// Table it belongs in.
+        table: String,
+        /// A line that would do.
+        example: String,
+    },
+    /// A value of the wrong type or out of range.
+    #[error("{key} must be {expected}, found {found}")]
+    BadValue {
+        /// The key.
+        key: String,
+        /// What it must be.
+        expected: String,
+        /// What came.
+        found: String,
+    },
+    /// A value outside a fixed list.
+    #[error("unknown value {found:?} for {key}; did you mean {nearest:?}? Known: {known}")]
+    UnknownValue {
+        /// The key.
+        key: String,
+        /// The value.
+        found: String,
+        /// Most similar known value.
+        nearest: String,
+        /// All known values.
+        known: String,
+    },
+    /// A transform that does not suit the weights.
+    #[error("transform {transform:?} cannot be used on weights {weights:?}: {why}; leave the key out for the default")]
+    TransformMismatch {
+        /// The transform asked for.
+        transform: String,
+        /// The kind of weights.
+        weights: String,
+        /// The reason.
+        why: &'static str,
+    },
+    /// Both species carry one name.
+    #[error("both species are called {0:?}; give them different names, which the tables use to tell them apart")]
+    SameName(String),
+    /// A row with another number of cells than the header.
+    #[error("expected {expected} cells as in the header, found {found}; fill or remove cells, and quote labels that contain the separator {separator}")]
+    Ragged {
+        /// Cells of the header.
+        expected: usize,
+        /// Cells of this row.
+        found: usize,
+        /// The separator in use, in words.
+        separator: &'static str,
+    },
+    /// Only one column: no separator recognised.
+    #[error("found a single column; expected cells separated by commas, semicolons or tabs")]
+    OneColumn,
+    /// A cell that is no number.
+    #[error("expected a number, found {0:?}; remove text and units from the matrix")]
+    NotANumber(String),
+    /// A number with a decimal comma.
+    #[error("expected a number with a decimal point, found {0:?}; write decimal points instead of commas")]
+    DecimalComma(String),
+    /// An infinite number.
+    #[error("expected a finite number, found {0:?}; for log10 weights leave absent connections out of the logarithm")]
+    Infinite(String),
+    /// NaN, NA or an empty cell.
+    #[error("expected a number, found {0}; missing entries are not read yet: fill in the value, or remove the parcel's row and column")]
+    Missing(String),
+    /// A negative count, fraction or ordinal.
+    #[error("expected a weight of zero or more ({weights}), found {found}; if negative weights are meant, say weights = \"correlations\", \"log10\" or \"other\"")]
+    Negative {
+        /// The kind of weights.
+        weights: String,
+        /// The weight.
+        found: f64,
+    },
+    /// Rows and columns differ in number.
+    #[error("expected a square matrix, found {rows} rows and {columns} columns of data; every parcel needs a row and a column")]
+    NotSquare {
+        /// Rows of data.
+        rows: usize,
+        /// Columns of data.
+        columns: usize,
+    },
+    /// An empty label.
+    #[error("expected a parcel label, found an empty cell; every row and column needs a label")]
+    EmptyLabel,
+    /// A label that came before.
+    #[error("the label {label:?} came before, at {first}; every parcel needs a label of its own")]
+    DuplicateLabel {
+        /// The label.
+        label: String,
+        /// Where it came first.
+        first: String,
+    },
+    /// A row label that no column carries, or the reverse.
+    #[error("{axis} label {label:?} is no {other} label{}; rows and columns must name the same parcels", hint(near))]
+    LabelMismatch {
+        /// `row` or `column`.
+        axis: &'static str,
+        /// The other of the two.
+        other: &'static str,
+        /// The label.
+        label: String,
+        /// Near spellings.
+        near: Vec<String>,
+    },
+    /// No connection at all.
+    #[error("every weight off the diagonal is zero; expected at least some connections")]
+    AllZero,
+    /// Too few parcels to embed.
+    #[error("{found} parcels with connections, at least {needed} are needed")]
+    TooFewParcels {
+        /// Parcels with a connection.
+        found: usize,
+        /// Parcels needed.
+        needed: usize,
+    },
+    /// A table without a column it needs.
+    #[error("the table lacks the column {missing:?}; found {found}. Expected landmark,a,b and optionally weight, block, basis")]
+    MissingColumn {
+        /// The column.
+        missing: &'static str,
+        /// Columns found.
+        found: String,
+    },
+    /// A column that looks like a slip for a known one.
+    #[error("unknown column {found:?}; did you mean {nearest:?}? Rename or remove it")]
+    UnknownColumn {
+        /// The column.
+        found: String,
+        /// Most similar known column.
+        nearest: String,
+    },
+    /// A landmark names a parcel its species does not have.
+    #[error("species {} ({species}) has no parcel {parcel:?}{}; use a label of its matrix", side.letter(), hint(near))]
+    UnknownParcel {
+        /// The species.
+        side: Side,
+        /// Its name.
+        species: String,
+        /// The parcel.
+        parcel: String,
+        /// Near spellings.
+        near: Vec<String>,
+    },
+    /// A parcel that an earlier landmark uses.
+    #[error("parcel {parcel:?} of species {} is already part of landmark {landmark:?} at line {line}; a parcel belongs to one landmark at most", side.letter())]
+    ParcelTwice {
+        /// The species.
+        side: Side,
+        /// The parcel.
+        parcel: String,
+        /// The landmark that has it.
+        landmark: String,
+        /// Its line.
+        line: u64,
+    },
+    /// A landmark name that came before.
+    #[error("landmark {name:?} came before, at line {line}; give each landmark one row with a name of its own")]
+    LandmarkTwice {
+        /// The name.
+        name: String,
+        /// Line of the first.
+        line: u64,
+    },
+    /// A landmark row without name or parcel.
+    #[error("expected {0}, found an empty cell; fill it in or remove the row")]
+    EmptyCell(&'static str),
+    /// A landmark weight outside (0, 1].
+    #[error("expected a weight above 0 and at most 1, found {0:?}; leave the cell empty for 1")]
+    LandmarkWeight(String),
+    /// Fewer landmarks than any alignment needs.
+    #[error("found {found} landmarks, at least {needed} are needed; add rows")]
+    TooFewLandmarks {
+        /// Landmarks found.
+        found: usize,
+        /// Landmarks needed.
+        needed: usize,
+    },
+    /// Fewer independent landmarks than axes + 1.
+    #[error("{found} landmarks{} cannot fix {axes} axes: at least {} are needed; ask for at most {} axes or add landmarks", blocks(*found, *in_blocks), axes + 1, in_blocks - 1)]
+    FewerLandmarksThanAxes {
+        /// Landmarks found.
+        found: usize,
+        /// Blocks they form.
+        in_blocks: usize,
+        /// Axes asked for.
+        axes: usize,
+    },
+    /// A landmark parcel without any connection.
+    #[error("landmark parcel {parcel:?} of species {} has no connection at all, so nothing can be anchored to it; remove it from the landmark", side.letter())]
+    LandmarkIsolated {
+        /// The species.
+        side: Side,
+        /// The parcel.
+        parcel: String,
+    },
+    /// More axes than the matrix yields.
+    #[error("{axes} axes were asked for, but the connectivity of species {} yields only {available}; ask for fewer", side.letter())]
+    TooManyAxes {
+        /// The species.
+        side: Side,
+        /// Axes asked for.
+        axes: usize,
+        /// Axes it has.
+        available: usize,
+    },
+    /// The multi-scale diffusion time on a disconnected affinity.
+    #[error("diffusion-time 0 (all scales) needs a connected affinity, but that of species {} falls apart; set diffusion-time to 1 or more", side.letter())]
+    Disconnected {
+        /// The species.
+        side: Side,
+    },
+}
+
+fn hint(near: &[String]) -> String {
+    if near.is_empty() {
+        return String::new();
+    }
+    let words: Vec<String> = near.iter().map(|w| format!("{w:?}")).collect();
+    format!(" (did you mean {}?)", words.join(" or "))
+}
+
+fn blocks(landmarks: usize, blocks: usize) -> String {
+    if landmarks == blocks {
+        String::new()
+    } else {
+        format!(" in {blocks} blocks")
+    }
+}

@@ -1,0 +1,341 @@
+//! The study file: which matrices, which landmarks, which settings.
+
+use std::path::{Path, PathBuf};
+
+use toml_edit::{Document, Item, TableLike};
+
+use super::error::{InputError, Place, Problem};
+use super::nearest::nearest;
+use super::source::{InputFile, Source};
+use crate::domain::{Choice, Pair, Share, Side, Transform, WeightKind};
+use crate::settings::{BadSetting, Request};
+use crate::affinity::Likeness;
+
+/// One species as its study file describes it.
+#[derive(Debug, Clone, PartialEq)]
+pub struct SpeciesFile {
+    /// Its name, used in every table.
+    pub name: String,
+    /// Its connectivity.
+    pub matrix: PathBuf,
+    /// What the weights measure.
+    pub weights: WeightKind,
+    /// Transform asked for.
+    pub transform: Option<Transform>,
+    /// Likeness of profiles asked for.
+    pub likeness: Option<Likeness>,
+    /// Share of each profile kept, where asked for.
+    pub strongest: Option<Share>,
+}
+
+/// A study as its file describes it; paths are resolved, nothing else has been read.
+#[derive(Debug, Clone, PartialEq)]
+pub struct StudyFile {
+    /// The file itself.
+    pub file: InputFile,
+    /// Title for people.
+    pub title: String,
+    /// The landmark table.
+    pub landmarks: PathBuf,
+    /// Both species.
+    pub species: Pair<SpeciesFile>,
+    /// The `[settings]`.
+    pub request: Request,
+}
+
+const TOP_KEYS: &[&str] = &["title", "landmarks", "species", "settings"];
+const SPECIES_KEYS: &[&str] = &[
+    "name",
+    "matrix",
+    "weights",
+    "transform",
+    "affinity",
+    "strongest",
+];
+
+/// Reads and checks a study file.
+///
+/// # Errors
+/// [`InputError`] for anything but TOML with the keys described in docs/formats.md.
+pub fn read(path: &Path) -> Result<StudyFile, InputError> {
+    let source = Source::read(path)?;
+    let document = Document::parse(source.text.as_str()).map_err(|e| {
+        let place = e.span().map_or_else(
+            || Place::file(path),
+            |span| source_place(path, &source.text, span.start),
+        );
+        InputError::new(place, Problem::Toml(e.message().replace('\n', "; ")))
+    })?;
+    let reader = Reader {
+        path,
+        text: &source.text,
+    };
+    let top = Table {
+        reader: &reader,
+        name: "the study file".to_owned(),
+        table: document.as_table(),
+        start: 0,
+    };
+    top.only(TOP_KEYS)?;
+    let folder = path.parent().unwrap_or(Path::new(""));
+
+    let species = top.table("species", "[species.a]")?;
+    species.only(&["a", "b"])?;
+    let species_files = Pair::try_from_fn(|side: Side| {
+        let example = format!("[species.{}]", side.letter());
+        species_file(&species.table(side.letter(), &example)?, folder)
+    })?;
+    if species_files.a.name == species_files.b.name {
+        let b = species.table("b", "[species.b]")?;
+        return Err(InputError::new(
+            b.place_of("name"),
+            Problem::SameName(species_files.a.name),
+        ));
+    }
+    let mut request = Request::default();
+    if top.has("settings") {
+        let settings = top.table("settings", "[settings]")?;
+        settings.only(Request::KEYS)?;
+        for key in Request::KEYS {
+            if let Some(text) = settings.scalar(key)? {
+                request
+                    .set(key, &text)
+                    .map_err(|e| InputError::new(settings.place_of(key), bad_setting(e)))?;
+            }
+        }
+    }
+    Ok(StudyFile {
+        title: top.text("title", "title = \"My study\"")?,
+        landmarks: folder.join(top.text("landmarks", "landmarks = \"landmarks.csv\"")?),
+        species: species_files,
+        request,
+        file: source.file,
+    })
+}
+
+fn species_file(table: &Table<'_>, folder: &Path) -> Result<SpeciesFile, InputError> {
+    table.only(SPECIES_KEYS)?;
+    let weights: WeightKind = table
+        .choice("weights")?
+        .ok_or_else(|| table.missing("weights", "weights = \"counts\""))?;
+    let transform: Option<Transform> = table.choice("transform")?;
+    if let Some(why) = transform.and_then(|t| t.mismatch(weights)) {
+        return Err(InputError::new(
+            table.place_of("transform"),
+            Problem::TransformMismatch {
+                transform: transform.map(|t| t.to_string()).unwrap_or_default(),
+                weights: weights.to_string(),
+                why,
+            },
+        ));
+    }
+    let strongest = match table.scalar("strongest")? {
+        None => None,
+        Some(text) => Some(
+            text.parse::<f64>()
+                .ok()
+                .and_then(|x| Share::new(x).ok())
+                .ok_or_else(|| table.bad_value("strongest", "a share above 0 and at most 1"))?,
+        ),
+    };
+    let name = table.text("name", "name = \"My species\"")?;
+    if name.trim().is_empty() {
+        return Err(table.bad_value("name", "a name"));
+    }
+    Ok(SpeciesFile {
+        name,
+        matrix: folder.join(table.text("matrix", "matrix = \"matrix.csv\"")?),
+        weights,
+        transform,
+        likeness: table.choice("affinity")?,
+        strongest,
+    })
+}
+
+/// The wording for a bad setting in a file.
+fn bad_setting(error: BadSetting) -> Problem {
+    match error {
+        BadSetting::UnknownKey(found) => Problem::UnknownKey {
+            nearest: nearest(&found, Request::KEYS.iter().copied())
+                .unwrap_or_default()
+                .to_owned(),
+            found,
+            table: "[settings]".to_owned(),
+            known: Request::KEYS.join(", "),
+        },
+        BadSetting::Value {
+            key,
+            expected,
+            found,
+        } => Problem::BadValue {
+            key: key.to_owned(),
+            expected: expected.to_owned(),
+            found,
+        },
+        BadSetting::Choice { key, found, known } => Problem::UnknownValue {
+            key: key.to_owned(),
+            nearest: nearest(&found, known.iter().copied())
+                .unwrap_or_default()
+                .to_owned(),
+            found,
+            known: known.join(", "),
+        },
+    }
+}
+
+/// The file a table was read from, for places in messages.
+struct Reader<'s> {
+    path: &'s Path,
+    text: &'s str,
+}
+
+fn source_place(path: &Path, text: &str, at: usize) -> Place {
+    let before = &text[..at.min(text.len())];
+    let line = before.bytes().filter(|b| *b == b'\n').count() as u64 + 1;
+    let column = before
+        .rsplit('\n')
+        .next()
+        .map_or(0, |line| line.chars().count())
+        + 1;
+    Place::line(path, line).column(column)
+}
+
+/// A table of the study file, with what is needed to say where a fault is.
+struct Table<'s> {
+    reader: &'s Reader<'s>,
+    name: String,
+    table: &'s dyn TableLike,
+    start: usize,
+}
+
+impl<'s> Table<'s> {
+    fn has(&self, key: &str) -> bool {
+        self.table.contains_key(key)
+    }
+
+    fn place(&self, at: usize) -> Place {
+        source_place(self.reader.path, self.reader.text, at)
+    }
+
+    fn place_of(&self, key: &str) -> Place {
+        let at = self
+            .table
+            .get_key_value(key)
+            .and_then(|(key, item)| key.span().or_else(|| item.span()))
+            .map_or(self.start, |span| span.start);
+        self.place(at)
+    }
+
+    fn missing(&self, key: &'static str, example: &str) -> InputError {
+        InputError::new(
+            self.place(self.start),
+            Problem::MissingKey {
+                key,
+                table: self.name.clone(),
+                example: example.to_owned(),
+            },
+        )
+    }
+
+    /// Refuses every key that is not known here.
+    fn only(&self, known: &[&str]) -> Result<(), InputError> {
+        for (key, _) in self.table.iter() {
+            if !known.contains(&key) {
+                return Err(InputError::new(
+                    self.place_of(key),
+                    Problem::UnknownKey {
+                        found: key.to_owned(),
+                        table: self.name.clone(),
+                        nearest: nearest(key, known.iter().copied())
+                            .unwrap_or_default()
+                            .to_owned(),
+                        known: known.join(", "),
+                    },
+                ));
+            }
+        }
+        Ok(())
+    }
+
+    fn table(&self, key: &'static str, example: &str) -> Result<Table<'s>, InputError> {
+        let item = self
+            .table
+            .get(key)
+            .ok_or_else(|| self.missing(key, example))?;
+        let table = item
+            .as_table_like()
+            .ok_or_else(|| self.bad_value(key, &format!("a table such as {example}")))?;
+        Ok(Table {
+            reader: self.reader,
+            name: match key {
+                "a" | "b" => format!("[species.{key}]"),
+                _ => format!("[{key}]"),
+            },
+            table,
+            start: item.span().map_or(self.start, |span| span.start),
+        })
+    }
+
+    fn text(&self, key: &'static str, example: &str) -> Result<String, InputError> {
+        let item = self
+            .table
+            .get(key)
+            .ok_or_else(|| self.missing(key, example))?;
+        item.as_str()
+            .map(str::to_owned)
+            .ok_or_else(|| self.bad_value(key, "text in quotes"))
+    }
+
+    /// A string, number or truth value as text; `None` where the key is absent.
+    fn scalar(&self, key: &str) -> Result<Option<String>, InputError> {
+        let Some(item) = self.table.get(key) else {
+            return Ok(None);
+        };
+        scalar(item)
+            .map(Some)
+            .ok_or_else(|| self.bad_value(key, "a single value"))
+    }
+
+    fn choice<C: Choice>(&self, key: &'static str) -> Result<Option<C>, InputError> {
+        let Some(text) = self.scalar(key)? else {
+            return Ok(None);
+        };
+        C::from_name(&text).map(Some).map_err(|e| {
+            InputError::new(
+                self.place_of(key),
+                bad_setting(BadSetting::Choice {
+                    key,
+                    found: e.found,
+                    known: C::names().collect(),
+                }),
+            )
+        })
+    }
+
+    fn bad_value(&self, key: &str, expected: &str) -> InputError {
+        let found = self.table.get(key).map_or_else(String::new, |item| {
+            scalar(item).map_or_else(
+                || format!("a value of type {}", item.type_name()),
+                |text| format!("{text:?}"),
+            )
+        });
+        InputError::new(
+            self.place_of(key),
+            Problem::BadValue {
+                key: key.to_owned(),
+                expected: expected.to_owned(),
+                found,
+            },
+        )
+    }
+}
+
+fn scalar(item: &Item) -> Option<String> {
+    let value = item.as_value()?;
+    value
+        .as_str()
+        .map(str::to_owned)
+        .or_else(|| value.as_integer().map(|i| i.to_string()))
+        .or_else(|| value.as_float().map(|x| x.to_string()))
+        .or_else(|| value.as_bool().map(|b| b.to_string()))
+}

@@ -1,0 +1,137 @@
+//! A joint space and what its axes carry.
+
+use ndarray::{concatenate, Array1, Array2, ArrayView1, Axis};
+
+use super::left_out::map_without;
+use crate::align::{self, JointMap, Params};
+use crate::domain::{Pair, Side};
+use crate::evidence::Material;
+use crate::holdout::Asked;
+
+/// Parcels named at each end of an axis.
+pub const ENDS: usize = 3;
+
+/// A fitted joint space with everything reported about it.
+#[derive(Debug, Clone)]
+pub struct Space {
+    /// Alignment, axes and ridge.
+    pub params: Params,
+    /// The maps, in standard units.
+    pub map: JointMap,
+    /// Positions `(parcels, axes)` of each species.
+    pub positions: Pair<Array2<f64>>,
+    /// Bootstrap standard errors of the positions relative to the other species' parcels.
+    pub standard_errors: Pair<Array2<f64>>,
+    /// Share of each embedding's variance that an axis predicts.
+    pub shares: Pair<Array1<f64>>,
+    /// Correlation of both species' landmark coordinates on an axis, in sample.
+    pub correlations: Array1<f64>,
+    /// The same with every landmark placed by a fit that does without it; `None` where a side does
+    /// not vary.
+    pub correlations_left_out: Vec<Option<f64>>,
+}
+
+/// The parcels at both ends of an axis, outermost first.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct AxisEnds {
+    /// Lowest coordinates.
+    pub low: Vec<usize>,
+    /// Highest coordinates.
+    pub high: Vec<usize>,
+}
+
+impl Space {
+    /// Fits the full sample. Standard errors are zero until the bootstrap has run.
+    pub(super) fn fit(material: &Material<'_>, params: Params, asked: &Asked) -> Space {
+        let weights = material.weights(|_| 1.0);
+        let embedded = material.embedded();
+        let map = align::fit(params, material.anchors.as_ref(), &weights)
+            .expect("a checked study has landmarks enough")
+            .in_standard_units(embedded);
+        let positions = map.positions(embedded);
+        let landmarks = map.positions(material.anchors.as_ref());
+        let weights = Array1::from(weights);
+        Space {
+            params,
+            shares: Pair::from_fn(|side| map.shares(side, embedded[side])),
+            correlations: (0..map.axes())
+                .map(|axis| {
+                    correlation(landmarks.a.column(axis), landmarks.b.column(axis), &weights)
+                        .unwrap_or(0.0)
+                })
+                .collect(),
+            correlations_left_out: left_out_correlations(material, &positions, params, asked),
+            standard_errors: positions.as_ref().map(|p| Array2::zeros(p.dim())),
+            positions,
+            map,
+        }
+    }
+
+    /// Distance between a parcel of one side and a parcel of the other.
+    #[must_use]
+    pub fn distance(&self, side: Side, parcel: usize, other: usize) -> f64 {
+        let from = self.positions[side].row(parcel);
+        let to = self.positions[side.opposite()].row(other);
+        from.iter()
+            .zip(to)
+            .map(|(x, y)| (x - y) * (x - y))
+            .sum::<f64>()
+            .sqrt()
+    }
+
+    /// The parcels at both ends of an axis.
+    #[must_use]
+    pub fn ends(&self, side: Side, axis: usize) -> AxisEnds {
+        let order = crate::place::order(self.positions[side].column(axis));
+        let ends = ENDS.min(order.len());
+        AxisEnds {
+            low: order[..ends].to_vec(),
+            high: order.iter().rev().take(ends).copied().collect(),
+        }
+    }
+}
+
+/// Per axis, the correlation over landmarks of coordinates that each landmark gets from a fit
+/// without its block, brought to the full-sample axes by the parcels of both species.
+fn left_out_correlations(
+    material: &Material<'_>,
+    positions: &Pair<Array2<f64>>,
+    params: Params,
+    asked: &Asked,
+) -> Vec<Option<f64>> {
+    let landmarks = material.landmarks;
+    let pooled = |p: &Pair<Array2<f64>>| {
+        concatenate(Axis(0), &[p.a.view(), p.b.view()]).expect("both sides have the same axes")
+    };
+    let full = pooled(positions);
+    let mut placed = Pair::from_fn(|_| Array2::zeros((landmarks.len(), params.axes)));
+    for block in 0..landmarks.blocks() {
+        let map = map_without(material, params, block);
+        let there = map.positions(material.embedded());
+        let map = map.moved(&JointMap::superimpose(&pooled(&there), &full));
+        let there = map.positions(material.embedded());
+        for (at, landmark) in landmarks.list().iter().enumerate() {
+            if landmark.block == block {
+                for side in Side::BOTH {
+                    placed[side]
+                        .row_mut(at)
+                        .assign(&there[side].row(asked.of(at)[side]));
+                }
+            }
+        }
+    }
+    let weights: Array1<f64> = landmarks.list().iter().map(|l| l.weight.get()).collect();
+    (0..params.axes)
+        .map(|axis| correlation(placed.a.column(axis), placed.b.column(axis), &weights))
+        .collect()
+}
+
+/// Weighted Pearson correlation; `None` where a side does not vary.
+fn correlation(x: ArrayView1<'_, f64>, y: ArrayView1<'_, f64>, weights: &Array1<f64>) -> Option<f64> {
+    let total = weights.sum();
+    let mean = |z: ArrayView1<'_, f64>| z.dot(weights) / total;
+    let (x, y) = (&x - mean(x), &y - mean(y));
+    let products = |u: &Array1<f64>, v: &Array1<f64>| (u * v).dot(weights);
+    let own = products(&x, &x) * products(&y, &y);
+    (own > 0.0).then(|| (products(&x, &y) / own.sqrt()).clamp(-1.0, 1.0))
+}

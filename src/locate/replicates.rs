@@ -1,0 +1,199 @@
+//! Bootstrap replicates: align again under other landmark weights and see what stays.
+
+use ndarray::{Array2, ArrayView2};
+
+use super::{intervals, JointRanking, Space};
+use crate::align::{self, Alignment, JointMap, PerAlignment};
+use crate::bootstrap::{accumulate, Purpose, Spread, Stream};
+use crate::domain::{Pair, Side};
+use crate::evidence::{Evidence, Material};
+use crate::place;
+use crate::prepare::Study;
+use crate::watch::{Interrupted, Watch};
+
+/// What is counted over replicates.
+#[derive(Debug, Clone)]
+pub struct Tally {
+    /// How often each candidate came first: `(open parcels, open parcels of the other side)`.
+    firsts: Pair<Array2<u32>>,
+    /// Stray of every parcel in both joint spaces.
+    spreads: PerAlignment<Pair<Spread>>,
+    /// Ranks of all listed pairs, for each replicate that ranks.
+    ranks: Pair<Vec<Vec<u32>>>,
+    /// Replicates with too few distinct landmarks.
+    pub(super) degenerate: usize,
+    replicates: usize,
+}
+
+impl Tally {
+    fn new(open: &Pair<Vec<usize>>, spaces: &PerAlignment<Space>) -> Tally {
+        let firsts = Array2::zeros((open.a.len(), open.b.len()));
+        Tally {
+            firsts: Pair {
+                b: Array2::zeros((open.b.len(), open.a.len())),
+                a: firsts,
+            },
+            spreads: PerAlignment::from_fn(|alignment| {
+                spaces[alignment]
+                    .positions
+                    .as_ref()
+                    .map(|p| Spread::new(p.nrows(), p.ncols()))
+            }),
+            ranks: Pair::default(),
+            degenerate: 0,
+            replicates: 0,
+        }
+    }
+
+    fn add(&mut self, mut block: Tally) {
+        for side in Side::BOTH {
+            self.firsts[side] += &block.firsts[side];
+            self.ranks[side].append(&mut block.ranks[side]);
+            for alignment in Alignment::BOTH {
+                self.spreads[alignment][side].add(&block.spreads[alignment][side]);
+            }
+        }
+        self.degenerate += block.degenerate;
+        self.replicates += block.replicates;
+    }
+
+    /// Share of replicates in which a candidate came first, both as places among the open parcels.
+    pub(super) fn support(&self, side: Side, parcel: usize, candidate: usize) -> f64 {
+        f64::from(self.firsts[side][(parcel, candidate)]) / self.replicates as f64
+    }
+
+    /// Standard errors of positions in one joint space.
+    pub(super) fn standard_errors(&self, alignment: Alignment) -> Pair<Array2<f64>> {
+        self.spreads[alignment]
+            .as_ref()
+            .map(Spread::standard_errors)
+    }
+
+    /// Rank intervals of all listed pairs of a side, in order.
+    pub(super) fn rank_intervals(&self, side: Side) -> std::vec::IntoIter<(u32, u32)> {
+        let pairs = self.ranks[side].first().map_or(0, Vec::len);
+        intervals(&self.ranks[side], pairs).into_iter()
+    }
+}
+
+/// Runs all replicates.
+pub fn run(
+    study: &Study,
+    material: &Material<'_>,
+    spaces: &PerAlignment<Space>,
+    ranking: &JointRanking,
+    watch: &dyn Watch,
+) -> Result<Tally, Interrupted> {
+    let settings = &study.settings;
+    watch.begin("bootstrap replicates", settings.replicates);
+    let tally = accumulate(
+        settings.replicates,
+        watch,
+        || Tally::new(&ranking.open, spaces),
+        |tally, replicate| one(tally, replicate, study, material, spaces, ranking),
+        Tally::add,
+    );
+    watch.end();
+    tally
+}
+
+fn one(
+    tally: &mut Tally,
+    replicate: usize,
+    study: &Study,
+    material: &Material<'_>,
+    spaces: &PerAlignment<Space>,
+    ranking: &JointRanking,
+) {
+    let settings = &study.settings;
+    let index = replicate as u64;
+    let mut chance = Stream::new(settings.seed, Purpose::LandmarkWeights, index);
+    let blocks = material.landmarks.blocks();
+    let by_block = settings.resampling.draw(blocks, &mut chance);
+    let weights = material.weights(|block| by_block[block]);
+    tally.replicates += 1;
+
+    let distinct = by_block.iter().filter(|w| **w > 0.0).count();
+    if distinct <= spaces[ranking.way.alignment()].params.axes {
+        tally.degenerate += 1;
+    }
+    for alignment in Alignment::BOTH {
+        stray(&mut tally.spreads[alignment], &spaces[alignment], material, &weights);
+    }
+
+    let mut chance = Stream::new(settings.seed, Purpose::Evidence, index);
+    let Ok(fitted) = ranking
+        .way
+        .evidence()
+        .fit(material, &weights, &mut chance)
+    else {
+        return;
+    };
+    let open = &ranking.open;
+    let mut dissimilarities = Array2::zeros((open.a.len(), open.b.len()));
+    fitted.dissimilarities(&open.a, &open.b, &mut dissimilarities);
+    let nearest = place::nearest(&dissimilarities);
+    for side in Side::BOTH {
+        for (parcel, first) in nearest[side].iter().enumerate() {
+            if let Some(first) = first {
+                tally.firsts[side][(parcel, *first)] += 1;
+            }
+        }
+    }
+    if replicate < settings.rank_replicates {
+        for side in Side::BOTH {
+            let rows = match side {
+                Side::A => dissimilarities.view(),
+                Side::B => dissimilarities.t(),
+            };
+            tally.ranks[side].push(ranks(rows, &ranking.listed[side]));
+        }
+    }
+}
+
+/// Ranks of the listed candidates of every row, one row after the other.
+fn ranks(rows: ArrayView2<'_, f64>, listed: &[Vec<usize>]) -> Vec<u32> {
+    let rows = rows.as_standard_layout();
+    let mut all = Vec::with_capacity(listed.iter().map(Vec::len).sum());
+    for (row, listed) in rows.rows().into_iter().zip(listed) {
+        // Sorting once is dearer than counting for a few candidates, and cheaper for many.
+        if listed.len() * SORT_FROM < row.len() {
+            let row = row.as_slice().expect("rows in standard layout");
+            all.extend(listed.iter().map(|&c| place::rank(row, c) as u32));
+        } else {
+            let mut rank = vec![0_u32; row.len()];
+            for (place, candidate) in place::order(row).into_iter().enumerate() {
+                rank[candidate] = place as u32 + 1;
+            }
+            all.extend(listed.iter().map(|&c| rank[c]));
+        }
+    }
+    all
+}
+
+/// Counting ranks is used while it takes fewer than one in this many of a row's candidates.
+const SORT_FROM: usize = 10;
+
+/// How far every parcel strays from its full-sample position relative to the other species: each
+/// replicate is first superimposed on the full sample by the *other* species' parcels. So neither
+/// species is the fixed one, and no error is zero by construction.
+fn stray(
+    spreads: &mut Pair<Spread>,
+    space: &Space,
+    material: &Material<'_>,
+    weights: &[f64],
+) {
+    let Ok(map) = align::fit(space.params, material.anchors.as_ref(), weights) else {
+        return;
+    };
+    let positions = map.positions(material.embedded());
+    for side in Side::BOTH {
+        let other = side.opposite();
+        let back = JointMap::superimpose(&positions[other], &space.positions[other]);
+        let there = map.maps[side].then(&back);
+        spreads[side].record(
+            &there.apply(material.embedded()[side].view()),
+            &space.positions[side],
+        );
+    }
+}

@@ -1,0 +1,87 @@
+//! Where a parcel falls among the other species' parcels: order, rank, nearest.
+
+use ndarray::{Array2, ArrayView1};
+
+use crate::domain::{Landmarks, Pair, Side};
+
+/// The parcels that are no landmark: the questions, and the candidates of the other species'.
+///
+/// They stand in bytewise order of their labels, so ties decided by position are decided by label.
+#[must_use]
+pub fn open_parcels(landmarks: &Landmarks, parcels: Pair<usize>) -> Pair<Vec<usize>> {
+    Pair::from_fn(|side: Side| {
+        landmarks
+            .owners(side, parcels[side])
+            .iter()
+            .enumerate()
+            .filter(|(_, owner)| owner.is_none())
+            .map(|(parcel, _)| parcel)
+            .collect()
+    })
+}
+
+/// Positions of the candidates, best first.
+#[must_use]
+pub fn order(dissimilarities: ArrayView1<'_, f64>) -> Vec<usize> {
+    let mut order: Vec<usize> = (0..dissimilarities.len()).collect();
+    order.sort_by(|&i, &j| {
+        dissimilarities[i]
+            .total_cmp(&dissimilarities[j])
+            .then(i.cmp(&j))
+    });
+    order
+}
+
+/// Rank of one candidate, 1 being the best.
+#[must_use]
+pub fn rank(dissimilarities: &[f64], candidate: usize) -> usize {
+    let own = dissimilarities[candidate];
+    let (before, after) = dissimilarities.split_at(candidate);
+    // Ties before it are ahead, ties after it are not.
+    1 + before.iter().filter(|d| **d <= own).count() + after.iter().filter(|d| **d < own).count()
+}
+
+/// The best candidate of every row (a's parcels) and of every column (b's parcels); `None` where
+/// there is no candidate.
+#[must_use]
+pub fn nearest(dissimilarities: &Array2<f64>) -> Pair<Vec<Option<usize>>> {
+    let (rows, columns) = dissimilarities.dim();
+    let mut by_row = vec![None; rows];
+    let mut by_column = vec![None; columns];
+    let mut least = vec![f64::INFINITY; columns];
+    for (i, row) in dissimilarities.rows().into_iter().enumerate() {
+        let mut best = f64::INFINITY;
+        for (j, &d) in row.iter().enumerate() {
+            if d < best {
+                best = d;
+                by_row[i] = Some(j);
+            }
+            if d < least[j] {
+                least[j] = d;
+                by_column[j] = Some(i);
+            }
+        }
+    }
+    Pair {
+        a: by_row,
+        b: by_column,
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use ndarray::array;
+
+    #[test]
+    fn ties_go_to_the_first_label() {
+        let d = array![[2.0, 1.0, 1.0], [1.0, 3.0, 1.0]];
+        assert_eq!(order(d.row(0)), [1, 2, 0]);
+        assert_eq!(rank(&[2.0, 1.0, 1.0], 1), 1);
+        assert_eq!(rank(&[2.0, 1.0, 1.0], 2), 2);
+        assert_eq!(rank(&[2.0, 1.0, 1.0], 0), 3);
+        let nearest = nearest(&d);
+        assert_eq!(nearest.a, [Some(1), Some(0)]);
+        assert_eq!(nearest.b, [Some(1), Some(0), Some(0)]);
+    }
+}

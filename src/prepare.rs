@@ -1,0 +1,317 @@
+//! From files to two species ready for comparison: read, check, transform, embed.
+
+use std::path::Path;
+
+use serde::Serialize;
+
+use crate::affinity::{self, Profiles};
+use crate::domain::{Connectivity, Landmarks, Pair, Parcels, Side, Transform, WeightKind};
+use crate::embed::{self, DiffusionTime, Embedding};
+use crate::input::{self, InputError, InputFile, Place, Problem, Source, SpeciesFile};
+use crate::settings::{Axes, Conduct, Request, Settings};
+use crate::species::Species;
+use crate::transform;
+use crate::warning::Warning;
+
+mod suspicion;
+
+/// Fewest parcels that make an embedding.
+const FEWEST_PARCELS: usize = 4;
+/// Most axes that are tried when left-out landmarks choose.
+const MOST_AXES: usize = 12;
+
+/// What was done to one species' matrix, after defaults.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+pub struct Treatment {
+    /// What the weights measure.
+    pub weights: WeightKind,
+    /// How they were transformed.
+    pub transform: Transform,
+    /// How profiles were compared.
+    pub affinity: affinity::Params,
+}
+
+/// The files a study was read from.
+#[derive(Debug, Clone, PartialEq, Eq, Serialize)]
+pub struct Inputs {
+    /// The study file.
+    pub study: InputFile,
+    /// The landmark table.
+    pub landmarks: InputFile,
+    /// The matrices.
+    pub matrix: Pair<InputFile>,
+}
+
+/// A study that has passed every check, embedded.
+#[derive(Debug, Clone)]
+pub struct Study {
+    /// Title for people.
+    pub title: String,
+    /// Both species.
+    pub species: Pair<Species>,
+    /// The landmarks.
+    pub landmarks: Landmarks,
+    /// Numbers of axes to try; one where a number was asked for.
+    pub axes: Vec<usize>,
+    /// What was done to the matrices.
+    pub treatment: Pair<Treatment>,
+    /// What was read.
+    pub inputs: Inputs,
+    /// Every choice.
+    pub settings: Settings,
+    /// How the run behaves.
+    pub conduct: Conduct,
+    /// What is legal but suspicious.
+    pub warnings: Vec<Warning>,
+}
+
+/// One species' matrix as read, with what its parcels are.
+struct Raw {
+    file: InputFile,
+    network: Connectivity,
+    parcels: Parcels,
+}
+
+/// Reads a study and everything it names. `asked` wins over the study file's own settings.
+///
+/// # Errors
+/// [`InputError`] for the first fault found.
+pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
+    let description = input::read_study_file(study)?;
+    let (settings, conduct) = asked.or(description.request.clone()).settle();
+    let mut warnings = Vec::new();
+    let raw = Pair::try_from_fn(|side| read_species(&description.species[side], &mut warnings))?;
+
+    let table = Source::read(&description.landmarks)?;
+    let parcels = Pair {
+        a: &raw.a.parcels,
+        b: &raw.b.parcels,
+    };
+    let (landmarks, more) = input::read_landmarks(&table, parcels)?;
+    warnings.extend(more);
+    let most = most_axes(settings.axes, &landmarks, &table)?;
+
+    let treatment = Pair::from_fn(|side| treatment(&description.species[side], &raw[side].network));
+    let inputs = Inputs {
+        study: description.file,
+        landmarks: table.file,
+        matrix: raw.as_ref().map(|raw| raw.file.clone()),
+    };
+    let mut raw = raw.map(Some);
+    let species = Pair::try_from_fn(|side| {
+        let raw = raw[side].take().expect("each side is taken once");
+        embed_species(raw, side, &treatment[side], &settings, most)
+    })?;
+
+    let available = Side::BOTH
+        .into_iter()
+        .map(|side| species[side].embedding.axes())
+        .min()
+        .unwrap_or(0);
+    let axes = match settings.axes {
+        Axes::Number(axes) => {
+            if let Some(side) = Side::BOTH
+                .into_iter()
+                .find(|side| species[*side].embedding.axes() < axes)
+            {
+                return Err(InputError::new(
+                    Place::file(&inputs.matrix[side].path),
+                    Problem::TooManyAxes {
+                        side,
+                        axes,
+                        available: species[side].embedding.axes(),
+                    },
+                ));
+            }
+            if landmarks.blocks() < axes + 2 {
+                warnings.push(Warning::LeftOutUnderdetermined {
+                    axes,
+                    blocks: landmarks.blocks(),
+                });
+            }
+            vec![axes]
+        }
+        Axes::Auto => {
+            for side in Side::BOTH {
+                let axes = species[side].embedding.axes();
+                if axes == 0 {
+                    return Err(InputError::new(
+                        Place::file(&inputs.matrix[side].path),
+                        Problem::TooManyAxes {
+                            side,
+                            axes: 1,
+                            available: 0,
+                        },
+                    ));
+                }
+                if axes < most {
+                    warnings.push(Warning::FewAxes {
+                        species: species[side].parcels.species().to_owned(),
+                        axes,
+                    });
+                }
+            }
+            let most = most.min(available);
+            (2.min(most)..=most).collect()
+        }
+    };
+    Ok(Study {
+        title: description.title,
+        species,
+        landmarks,
+        axes,
+        treatment,
+        inputs,
+        settings,
+        conduct,
+        warnings,
+    })
+}
+
+/// Reads and checks one matrix, and finds its parcels.
+fn read_species(
+    described: &SpeciesFile,
+    warnings: &mut Vec<Warning>,
+) -> Result<Raw, InputError> {
+    let source = Source::read(&described.matrix)?;
+    let (mut network, more) = input::read_matrix(&source, described.weights, &described.name)?;
+    warnings.extend(more);
+    suspicion::look_over(&network, described, warnings);
+    if described.weights == WeightKind::Correlations {
+        symmetrise(&mut network);
+    }
+    let connected = connected(&network, described.weights);
+    let place = || Place::file(&described.matrix);
+    if !connected.contains(&true) {
+        return Err(InputError::new(place(), Problem::AllZero));
+    }
+    let parcels = Parcels::new(&described.name, network.row_labels(), &connected);
+    if parcels.len() < FEWEST_PARCELS {
+        return Err(InputError::new(
+            place(),
+            Problem::TooFewParcels {
+                found: parcels.len(),
+                needed: FEWEST_PARCELS,
+            },
+        ));
+    }
+    if !parcels.isolated().is_empty() {
+        warnings.push(Warning::SetAside {
+            species: described.name.clone(),
+            parcels: parcels.isolated().to_vec(),
+        });
+    }
+    let order: Vec<usize> = {
+        let mut order: Vec<usize> = (0..connected.len()).filter(|&i| connected[i]).collect();
+        let labels = network.row_labels();
+        order.sort_by(|&i, &j| labels[i].as_bytes().cmp(labels[j].as_bytes()));
+        order
+    };
+    Ok(Raw {
+        file: source.file,
+        network: network.select(&order, &order),
+        parcels,
+    })
+}
+
+/// Which parcels have a connection in either direction.
+fn connected(network: &Connectivity, weights: WeightKind) -> Vec<bool> {
+    let mut connected = vec![false; network.row_labels().len()];
+    for ((i, j), &w) in network.weights().indexed_iter() {
+        // Every finite logarithm stands for a connection.
+        if i != j && (w != 0.0 || weights == WeightKind::Log10) {
+            connected[i] = true;
+            connected[j] = true;
+        }
+    }
+    connected
+}
+
+/// The mean of both halves: a correlation has no direction.
+fn symmetrise(network: &mut Connectivity) {
+    let mut weights = network.weights_mut();
+    for i in 0..weights.nrows() {
+        for j in 0..i {
+            let mean = (weights[(i, j)] + weights[(j, i)]) / 2.0;
+            weights[(i, j)] = mean;
+            weights[(j, i)] = mean;
+        }
+    }
+}
+
+fn treatment(described: &SpeciesFile, network: &Connectivity) -> Treatment {
+    let default = affinity::Params::default_for(described.weights);
+    Treatment {
+        weights: described.weights,
+        transform: described
+            .transform
+            .unwrap_or_else(|| transform::default_for(network, described.weights)),
+        affinity: affinity::Params {
+            likeness: described.likeness.unwrap_or(default.likeness),
+            strongest: described.strongest.unwrap_or(default.strongest),
+        },
+    }
+}
+
+/// The most axes to embed in, as the landmarks allow.
+fn most_axes(axes: Axes, landmarks: &Landmarks, table: &Source) -> Result<usize, InputError> {
+    let blocks = landmarks.blocks();
+    let refuse = |axes: usize| {
+        InputError::new(
+            Place::file(table.path()),
+            Problem::FewerLandmarksThanAxes {
+                found: landmarks.len(),
+                in_blocks: blocks,
+                axes,
+            },
+        )
+    };
+    match axes {
+        Axes::Number(axes) if blocks < axes + 1 => Err(refuse(axes)),
+        Axes::Number(axes) => Ok(axes),
+        Axes::Auto if blocks < Landmarks::FEWEST => Err(InputError::new(
+            Place::file(table.path()),
+            Problem::TooFewLandmarks {
+                found: blocks,
+                needed: Landmarks::FEWEST,
+            },
+        )),
+        // Two blocks are left out at a time, and the rest must still span the axes.
+        Axes::Auto => Ok(blocks.saturating_sub(3).clamp(1, MOST_AXES)),
+    }
+}
+
+fn embed_species(
+    raw: Raw,
+    side: Side,
+    treatment: &Treatment,
+    settings: &Settings,
+    axes: usize,
+) -> Result<Species, InputError> {
+    let network = transform::apply(raw.network, treatment.weights, treatment.transform);
+    let profiles = Profiles::new(network.weights().view(), treatment.affinity.strongest);
+    let embedding: Embedding = match settings.embedding {
+        embed::Method::Components => embed::components(&profiles.matrix(), axes),
+        embed::Method::Diffusion => {
+            let affinity = profiles.affinity(treatment.affinity.likeness);
+            drop(profiles);
+            embed::diffusion_map(
+                affinity,
+                settings.density_exponent,
+                DiffusionTime::from_number(settings.diffusion_time),
+                axes,
+            )
+            .map_err(|embed::DiffusionError::Disconnected| {
+                InputError::new(
+                    Place::file(&raw.file.path),
+                    Problem::Disconnected { side },
+                )
+            })?
+        }
+    };
+    Ok(Species {
+        parcels: raw.parcels,
+        network,
+        embedding,
+    })
+}

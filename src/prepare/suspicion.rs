@@ -1,0 +1,115 @@
+//! A look over a matrix for what is legal but odd.
+
+use crate::domain::{Connectivity, WeightKind};
+use crate::input::SpeciesFile;
+use crate::warning::Warning;
+
+/// Correlations may differ this much across the diagonal before it is worth a word.
+const ASYMMETRY: f64 = 1e-6;
+
+/// Adds what a careful user would want to know about a square matrix.
+pub fn look_over(network: &Connectivity, described: &SpeciesFile, warnings: &mut Vec<Warning>) {
+    let species = || described.name.clone();
+    let weights = network.weights();
+    let off_diagonal = || weights.indexed_iter().filter(|((i, j), _)| i != j);
+
+    // Correlations and logarithms of a parcel with itself are 1 and 0 by nature.
+    let empty = |w: f64| match described.weights {
+        WeightKind::Correlations => w == 0.0 || w == 1.0,
+        _ => w == 0.0,
+    };
+    let diagonal = weights.diag().iter().filter(|w| !empty(**w)).count();
+    if diagonal > 0 && described.weights != WeightKind::Log10 {
+        warnings.push(Warning::DiagonalNotEmpty {
+            species: species(),
+            entries: diagonal,
+        });
+    }
+    match described.weights {
+        WeightKind::Correlations => {
+            let largest = off_diagonal()
+                .map(|((i, j), w)| (w - weights[(j, i)]).abs())
+                .fold(0.0, f64::max);
+            if largest > ASYMMETRY {
+                warnings.push(Warning::AsymmetricCorrelations {
+                    species: species(),
+                    largest,
+                });
+            }
+            let beyond: Vec<(usize, usize)> = off_diagonal()
+                .filter(|(_, w)| w.abs() >= 1.0)
+                .map(|(at, _)| at)
+                .collect();
+            if let Some(&(i, j)) = beyond.first() {
+                let labels = network.row_labels();
+                warnings.push(Warning::CorrelationsBeyondOne {
+                    species: species(),
+                    entries: beyond.len(),
+                    example: (labels[i].clone(), labels[j].clone()),
+                });
+            }
+        }
+        WeightKind::Fractions => {
+            let above = off_diagonal().filter(|(_, w)| **w > 1.0).count();
+            if above > 0 {
+                warnings.push(Warning::FractionsAboveOne {
+                    species: species(),
+                    entries: above,
+                });
+            }
+        }
+        WeightKind::Log10 => {
+            let zeros = off_diagonal().filter(|(_, w)| **w == 0.0).count();
+            if zeros > 0 && off_diagonal().all(|(_, w)| *w <= 0.0) {
+                warnings.push(Warning::ZeroLogarithms {
+                    species: species(),
+                    entries: zeros,
+                });
+            }
+        }
+        WeightKind::Counts | WeightKind::Ordinal | WeightKind::Other => {}
+    }
+    if described.weights != WeightKind::Log10 {
+        components(network, &species(), warnings);
+    }
+}
+
+/// Parts between which there is no connection; parcels without any are reported elsewhere.
+fn components(network: &Connectivity, species: &str, warnings: &mut Vec<Warning>) {
+    let n = network.row_labels().len();
+    let weights = network.weights();
+    let linked = |i: usize, j: usize| i != j && (weights[(i, j)] != 0.0 || weights[(j, i)] != 0.0);
+    let mut part = vec![None; n];
+    let mut sizes = Vec::new();
+    for first in 0..n {
+        if part[first].is_some() {
+            continue;
+        }
+        let mut size = 0;
+        let mut waiting = vec![first];
+        part[first] = Some(sizes.len());
+        while let Some(i) = waiting.pop() {
+            size += 1;
+            for j in 0..n {
+                if part[j].is_none() && linked(i, j) {
+                    part[j] = part[first];
+                    waiting.push(j);
+                }
+            }
+        }
+        sizes.push(size);
+    }
+    let real = sizes.iter().filter(|size| **size > 1).count();
+    if real > 1 {
+        let largest = (0..sizes.len()).max_by_key(|&p| (sizes[p], std::cmp::Reverse(p)));
+        let outside = (0..n)
+            .filter(|&i| part[i] != largest && part[i].is_some_and(|p| sizes[p] > 1))
+            .map(|i| network.row_labels()[i].clone())
+            .collect();
+        warnings.push(Warning::Components {
+            species: species.to_owned(),
+            components: real,
+            outside,
+        });
+    }
+}

@@ -1,0 +1,12 @@
+//! Results to bytes: tables, the run record, the summary, and the folder they go into. Computes
+//! nothing that a table does not show.
+
+mod record;
+mod run_folder;
+mod summary;
+mod tables;
+
+pub use record::{Identity, Record, Wall};
+pub use run_folder::{FolderError, RunFolder, Survey, RECORD, TABLES, UNFINISHED};
+pub use summary::{summary, CAUTION};
+pub use tables::tables;

@@ -1,0 +1,133 @@
+//! The record of a run: what it read, every setting after defaults, what it found on the way.
+
+use serde::Serialize;
+
+use crate::domain::{Pair, Side};
+use crate::holdout::{Choice, Curve};
+use crate::locate::Located;
+use crate::prepare::{Inputs, Study, Treatment};
+use crate::settings::Settings;
+use crate::warning::Warning;
+
+/// What makes two runs the same run.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub struct Identity<'s> {
+    /// The program.
+    pub program: &'static str,
+    /// Its version.
+    pub version: &'static str,
+    /// Every setting after defaults.
+    pub settings: &'s Settings,
+    /// What was done to each matrix.
+    pub treatment: &'s Pair<Treatment>,
+    /// Files read, with checksums.
+    pub inputs: &'s Inputs,
+}
+
+impl<'s> Identity<'s> {
+    /// The identity of a study's run.
+    #[must_use]
+    pub fn of(study: &'s Study) -> Identity<'s> {
+        Identity {
+            program: env!("CARGO_PKG_NAME"),
+            version: env!("CARGO_PKG_VERSION"),
+            settings: &study.settings,
+            treatment: &study.treatment,
+            inputs: &study.inputs,
+        }
+    }
+}
+
+/// How a run was executed; differs between runs of one identity.
+#[derive(Debug, Clone, Copy, PartialEq, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub struct Wall {
+    /// Worker threads.
+    pub threads: usize,
+    /// Seconds from start to the writing of this record.
+    pub wall_seconds: f64,
+}
+
+/// One species in numbers.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+#[serde(rename_all = "kebab-case")]
+struct SpeciesCounts<'s> {
+    name: &'s str,
+    parcels: usize,
+    set_aside: &'s [String],
+    eigenvalues: Vec<f64>,
+}
+
+/// Everything in `run.json`.
+#[derive(Debug, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub struct Record<'s> {
+    #[serde(flatten)]
+    identity: Identity<'s>,
+    title: &'s str,
+    species: Pair<SpeciesCounts<'s>>,
+    landmarks: usize,
+    landmark_blocks: usize,
+    choice: Choice,
+    left_out_error: &'s [Curve],
+    warnings: Vec<&'s Warning>,
+    files: Vec<&'static str>,
+    #[serde(flatten)]
+    wall: Wall,
+    caution: &'static str,
+}
+
+impl<'s> Record<'s> {
+    /// The record of a finished run.
+    #[must_use]
+    pub fn new(study: &'s Study, located: &'s Located, wall: Wall) -> Record<'s> {
+        Record {
+            identity: Identity::of(study),
+            title: &study.title,
+            species: Pair::from_fn(|side: Side| {
+                let species = &study.species[side];
+                SpeciesCounts {
+                    name: species.parcels.species(),
+                    parcels: species.parcels.len(),
+                    set_aside: species.parcels.isolated(),
+                    eigenvalues: species.embedding.eigenvalues.to_vec(),
+                }
+            }),
+            landmarks: study.landmarks.len(),
+            landmark_blocks: study.landmarks.blocks(),
+            choice: located.choice,
+            left_out_error: &located.curves,
+            warnings: study.warnings.iter().chain(&located.warnings).collect(),
+            files: super::TABLES.to_vec(),
+            wall,
+            caution: super::CAUTION,
+        }
+    }
+
+    /// The record as JSON.
+    ///
+    /// # Panics
+    /// Never: everything in it can be written as JSON.
+    #[must_use]
+    pub fn json(&self) -> Vec<u8> {
+        json(self)
+    }
+}
+
+impl Identity<'_> {
+    /// The identity as JSON.
+    ///
+    /// # Panics
+    /// Never: everything in it can be written as JSON.
+    #[must_use]
+    pub fn json(&self) -> Vec<u8> {
+        json(self)
+    }
+}
+
+fn json(value: &impl Serialize) -> Vec<u8> {
+    let mut bytes = serde_json::to_vec_pretty(value).expect("maps have text keys");
+    bytes.push(b'\n');
+    bytes
+}

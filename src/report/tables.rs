@@ -1,0 +1,219 @@
+//! The CSV tables of a run. Every column is described in docs/formats.md.
+
+use crate::align::Alignment;
+use crate::domain::{Landmarks, Pair, Side};
+use crate::locate::Located;
+use crate::prepare::Study;
+
+/// Separates several parcels in one cell, as in the landmark table.
+const PARCEL_SEPARATOR: &str = ";";
+
+/// One table being written.
+struct Table(csv::Writer<Vec<u8>>);
+
+impl Table {
+    fn new(header: impl IntoIterator<Item = impl AsRef<str>>) -> Table {
+        let mut table = Table(csv::Writer::from_writer(Vec::new()));
+        table.row(header);
+        table
+    }
+
+    fn row(&mut self, cells: impl IntoIterator<Item = impl AsRef<str>>) {
+        for cell in cells {
+            self.0
+                .write_field(cell.as_ref())
+                .expect("writing to memory does not fail");
+        }
+        self.0
+            .write_record(None::<&[u8]>)
+            .expect("every row has as many cells as the header");
+    }
+
+    fn bytes(self) -> Vec<u8> {
+        self.0
+            .into_inner()
+            .expect("writing to memory does not fail")
+    }
+}
+
+/// All tables of a run with their file names.
+#[must_use]
+pub fn tables(study: &Study, located: &Located) -> Vec<(&'static str, Vec<u8>)> {
+    vec![
+        ("positions.csv", positions(study, located)),
+        ("counterparts.csv", counterparts(study, located)),
+        ("landmarks.csv", landmarks(study, located)),
+        ("axes.csv", axes(study, located)),
+    ]
+}
+
+fn positions(study: &Study, located: &Located) -> Vec<u8> {
+    let mut header: Vec<String> = ["species", "parcel", "landmark", "beyond_landmarks"]
+        .map(str::to_owned)
+        .into();
+    for alignment in Alignment::BOTH {
+        let axes = located.spaces[alignment].map.axes();
+        header.extend((1..=axes).map(|k| format!("{alignment}_{k}")));
+        header.extend((1..=axes).map(|k| format!("{alignment}_{k}_se_landmarks")));
+    }
+    let mut table = Table::new(header);
+    for side in Side::BOTH {
+        let parcels = &study.species[side].parcels;
+        let owners = study.landmarks.owners(side, parcels.len());
+        for &parcel in parcels.as_listed() {
+            let landmark = owners[parcel].map_or("", |at| &study.landmarks.list()[at].name);
+            let mut row = vec![
+                parcels.species().to_owned(),
+                parcels.labels()[parcel].clone(),
+                landmark.to_owned(),
+                located.beyond[side][parcel].to_string(),
+            ];
+            for alignment in Alignment::BOTH {
+                let space = &located.spaces[alignment];
+                for values in [&space.positions[side], &space.standard_errors[side]] {
+                    row.extend(values.row(parcel).iter().map(f64::to_string));
+                }
+            }
+            table.row(row);
+        }
+    }
+    table.bytes()
+}
+
+fn counterparts(study: &Study, located: &Located) -> Vec<u8> {
+    let mut table = Table::new([
+        "from",
+        "parcel",
+        "to",
+        "counterpart",
+        "rank",
+        "rank_low",
+        "rank_high",
+        "distance",
+        "support",
+        "mutual",
+    ]);
+    for side in Side::BOTH {
+        let (own, other) = (
+            &study.species[side].parcels,
+            &study.species[side.opposite()].parcels,
+        );
+        for placement in &located.placements[side] {
+            for found in &placement.counterparts {
+                table.row([
+                    own.species(),
+                    &own.labels()[placement.parcel],
+                    other.species(),
+                    &other.labels()[found.parcel],
+                    &found.rank.to_string(),
+                    &found.rank_interval.0.to_string(),
+                    &found.rank_interval.1.to_string(),
+                    &found.distance.to_string(),
+                    &found.support.to_string(),
+                    &found.mutual.to_string(),
+                ]);
+            }
+        }
+    }
+    table.bytes()
+}
+
+fn landmarks(study: &Study, located: &Located) -> Vec<u8> {
+    let mut table = Table::new([
+        "landmark",
+        "a",
+        "b",
+        "weight",
+        "block",
+        "basis",
+        "asked_a",
+        "asked_b",
+        "rank_from_a",
+        "candidates_from_a",
+        "percentile_from_a",
+        "rank_from_b",
+        "candidates_from_b",
+        "percentile_from_b",
+        "distance",
+        "alignment",
+        "axes",
+        "contradicted",
+    ]);
+    let label = |side: Side, parcel: usize| study.species[side].parcels.labels()[parcel].as_str();
+    let landmarks: &Landmarks = &study.landmarks;
+    for (landmark, found) in landmarks.list().iter().zip(&located.left_out) {
+        let members = Pair::from_fn(|side| {
+            landmark.parcels[side]
+                .iter()
+                .map(|&p| label(side, p))
+                .collect::<Vec<_>>()
+                .join(PARCEL_SEPARATOR)
+        });
+        table.row([
+            landmark.name.as_str(),
+            &members.a,
+            &members.b,
+            &landmark.weight.get().to_string(),
+            landmarks.block_name(landmark.block),
+            landmark.basis.as_ref().map_or("", |basis| basis.0.as_str()),
+            label(Side::A, found.asked.a),
+            label(Side::B, found.asked.b),
+            &found.placed.a.rank.to_string(),
+            &found.placed.a.candidates.to_string(),
+            &found.placed.a.percentile().to_string(),
+            &found.placed.b.rank.to_string(),
+            &found.placed.b.candidates.to_string(),
+            &found.placed.b.percentile().to_string(),
+            &found.distance.to_string(),
+            &found.chosen.alignment.to_string(),
+            &found.chosen.axes.to_string(),
+            &found.contradicted.to_string(),
+        ]);
+    }
+    table.bytes()
+}
+
+fn axes(study: &Study, located: &Located) -> Vec<u8> {
+    let ends = located.spaces.procrustes.ends(Side::A, 0).low.len();
+    let mut header: Vec<String> = [
+        "alignment",
+        "axis",
+        "share_a",
+        "share_b",
+        "correlation_in_sample",
+        "correlation_left_out",
+    ]
+    .map(str::to_owned)
+    .into();
+    for side in Side::BOTH {
+        for end in ["low", "high"] {
+            header.extend((1..=ends).map(|k| format!("{}_{end}_{k}", side.letter())));
+        }
+    }
+    let mut table = Table::new(header);
+    for alignment in Alignment::BOTH {
+        let space = &located.spaces[alignment];
+        for axis in 0..space.map.axes() {
+            let mut row = vec![
+                alignment.to_string(),
+                (axis + 1).to_string(),
+                space.shares.a[axis].to_string(),
+                space.shares.b[axis].to_string(),
+                space.correlations[axis].to_string(),
+                space.correlations_left_out[axis].map_or_else(String::new, |r| r.to_string()),
+            ];
+            for side in Side::BOTH {
+                let labels = study.species[side].parcels.labels();
+                let found = space.ends(side, axis);
+                for end in [&found.low, &found.high] {
+                    row.extend((0..ends).map(|k| {
+                        end.get(k)
+                            .map_or_else(String::new, |&parcel| labels[parcel].clone())
+                    }));
+                }
+            }
+            table.row(row);
+        }
+    }
+    table.bytes()
+}

@@ -1,0 +1,238 @@
+//! What a study file or a command line asks for, before defaults.
+
+use thiserror::Error;
+
+use super::{Axes, Conduct, EvidenceChoice, Settings, Top};
+use crate::bootstrap::Resampling;
+use crate::domain::{Choice, Seed};
+use crate::embed;
+
+/// A setting that cannot be used.
+#[derive(Debug, Clone, PartialEq, Eq, Error)]
+pub enum BadSetting {
+    /// No setting of that name.
+    #[error("unknown setting {0:?}")]
+    UnknownKey(String),
+    /// A value outside its range.
+    #[error("{key} must be {expected}, found {found:?}")]
+    Value {
+        /// The setting.
+        key: &'static str,
+        /// What it must be.
+        expected: &'static str,
+        /// What came.
+        found: String,
+    },
+    /// A word outside a fixed list.
+    #[error("unknown value {found:?} for {key}; known: {}", known.join(", "))]
+    Choice {
+        /// The setting.
+        key: &'static str,
+        /// The word.
+        found: String,
+        /// All known words.
+        known: Vec<&'static str>,
+    },
+}
+
+/// Declares the request: one line for each setting gives its field, its key, its parser and what it
+/// must be, so that study file and command line cannot drift apart.
+macro_rules! request {
+    ($($(#[doc = $doc:literal])+ $field:ident : $type:ty = $key:literal, $parse:expr;)+) => {
+        /// Settings asked for; `None` where nothing was said.
+        #[derive(Debug, Clone, Default, PartialEq)]
+        pub struct Request { $($(#[doc = $doc])+ pub $field: Option<$type>),+ }
+
+        impl Request {
+            /// Every key, as in `[settings]` of a study file and (behind `--`) on the command line.
+            pub const KEYS: &'static [&'static str] = &[$($key),+];
+
+            /// Sets one key from its text.
+            ///
+            /// # Errors
+            /// [`BadSetting`] for an unknown key or a value it cannot take.
+            pub fn set(&mut self, key: &str, text: &str) -> Result<(), BadSetting> {
+                match key {
+                    $($key => {
+                        let parse: fn(&'static str, &str) -> Result<$type, BadSetting> = $parse;
+                        self.$field = Some(parse($key, text)?);
+                        Ok(())
+                    })+
+                    _ => Err(BadSetting::UnknownKey(key.to_owned())),
+                }
+            }
+
+            /// What this request says, and where it is silent what `fallback` says.
+            #[must_use]
+            pub fn or(self, fallback: Request) -> Request {
+                Request { $($field: self.$field.or(fallback.$field)),+ }
+            }
+        }
+    };
+}
+
+request! {
+    /// Bootstrap replicates.
+    replicates: usize = "replicates", |key, text| whole(key, text, 2, "a whole number of 2 or more");
+    /// Replicates that also rank.
+    rank_replicates: usize = "rank-replicates", |key, text| whole(key, text, 1, "a whole number of 1 or more");
+    /// Seed of every random draw.
+    seed: u64 = "seed", |key, text| text.parse().map_err(|_| bad(key, "a whole number of 0 or more", text));
+    /// Worker threads.
+    threads: usize = "threads", |key, text| whole(key, text, 1, "a whole number of 1 or more");
+    /// Axes of the joint spaces.
+    axes: Axes = "axes", |key, text| match text {
+        "auto" => Ok(Axes::Auto),
+        _ => whole(key, text, 1, "auto or a whole number of 1 or more").map(Axes::Number),
+    };
+    /// How connectivity becomes coordinates.
+    embedding: embed::Method = "embedding", choice;
+    /// Density exponent of the diffusion map.
+    density_exponent: f64 = "density-exponent", |key, text| number(key, text, 0.0..=1.0, "a number from 0 to 1");
+    /// Diffusion time.
+    diffusion_time: f64 = "diffusion-time", |key, text| number(key, text, 0.0..=1e3, "a number from 0 to 1000");
+    /// What ranks the counterparts.
+    evidence: EvidenceChoice = "evidence", choice;
+    /// Ridge of the canonical correlation.
+    ridge: f64 = "ridge", |key, text| number(key, text, 0.0..=1e6, "a number of 0 or more");
+    /// How landmark blocks are drawn.
+    resampling: Resampling = "resampling", choice;
+    /// Counterparts listed for each parcel.
+    top: Top = "top", |key, text| match text {
+        "all" => Ok(Top::All),
+        _ => whole(key, text, 1, "all or a whole number of 1 or more").map(Top::Number),
+    };
+    /// No progress on the terminal.
+    quiet: bool = "quiet", flag;
+    /// Replace a finished run.
+    replace: bool = "replace", flag;
+    /// No report page.
+    no_report: bool = "no-report", flag;
+}
+
+/// Replicates unless asked otherwise.
+const REPLICATES: usize = 1000;
+/// Replicates that also rank, unless asked otherwise.
+const RANK_REPLICATES: usize = 200;
+/// Seed unless asked otherwise: any fixed number would do.
+const SEED: u64 = 1;
+/// Density exponent unless asked otherwise: half-way between ignoring and removing the density of
+/// parcels (Coifman & Lafon 2006 treat 0, 1/2 and 1).
+const DENSITY_EXPONENT: f64 = 0.5;
+/// Diffusion time unless asked otherwise.
+const DIFFUSION_TIME: f64 = 1.0;
+/// Ridge unless asked otherwise; docs/method.md has the figures it was chosen by.
+const RIDGE: f64 = 0.4;
+/// Counterparts listed unless asked otherwise.
+const TOP: usize = 10;
+
+impl Request {
+    /// Fills in the defaults.
+    #[must_use]
+    pub fn settle(self) -> (Settings, Conduct) {
+        let replicates = self.replicates.unwrap_or(REPLICATES);
+        let settings = Settings {
+            replicates,
+            rank_replicates: self
+                .rank_replicates
+                .unwrap_or(RANK_REPLICATES)
+                .min(replicates),
+            seed: Seed(self.seed.unwrap_or(SEED)),
+            axes: self.axes.unwrap_or(Axes::Auto),
+            embedding: self.embedding.unwrap_or(embed::Method::Diffusion),
+            density_exponent: self.density_exponent.unwrap_or(DENSITY_EXPONENT),
+            diffusion_time: self.diffusion_time.unwrap_or(DIFFUSION_TIME),
+            evidence: self.evidence.unwrap_or(EvidenceChoice::Auto),
+            ridge: self.ridge.unwrap_or(RIDGE),
+            resampling: self.resampling.unwrap_or(Resampling::Bayesian),
+            top: self.top.unwrap_or(Top::Number(TOP)),
+        };
+        let conduct = Conduct {
+            threads: self.threads.unwrap_or(0),
+            quiet: self.quiet.unwrap_or(false),
+            replace: self.replace.unwrap_or(false),
+        };
+        (settings, conduct)
+    }
+}
+
+fn bad(key: &'static str, expected: &'static str, found: &str) -> BadSetting {
+    BadSetting::Value {
+        key,
+        expected,
+        found: found.to_owned(),
+    }
+}
+
+fn whole(
+    key: &'static str,
+    text: &str,
+    least: usize,
+    expected: &'static str,
+) -> Result<usize, BadSetting> {
+    text.parse()
+        .ok()
+        .filter(|n| *n >= least)
+        .ok_or_else(|| bad(key, expected, text))
+}
+
+fn number(
+    key: &'static str,
+    text: &str,
+    range: std::ops::RangeInclusive<f64>,
+    expected: &'static str,
+) -> Result<f64, BadSetting> {
+    text.parse()
+        .ok()
+        .filter(|x| range.contains(x))
+        .ok_or_else(|| bad(key, expected, text))
+}
+
+fn flag(key: &'static str, text: &str) -> Result<bool, BadSetting> {
+    text.parse().map_err(|_| bad(key, "true or false", text))
+}
+
+fn choice<C: Choice>(key: &'static str, text: &str) -> Result<C, BadSetting> {
+    C::from_name(text).map_err(|e| BadSetting::Choice {
+        key,
+        found: e.found,
+        known: C::names().collect(),
+    })
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn the_command_line_wins_and_defaults_fill_in() {
+        let mut file = Request::default();
+        file.set("replicates", "50").unwrap();
+        file.set("axes", "6").unwrap();
+        let mut line = Request::default();
+        line.set("axes", "auto").unwrap();
+        let (settings, conduct) = line.or(file).settle();
+        assert_eq!(settings.axes, Axes::Auto);
+        assert_eq!((settings.replicates, settings.rank_replicates), (50, 50));
+        assert_eq!(settings.top, Top::Number(10));
+        assert!(!conduct.replace);
+    }
+
+    #[test]
+    fn values_out_of_range_are_refused() {
+        for (key, text) in [
+            ("replicates", "1"),
+            ("replicates", "many"),
+            ("axes", "0"),
+            ("density-exponent", "1.5"),
+            ("diffusion-time", "-1"),
+            ("ridge", "NaN"),
+            ("evidence", "guess"),
+            ("top", "0"),
+            ("quiet", "yes"),
+        ] {
+            let mut request = Request::default();
+            assert!(request.set(key, text).is_err(), "{key} = {text}");
+        }
+    }
+}

@@ -1,0 +1,16 @@
+//! One species ready for comparison.
+
+use crate::domain::{Connectivity, Parcels};
+use crate::embed::Embedding;
+
+/// A species' parcels, the strengths of their connections, and their coordinates; all in the order
+/// of [`Parcels::labels`].
+#[derive(Debug, Clone)]
+pub struct Species {
+    /// The parcels that take part.
+    pub parcels: Parcels,
+    /// Their connectivity, transformed.
+    pub network: Connectivity,
+    /// Their coordinates.
+    pub embedding: Embedding,
+}

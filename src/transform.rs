@@ -1,0 +1,131 @@
+//! From raw weights to strengths that can be compared: logarithms, ranks, Fisher's z.
+
+use crate::domain::{Connectivity, Transform, WeightKind};
+
+/// Correlations are cut to this before Fisher's z, which is infinite at 1.
+pub const LARGEST_CORRELATION: f64 = 0.999;
+
+/// Orders of magnitude between the smallest and the largest positive weight from which
+/// `log-floor` is the default: below the median `log1p` is linear, so that weak links vanish.
+const WIDE_SPAN: f64 = 3.0;
+
+/// The transform for these weights where none was asked for.
+#[must_use]
+pub fn default_for(connectivity: &Connectivity, weights: WeightKind) -> Transform {
+    match weights {
+        WeightKind::Counts | WeightKind::Fractions => {
+            let positive = observed(connectivity).filter(|w| *w > 0.0);
+            let (low, high) = positive.fold((f64::INFINITY, 0.0_f64), |(low, high), w| {
+                (low.min(w), high.max(w))
+            });
+            if (high / low).log10() > WIDE_SPAN {
+                Transform::LogFloor
+            } else {
+                Transform::Log1p
+            }
+        }
+        WeightKind::Log10 => Transform::LogFloor,
+        WeightKind::Ordinal => Transform::Ranks,
+        WeightKind::Correlations => Transform::FisherZ,
+        WeightKind::Other => Transform::None,
+    }
+}
+
+/// Turns weights into strengths, in place; zero on the diagonal and where an entry is missing.
+///
+/// Scaling all weights of counts or fractions changes nothing, save under [`Transform::None`].
+#[must_use]
+pub fn apply(
+    mut connectivity: Connectivity,
+    weights: WeightKind,
+    transform: Transform,
+) -> Connectivity {
+    let strength = scale(&connectivity, weights, transform);
+    let not_data: Vec<(usize, usize)> = connectivity
+        .weights()
+        .indexed_iter()
+        .map(|(at, _)| at)
+        .filter(|&(i, j)| connectivity.is_self(i, j) || connectivity.is_missing(i, j))
+        .collect();
+    let mut strengths = connectivity.weights_mut();
+    strengths.mapv_inplace(strength);
+    for at in not_data {
+        strengths[at] = 0.0;
+    }
+    connectivity
+}
+
+/// The function from weight to strength that suits the data.
+fn scale(
+    connectivity: &Connectivity,
+    weights: WeightKind,
+    transform: Transform,
+) -> Box<dyn Fn(f64) -> f64> {
+    let positive = || observed(connectivity).filter(|w| *w > 0.0);
+    match (weights, transform) {
+        // Logarithms are undone first, but for the transform that would take them again.
+        (WeightKind::Log10, Transform::LogFloor) => {
+            let smallest = observed(connectivity).fold(f64::INFINITY, f64::min);
+            Box::new(move |w| 1.0 + w - smallest)
+        }
+        (WeightKind::Log10, Transform::Log1p) => {
+            let median = median(observed(connectivity).map(|w| 10.0_f64.powf(w)).collect());
+            Box::new(move |w| (10.0_f64.powf(w) / median).ln_1p())
+        }
+        (_, Transform::Log1p) => {
+            let median = median(positive().collect());
+            Box::new(move |w| (w / median).ln_1p())
+        }
+        (_, Transform::LogFloor) => {
+            let smallest = positive().fold(f64::INFINITY, f64::min);
+            Box::new(move |w| {
+                if w > 0.0 {
+                    1.0 + (w / smallest).log10()
+                } else {
+                    0.0
+                }
+            })
+        }
+        (_, Transform::Ranks) => ranks(observed(connectivity).collect()),
+        (_, Transform::FisherZ) => {
+            Box::new(|r| r.clamp(-LARGEST_CORRELATION, LARGEST_CORRELATION).atanh())
+        }
+        (_, Transform::None) => Box::new(|w| w),
+    }
+}
+
+/// The weights that are data: observed and off the diagonal.
+pub(crate) fn observed(connectivity: &Connectivity) -> impl Iterator<Item = f64> + '_ {
+    connectivity
+        .weights()
+        .indexed_iter()
+        .filter(|((i, j), _)| !connectivity.is_self(*i, *j) && !connectivity.is_missing(*i, *j))
+        .map(|(_, w)| *w)
+}
+
+/// The median; 1 where there is nothing, so that dividing by it is harmless.
+fn median(mut values: Vec<f64>) -> f64 {
+    if values.is_empty() {
+        return 1.0;
+    }
+    values.sort_by(f64::total_cmp);
+    let half = values.len() / 2;
+    if values.len() % 2 == 1 {
+        values[half]
+    } else {
+        (values[half - 1] + values[half]) / 2.0
+    }
+}
+
+/// Average ranks as a share of all entries; where zero means no connection, zero stays zero.
+fn ranks(mut sorted: Vec<f64>) -> Box<dyn Fn(f64) -> f64> {
+    sorted.sort_by(f64::total_cmp);
+    let zero_is_least = sorted.first() == Some(&0.0);
+    let share = move |w: f64| {
+        let below = sorted.partition_point(|x| *x < w);
+        let up_to = sorted.partition_point(|x| *x <= w);
+        (below + up_to + 1) as f64 / 2.0 / sorted.len() as f64
+    };
+    let no_connection = if zero_is_least { share(0.0) } else { 0.0 };
+    Box::new(move |w| share(w) - no_connection)
+}

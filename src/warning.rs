@@ -1,0 +1,240 @@
+//! Legal but suspicious: every warning a run can give, worded in one place.
+
+use std::fmt;
+
+use serde::{Serialize, Serializer};
+
+/// Parcels named in a warning before the rest is only counted.
+const NAMED: usize = 6;
+
+/// Something a careful user would want to know before believing the result.
+#[derive(Debug, Clone, PartialEq)]
+pub enum Warning {
+    /// Columns came in another order than rows and were put in the rows' order.
+    ColumnsReordered {
+        /// The species.
+        species: String,
+    },
+    /// Entries on the diagonal, which is not data.
+    DiagonalNotEmpty {
+        /// The species.
+        species: String,
+        /// Non-zero entries on it.
+        entries: usize,
+    },
+    /// Correlations that differ above and below the diagonal.
+    AsymmetricCorrelations {
+        /// The species.
+        species: String,
+        /// Largest difference.
+        largest: f64,
+    },
+    /// Correlations outside [-1, 1], or exactly 1 off the diagonal.
+    CorrelationsBeyondOne {
+        /// The species.
+        species: String,
+        /// How many.
+        entries: usize,
+        /// A parcel pair that has one.
+        example: (String, String),
+    },
+    /// Fractions above 1.
+    FractionsAboveOne {
+        /// The species.
+        species: String,
+        /// How many.
+        entries: usize,
+    },
+    /// Zeros among logarithms that are all negative otherwise.
+    ZeroLogarithms {
+        /// The species.
+        species: String,
+        /// How many.
+        entries: usize,
+    },
+    /// The network falls apart.
+    Components {
+        /// The species.
+        species: String,
+        /// Number of components.
+        components: usize,
+        /// Parcels outside the largest.
+        outside: Vec<String>,
+    },
+    /// Parcels without any connection.
+    SetAside {
+        /// The species.
+        species: String,
+        /// Their labels.
+        parcels: Vec<String>,
+    },
+    /// Two landmarks that are the two sides of one area but may be left out one at a time.
+    SidesNotBlocked {
+        /// One.
+        first: String,
+        /// The other.
+        second: String,
+    },
+    /// Landmarks whose homology rests on connectivity, or on nothing said.
+    Circular {
+        /// Their names.
+        landmarks: Vec<String>,
+    },
+    /// A column of the landmark table that means nothing here.
+    ColumnIgnored {
+        /// Its name.
+        column: String,
+    },
+    /// A landmark that the others contradict.
+    Contradicted {
+        /// Its name.
+        landmark: String,
+        /// Rank of its counterpart seen from a, and among how many.
+        from_a: (usize, usize),
+        /// The same seen from b.
+        from_b: (usize, usize),
+    },
+    /// Fewer blocks of landmarks than span the axes once one is left out.
+    LeftOutUnderdetermined {
+        /// Axes.
+        axes: usize,
+        /// Blocks of landmarks.
+        blocks: usize,
+    },
+    /// The landmarks lie in fewer dimensions than there are axes.
+    LandmarksDoNotSpan {
+        /// The alignment.
+        alignment: &'static str,
+        /// Axes of the joint space.
+        axes: usize,
+        /// Dimensions the landmarks fix.
+        fixed: usize,
+    },
+    /// Resamplings with fewer distinct landmarks than axes + 1.
+    DegenerateReplicates {
+        /// How many.
+        replicates: usize,
+        /// Of how many.
+        of: usize,
+    },
+    /// The embedding yields fewer axes than could be tried.
+    FewAxes {
+        /// The species.
+        species: String,
+        /// Axes it yields.
+        axes: usize,
+    },
+}
+
+impl fmt::Display for Warning {
+    fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
+        match self {
+            Warning::ColumnsReordered { species } => write!(
+                f,
+                "{species}: columns came in another order than rows and were put in the rows' order"
+            ),
+            Warning::DiagonalNotEmpty { species, entries } => write!(
+                f,
+                "{species}: {entries} entries on the diagonal are not zero; a parcel's link with itself is not used"
+            ),
+            Warning::AsymmetricCorrelations { species, largest } => write!(
+                f,
+                "{species}: the correlations are not symmetric (largest difference {largest:.3}); the mean of both halves is used"
+            ),
+            Warning::CorrelationsBeyondOne {
+                species,
+                entries,
+                example,
+            } => write!(
+                f,
+                "{species}: {entries} correlations off the diagonal are 1 or beyond, such as {} with {}; they are cut to {}",
+                example.0,
+                example.1,
+                crate::transform::LARGEST_CORRELATION
+            ),
+            Warning::FractionsAboveOne { species, entries } => write!(
+                f,
+                "{species}: {entries} fractions are above 1; are these counts?"
+            ),
+            Warning::ZeroLogarithms { species, entries } => write!(
+                f,
+                "{species}: {entries} logarithms are exactly 0 (a weight of 1) while all others are negative; if 0 stands for no connection, give the weights themselves"
+            ),
+            Warning::Components {
+                species,
+                components,
+                outside,
+            } => write!(
+                f,
+                "{species}: the network falls into {components} parts; outside the largest: {}",
+                listed(outside)
+            ),
+            Warning::SetAside { species, parcels } => write!(
+                f,
+                "{species}: set aside, no connection at all: {}",
+                listed(parcels)
+            ),
+            Warning::SidesNotBlocked { first, second } => write!(
+                f,
+                "landmarks {first} and {second} look like the two sides of one area; give both the same block, or left-out figures will flatter"
+            ),
+            Warning::Circular { landmarks } => write!(
+                f,
+                "homology of {} rests on connectivity or on nothing said; agreement in connectivity is then partly put in by hand",
+                listed(landmarks)
+            ),
+            Warning::ColumnIgnored { column } => {
+                write!(f, "landmark table: column {column:?} is not used")
+            }
+            Warning::Contradicted {
+                landmark,
+                from_a,
+                from_b,
+            } => write!(
+                f,
+                "landmark {landmark} is contradicted by the others: left out, its counterpart ranks {} of {} and {} of {}; check it, or run again without it",
+                from_a.0, from_a.1, from_b.0, from_b.1
+            ),
+            Warning::LeftOutUnderdetermined { axes, blocks } => write!(
+                f,
+                "with one of {blocks} landmark blocks left out the rest do not fix {axes} axes; left-out figures are poorer than they need be"
+            ),
+            Warning::LandmarksDoNotSpan {
+                alignment,
+                axes,
+                fixed,
+            } => write!(
+                f,
+                "the landmarks fix only {fixed} of {axes} axes of the {alignment} alignment; along the others positions are arbitrary"
+            ),
+            Warning::DegenerateReplicates { replicates, of } => write!(
+                f,
+                "{replicates} of {of} replicates drew fewer distinct landmarks than axes + 1; use resampling bayesian"
+            ),
+            Warning::FewAxes { species, axes } => write!(
+                f,
+                "{species}: the embedding yields only {axes} axes"
+            ),
+        }
+    }
+}
+
+impl Serialize for Warning {
+    fn serialize<S: Serializer>(&self, to: S) -> Result<S::Ok, S::Error> {
+        to.collect_str(self)
+    }
+}
+
+/// The first few names, and how many more there are.
+fn listed(names: &[String]) -> String {
+    let shown = names
+        .iter()
+        .take(NAMED)
+        .cloned()
+        .collect::<Vec<_>>()
+        .join(", ");
+    match names.len().saturating_sub(NAMED) {
+        0 => shown,
+        more => format!("{shown} and {more} more"),
+    }
+}
