@@ -106,9 +106,13 @@ impl Profiles {
         }
         // What is left of a constant profile after centring is rounding, not likeness.
         let floor = gram.diag().iter().copied().fold(0.0, f64::max) * f64::EPSILON * n as f64;
-        let inverse: Array1<f64> = gram
-            .diag()
-            .mapv(|norm| if norm > floor { norm.sqrt().recip() } else { 0.0 });
+        let inverse: Array1<f64> = gram.diag().mapv(|norm| {
+            if norm > floor {
+                norm.sqrt().recip()
+            } else {
+                0.0
+            }
+        });
         for i in 0..n {
             for j in 0..i {
                 let likeness = (gram[(i, j)] * inverse[i] * inverse[j]).clamp(0.0, 1.0);

@@ -55,9 +55,7 @@ impl<T> PerAlignment<T> {
     ///
     /// # Errors
     /// The first error `make` returns.
-    pub fn try_from_fn<E>(
-        mut make: impl FnMut(Alignment) -> Result<T, E>,
-    ) -> Result<Self, E> {
+    pub fn try_from_fn<E>(mut make: impl FnMut(Alignment) -> Result<T, E>) -> Result<Self, E> {
         let procrustes = make(Alignment::Procrustes)?;
         let canonical = make(Alignment::Canonical)?;
         Ok(PerAlignment {

@@ -6,4 +6,4 @@ mod trials;
 
 pub use choose::{choose, Choice, Curve, Point};
 pub use contradiction::contradicted;
-pub use trials::{run, Asked, Way, Placed, Trials};
+pub use trials::{run, Asked, Placed, Trials, Way};

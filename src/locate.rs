@@ -103,9 +103,8 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
     let settled = PerAlignment::from_fn(|alignment| params(alignment, choice.axes[alignment]));
 
     let left_out = left_out::summarise(&material, &ways, &trials, &choice, evidence, &asked);
-    let mut spaces = PerAlignment::from_fn(|alignment| {
-        Space::fit(&material, settled[alignment], &asked)
-    });
+    let mut spaces =
+        PerAlignment::from_fn(|alignment| Space::fit(&material, settled[alignment], &asked));
 
     let ranking = JointRanking::new(&material, ways[choice.way], &open, study);
     let tally = replicates::run(study, &material, &spaces, &ranking, watch)?;
@@ -113,9 +112,8 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         spaces[alignment].standard_errors = tally.standard_errors(alignment);
     }
 
-    let placements = Pair::from_fn(|side| {
-        ranking.placements(side, study, &tally, &spaces[choice.evidence])
-    });
+    let placements =
+        Pair::from_fn(|side| ranking.placements(side, study, &tally, &spaces[choice.evidence]));
     let mut warnings = Vec::new();
     for (landmark, found) in study.landmarks.list().iter().zip(&left_out) {
         if found.contradicted {

@@ -65,11 +65,7 @@ pub fn run(
     let folder = folder.finish(&report::tables(&study, &located), &record)?;
     Ok(Finished {
         summary: report::summary(&study, &located),
-        warnings: study
-            .warnings
-            .into_iter()
-            .chain(located.warnings)
-            .collect(),
+        warnings: study.warnings.into_iter().chain(located.warnings).collect(),
         folder,
     })
 }

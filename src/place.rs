@@ -3,6 +3,7 @@
 use ndarray::{Array2, ArrayView1};
 
 use crate::domain::{Landmarks, Pair, Side};
+use crate::linalg::{count_below, first_least, keep_least};
 
 /// The parcels that are no landmark: the questions, and the candidates of the other species'.
 ///
@@ -38,33 +39,35 @@ pub fn rank(dissimilarities: &[f64], candidate: usize) -> usize {
     let own = dissimilarities[candidate];
     let (before, after) = dissimilarities.split_at(candidate);
     // Ties before it are ahead, ties after it are not.
-    1 + before.iter().filter(|d| **d <= own).count() + after.iter().filter(|d| **d < own).count()
+    1 + count_below(before, own).1 + count_below(after, own).0
 }
 
 /// The best candidate of every row (a's parcels) and of every column (b's parcels); `None` where
 /// there is no candidate.
+///
+/// # Panics
+/// If the rows of the matrix are not contiguous.
 #[must_use]
 pub fn nearest(dissimilarities: &Array2<f64>) -> Pair<Vec<Option<usize>>> {
     let (rows, columns) = dissimilarities.dim();
-    let mut by_row = vec![None; rows];
-    let mut by_column = vec![None; columns];
     let mut least = vec![f64::INFINITY; columns];
-    for (i, row) in dissimilarities.rows().into_iter().enumerate() {
-        let mut best = f64::INFINITY;
-        for (j, &d) in row.iter().enumerate() {
-            if d < best {
-                best = d;
-                by_row[i] = Some(j);
-            }
-            if d < least[j] {
-                least[j] = d;
-                by_column[j] = Some(i);
-            }
-        }
-    }
+    let mut first_row = vec![0; columns];
+    let by_row = dissimilarities
+        .rows()
+        .into_iter()
+        .enumerate()
+        .map(|(i, row)| {
+            let row = row.as_slice().expect("rows are contiguous");
+            keep_least(i as u64, row, &mut least, &mut first_row);
+            first_least(row)
+        })
+        .collect();
     Pair {
         a: by_row,
-        b: by_column,
+        b: first_row
+            .into_iter()
+            .map(|row| (rows > 0).then_some(row as usize))
+            .collect(),
     }
 }
 

@@ -169,10 +169,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
 }
 
 /// Reads and checks one matrix, and finds its parcels.
-fn read_species(
-    described: &SpeciesFile,
-    warnings: &mut Vec<Warning>,
-) -> Result<Raw, InputError> {
+fn read_species(described: &SpeciesFile, warnings: &mut Vec<Warning>) -> Result<Raw, InputError> {
     let source = Source::read(&described.matrix)?;
     let (mut network, more) = input::read_matrix(&source, described.weights, &described.name)?;
     warnings.extend(more);
@@ -302,10 +299,7 @@ fn embed_species(
                 axes,
             )
             .map_err(|embed::DiffusionError::Disconnected| {
-                InputError::new(
-                    Place::file(&raw.file.path),
-                    Problem::Disconnected { side },
-                )
+                InputError::new(Place::file(&raw.file.path), Problem::Disconnected { side })
             })?
         }
     };

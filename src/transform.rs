@@ -41,17 +41,8 @@ pub fn apply(
     transform: Transform,
 ) -> Connectivity {
     let strength = scale(&connectivity, weights, transform);
-    let not_data: Vec<(usize, usize)> = connectivity
-        .weights()
-        .indexed_iter()
-        .map(|(at, _)| at)
-        .filter(|&(i, j)| connectivity.is_self(i, j) || connectivity.is_missing(i, j))
-        .collect();
-    let mut strengths = connectivity.weights_mut();
-    strengths.mapv_inplace(strength);
-    for at in not_data {
-        strengths[at] = 0.0;
-    }
+    connectivity.weights_mut().mapv_inplace(strength);
+    connectivity.clear_what_is_no_data();
     connectivity
 }
 

@@ -95,7 +95,10 @@ impl JointMap {
             let largest = Side::BOTH
                 .into_iter()
                 .map(|side| leading_entry(positions[side].column(axis)))
-                .fold(0.0, |best: f64, x| if x.abs() > best.abs() { x } else { best });
+                .fold(
+                    0.0,
+                    |best: f64, x| if x.abs() > best.abs() { x } else { best },
+                );
             turn[(axis, axis)] = if largest < 0.0 { -1.0 } else { 1.0 };
         }
         self.moved(&Similarity {

@@ -11,15 +11,17 @@ pub const BLOCK: usize = 20;
 /// Runs `step` for replicates `0..replicates` and adds up what it collects.
 ///
 /// Every block starts from `start()`; `add` receives the blocks in order of index. At most a few
-/// blocks for each worker are held at once.
+/// blocks for each worker are held at once. `scratch()` makes what the replicates of a block may
+/// reuse and nothing is kept of.
 ///
 /// # Errors
 /// [`Interrupted`] where the watch says so between blocks.
-pub fn accumulate<T: Send>(
+pub fn accumulate<T: Send, S>(
     replicates: usize,
     watch: &dyn Watch,
     start: impl Fn() -> T + Sync,
-    step: impl Fn(&mut T, usize) + Sync,
+    scratch: impl Fn() -> S + Sync,
+    step: impl Fn(&mut T, &mut S, usize) + Sync,
     mut add: impl FnMut(&mut T, T),
 ) -> Result<T, Interrupted> {
     let mut total = start();
@@ -31,9 +33,9 @@ pub fn accumulate<T: Send>(
         let done: Vec<T> = wave
             .par_iter()
             .map(|&first| {
-                let mut block = start();
+                let (mut block, mut scratch) = (start(), scratch());
                 for replicate in first..(first + BLOCK).min(replicates) {
-                    step(&mut block, replicate);
+                    step(&mut block, &mut scratch, replicate);
                     watch.advance(1);
                 }
                 block

@@ -121,8 +121,11 @@ impl Locate {
     pub fn request(&self) -> Request {
         let given = &self.settings;
         let flag = |on: bool| on.then(|| "true".to_owned());
-        let (quiet, replace, no_report) =
-            (flag(given.quiet), flag(given.replace), flag(given.no_report));
+        let (quiet, replace, no_report) = (
+            flag(given.quiet),
+            flag(given.replace),
+            flag(given.no_report),
+        );
         let mut request = Request::default();
         for (key, value) in [
             ("replicates", &given.replicates),

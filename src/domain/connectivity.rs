@@ -36,6 +36,7 @@ pub struct Connectivity {
     column_labels: Vec<String>,
     weights: Array2<f64>,
     missing: Option<Array2<bool>>,
+    square: bool,
 }
 
 impl Connectivity {
@@ -71,6 +72,7 @@ impl Connectivity {
             }
         }
         Ok(Connectivity {
+            square: row_labels == column_labels,
             row_labels,
             column_labels,
             weights,
@@ -110,26 +112,44 @@ impl Connectivity {
     /// Whether rows and columns are the same parcels in the same order.
     #[must_use]
     pub fn is_square(&self) -> bool {
-        self.row_labels == self.column_labels
+        self.square
     }
 
     /// Whether the entry is the diagonal, which is not data: a parcel's link with itself.
     #[must_use]
     pub fn is_self(&self, row: usize, column: usize) -> bool {
-        if self.is_square() {
+        if self.square {
             row == column
         } else {
             self.row_labels[row] == self.column_labels[column]
         }
     }
 
+    /// Sets every entry that is no data to zero: missing ones and the diagonal.
+    pub(crate) fn clear_what_is_no_data(&mut self) {
+        let (rows, columns) = self.weights.dim();
+        for i in 0..rows {
+            for j in 0..columns {
+                if self.is_self(i, j) || self.is_missing(i, j) {
+                    self.weights[(i, j)] = 0.0;
+                }
+            }
+        }
+    }
+
     /// The same data with the named rows and columns only, in the order given.
     #[must_use]
     pub fn select(&self, rows: &[usize], columns: &[usize]) -> Connectivity {
-        let pick = |labels: &[String], at: &[usize]| at.iter().map(|&i| labels[i].clone()).collect();
+        let pick =
+            |labels: &[String], at: &[usize]| at.iter().map(|&i| labels[i].clone()).collect();
+        let (row_labels, column_labels): (Vec<String>, Vec<String>) = (
+            pick(&self.row_labels, rows),
+            pick(&self.column_labels, columns),
+        );
         Connectivity {
-            row_labels: pick(&self.row_labels, rows),
-            column_labels: pick(&self.column_labels, columns),
+            square: row_labels == column_labels,
+            row_labels,
+            column_labels,
             weights: Array2::from_shape_fn((rows.len(), columns.len()), |(i, j)| {
                 self.weights[(rows[i], columns[j])]
             }),

@@ -21,9 +21,10 @@ const SMALLEST_SHARE: f64 = 1e-14;
 /// The leading principal components of profiles `(parcels, entries)`.
 ///
 /// Axes come from linfa-reduction. Its variances divide by the number of components, and its ratio
-/// counts the kept ones only, so both are recomputed: variance = squared singular value / (parcels
-/// - 1), share = of the variance of all components. Where its iterative solver cannot be used or
-/// has not converged (it does not say so), the axes come from a dense decomposition instead.
+/// counts the kept ones only, so both are recomputed: the variance of a component is its squared
+/// singular value over the number of parcels less one, its share is of the variance of all
+/// components. Where its iterative solver cannot be used or has not converged (it does not say so),
+/// the axes come from a dense decomposition instead.
 #[must_use]
 pub fn components(profiles: &Array2<f64>, axes: usize) -> Embedding {
     let n = profiles.nrows();

@@ -63,7 +63,9 @@ pub fn diffusion_map(
 ) -> Result<Embedding, DiffusionError> {
     let n = affinity.nrows();
     let axes = axes.min(n.saturating_sub(1));
-    let density = affinity.sum_axis(Axis(1)).mapv(|q| q.powf(-density_exponent));
+    let density = affinity
+        .sum_axis(Axis(1))
+        .mapv(|q| q.powf(-density_exponent));
     scale_both_sides(&mut affinity, &density);
     let degree = affinity.sum_axis(Axis(1));
     scale_both_sides(&mut affinity, &degree.mapv(|d| d.sqrt().recip()));
@@ -81,13 +83,11 @@ pub fn diffusion_map(
         .take_while(|l| **l > SMALLEST_EIGENVALUE)
         .count();
     let eigenvalues = Array1::from_iter(eigenvalues.iter().take(kept).map(|l| l.min(1.0)));
-    if time == DiffusionTime::AllScales
-        && eigenvalues.iter().any(|l| 1.0 - l < SMALLEST_EIGENVALUE)
+    if time == DiffusionTime::AllScales && eigenvalues.iter().any(|l| 1.0 - l < SMALLEST_EIGENVALUE)
     {
         return Err(DiffusionError::Disconnected);
     }
-    let mut coordinates =
-        Array2::from_shape_fn((n, kept), |(i, k)| vectors[(i, k)] / trivial[i]);
+    let mut coordinates = Array2::from_shape_fn((n, kept), |(i, k)| vectors[(i, k)] / trivial[i]);
     fix_signs(&mut coordinates);
     for (mut column, l) in coordinates.columns_mut().into_iter().zip(&eigenvalues) {
         let weight = time.weight(*l);

@@ -5,6 +5,7 @@ use ndarray::Array2;
 use super::{Evidence, Fitted, Material, Unavailable};
 use crate::align::{self, Params};
 use crate::bootstrap::Stream;
+use crate::linalg::squared_distances;
 
 /// Squared distance between positions in a joint space.
 #[derive(Debug, Clone, Copy, PartialEq)]
@@ -21,16 +22,19 @@ impl Evidence for JointDistance {
         weights: &[f64],
         _chance: &mut Stream,
     ) -> Result<Box<dyn Fitted + 'm>, Unavailable> {
-        let map = align::fit(self.0, material.anchors.as_ref(), weights).map_err(|e| {
-            Unavailable {
+        let map =
+            align::fit(self.0, material.anchors.as_ref(), weights).map_err(|e| Unavailable {
                 kind: self.name(),
                 why: e.to_string(),
-            }
-        })?;
+            })?;
         let positions = map.positions(material.embedded());
         Ok(Box::new(Positions {
             a: positions.a,
-            b_by_axis: positions.b.reversed_axes().as_standard_layout().into_owned(),
+            b_by_axis: positions
+                .b
+                .reversed_axes()
+                .as_standard_layout()
+                .into_owned(),
         }))
     }
 }
@@ -47,17 +51,15 @@ impl Fitted for Positions {
         let others = Array2::from_shape_fn((self.b_by_axis.nrows(), b.len()), |(axis, j)| {
             self.b_by_axis[(axis, b[j])]
         });
-        out.fill(0.0);
+        let others = others.as_slice().expect("gathered row by row above");
         for (mut row, &parcel) in out.rows_mut().into_iter().zip(a) {
             let row = row.as_slice_mut().expect("rows of `out` are contiguous");
-            for (axis, &x) in self.a.row(parcel).iter().enumerate() {
-                let others = others.row(axis);
-                let others = others.as_slice().expect("gathered row by row above");
-                for (sum, y) in row.iter_mut().zip(others) {
-                    let gap = x - y;
-                    *sum += gap * gap;
-                }
-            }
+            let own = self.a.row(parcel);
+            squared_distances(
+                own.as_slice().expect("positions are stored row by row"),
+                others,
+                row,
+            );
         }
     }
 }

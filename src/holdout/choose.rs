@@ -37,11 +37,14 @@ pub struct Choice {
     pub way: usize,
 }
 
-/// Chooses by left-out landmarks, `without` one block altogether where asked. For each alignment the
-/// fewest axes whose error exceeds the least by no more than one standard error of the difference
-/// (over blocks; the one-standard-error rule of Breiman et al. 1984, on paired differences because
-/// the same blocks judge every number of axes). Then the alignment with the smaller error, unless
-/// `evidence` names one.
+/// Chooses by left-out landmarks, `without` one block altogether where asked.
+///
+/// Errors of few landmarks are rough, so differences within one standard error (of the difference,
+/// over blocks: the same blocks judge every way) decide nothing. For each alignment that leaves
+/// several numbers of axes, of which the largest is taken: too few axes put different parcels in one
+/// place, while a surplus is held in check by the ridge and by the axes' own decreasing weight. Of
+/// both alignments canonical correlation is taken, unless Procrustes is better by more than the
+/// standard error or `evidence` names one. docs/method.md has the measurements behind both rules.
 ///
 /// # Panics
 /// If `ways` lacks an alignment.
@@ -65,15 +68,13 @@ pub fn choose(
             .expect("every alignment is tried");
         let (at, errors) = tried
             .iter()
-            .find(|(_, errors)| {
-                let excess: Vec<f64> = errors.iter().zip(least).map(|(x, y)| x - y).collect();
-                mean(&excess) <= standard_error(&excess)
-            })
+            .filter(|(_, errors)| !clearly_less(least, errors))
+            .max_by_key(|(at, _)| ways[*at].axes())
             .expect("the least itself qualifies");
-        (*at, mean(errors))
+        (*at, errors.clone())
     });
     let evidence = evidence.unwrap_or_else(|| {
-        if best.procrustes.1 < best.canonical.1 {
+        if clearly_less(&best.procrustes.1, &best.canonical.1) {
             Alignment::Procrustes
         } else {
             Alignment::Canonical
@@ -84,6 +85,12 @@ pub fn choose(
         evidence,
         way: best[evidence].0,
     }
+}
+
+/// Whether errors are smaller than others by more than the standard error of the difference.
+fn clearly_less(errors: &[f64], others: &[f64]) -> bool {
+    let excess: Vec<f64> = others.iter().zip(errors).map(|(x, y)| x - y).collect();
+    mean(&excess) > standard_error(&excess)
 }
 
 impl Curve {

@@ -1,8 +1,8 @@
 //! Every way of ranking, fitted without each block of landmarks and without each pair of blocks.
 
 use ndarray::Array2;
-use rayon::prelude::*;
 use rand::Rng;
+use rayon::prelude::*;
 
 use crate::align::{Alignment, Params};
 use crate::bootstrap::{Purpose, Stream};
@@ -95,6 +95,9 @@ impl Placed {
     }
 }
 
+/// The landmarks left out in one fit, and where their counterparts came.
+type Found = Vec<(usize, Pair<Placed>)>;
+
 /// Error of a landmark: the mean of both directions.
 fn error(placed: Pair<Placed>) -> f64 {
     (placed.a.error() + placed.b.error()) / 2.0
@@ -157,7 +160,7 @@ pub fn run(
         .filter(|(i, j)| i == j || needs_nesting)
         .collect();
     watch.begin("left-out landmarks", pairs.len());
-    let placed: Vec<Vec<Vec<(usize, Pair<Placed>)>>> = pairs
+    let placed: Vec<Vec<Found>> = pairs
         .par_iter()
         .map(|&(i, j)| {
             let found = if watch.interrupted() {

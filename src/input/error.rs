@@ -78,17 +78,20 @@ impl fmt::Display for Place {
 #[derive(Debug, Clone, PartialEq, thiserror::Error)]
 #[error("{place}: {problem}")]
 pub struct InputError {
-    /// Where.
-    pub place: Place,
+    /// Where; boxed to keep results small.
+    pub place: Box<Place>,
     /// What.
-    pub problem: Problem,
+    pub problem: Box<Problem>,
 }
 
 impl InputError {
     /// Puts place and problem together.
     #[must_use]
     pub fn new(place: Place, problem: Problem) -> Self {
-        InputError { place, problem }
+        InputError {
+            place: Box::new(place),
+            problem: Box::new(problem),
+        }
     }
 }
 
@@ -226,7 +229,10 @@ pub enum Problem {
         first: String,
     },
     /// A row label that no column carries, or the reverse.
-    #[error("{axis} label {label:?} is no {other} label{}; rows and columns must name the same parcels", hint(near))]
+    #[error(
+        "{axis} label {label:?} is no {other} label{}; rows and columns must name the same parcels",
+        hint(near)
+    )]
     LabelMismatch {
         /// `row` or `column`.
         axis: &'static str,

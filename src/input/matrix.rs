@@ -76,9 +76,7 @@ pub fn read(
 }
 
 /// Takes labels, none empty, none twice.
-fn labels<'t>(
-    cells: impl Iterator<Item = (&'t str, Place)>,
-) -> Result<Vec<String>, InputError> {
+fn labels<'t>(cells: impl Iterator<Item = (&'t str, Place)>) -> Result<Vec<String>, InputError> {
     let mut first: HashMap<&str, Place> = HashMap::new();
     let mut labels = Vec::new();
     for (label, place) in cells {

@@ -22,7 +22,12 @@ pub fn nearest_few<'k>(found: &str, known: impl IntoIterator<Item = &'k str>) ->
     let allowed = (found.chars().count() / 3).max(1);
     let mut close: Vec<(usize, &str)> = known
         .into_iter()
-        .map(|word| (strsim::damerau_levenshtein(&lower, &word.to_lowercase()), word))
+        .map(|word| {
+            (
+                strsim::damerau_levenshtein(&lower, &word.to_lowercase()),
+                word,
+            )
+        })
         .filter(|(edits, _)| *edits <= allowed)
         .collect();
     close.sort_unstable();
@@ -41,6 +46,9 @@ mod tests {
             ["lh-precentral", "rh-precentral", "lh-postcentral"]
         );
         assert!(nearest_few("thalamus", known).is_empty());
-        assert_eq!(nearest("fraction", ["counts", "fractions"]), Some("fractions"));
+        assert_eq!(
+            nearest("fraction", ["counts", "fractions"]),
+            Some("fractions")
+        );
     }
 }

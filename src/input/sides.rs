@@ -46,14 +46,12 @@ fn differ_by_letter(one: &str, other: &str) -> bool {
         };
         Some((side.to_string(), letters.into_iter().collect()))
     };
-    [true, false].into_iter().any(|at_end| {
-        match (cut(one, at_end), cut(other, at_end)) {
-            (Some((x, rest_x)), Some((y, rest_y))) => {
-                rest_x == rest_y && sides(Some(&x), Some(&y))
-            }
+    [true, false]
+        .into_iter()
+        .any(|at_end| match (cut(one, at_end), cut(other, at_end)) {
+            (Some((x, rest_x)), Some((y, rest_y))) => rest_x == rest_y && sides(Some(&x), Some(&y)),
             _ => false,
-        }
-    })
+        })
 }
 
 #[cfg(test)]
@@ -70,7 +68,12 @@ mod tests {
         ] {
             assert!(differ_only_by_side(one, other), "{one} {other}");
         }
-        for (one, other) in [("V1", "V2"), ("lh-V1", "rh-V2"), ("lh-V1", "lh-V1"), ("AL", "AR")] {
+        for (one, other) in [
+            ("V1", "V2"),
+            ("lh-V1", "rh-V2"),
+            ("lh-V1", "lh-V1"),
+            ("AL", "AR"),
+        ] {
             assert!(!differ_only_by_side(one, other), "{one} {other}");
         }
     }

@@ -7,9 +7,9 @@ use toml_edit::{Document, Item, TableLike};
 use super::error::{InputError, Place, Problem};
 use super::nearest::nearest;
 use super::source::{InputFile, Source};
+use crate::affinity::Likeness;
 use crate::domain::{Choice, Pair, Share, Side, Transform, WeightKind};
 use crate::settings::{BadSetting, Request};
-use crate::affinity::Likeness;
 
 /// One species as its study file describes it.
 #[derive(Debug, Clone, PartialEq)]

@@ -42,13 +42,14 @@ fn partial(matrix: &mut Array2<f64>, count: usize) -> Option<(Array1<f64>, Array
     let solved = {
         let view = as_faer(matrix.view());
         // A fixed vector without structure of its own, so that it is orthogonal to no eigenvector.
-        let start = Col::from_fn(n, |i| ((i as f64 + 1.0) * 0.618_033_988_749_895).fract() - 0.3);
+        let start = Col::from_fn(n, |i| {
+            ((i as f64 + 1.0) * 0.618_033_988_749_895).fract() - 0.3
+        });
         let start = &start * faer::Scale(1.0 / start.norm_l2());
         let mut vectors = Mat::zeros(n, count);
         let mut values = vec![0.0; count];
         let params = PartialEigenParams::default();
-        let mut memory =
-            MemBuffer::new(partial_eigen_scratch(&view, count, Par::Seq, params));
+        let mut memory = MemBuffer::new(partial_eigen_scratch(&view, count, Par::Seq, params));
         let info = partial_self_adjoint_eigen(
             vectors.as_mut(),
             &mut values,

@@ -13,7 +13,8 @@ pub fn fix_signs(columns: &mut Array2<f64>) {
 
 /// The entry of largest magnitude; 0 for an empty column.
 pub fn leading_entry(column: ArrayView1<'_, f64>) -> f64 {
-    column
-        .iter()
-        .fold(0.0, |best: f64, x| if x.abs() > best.abs() { *x } else { best })
+    column.iter().fold(
+        0.0,
+        |best: f64, x| if x.abs() > best.abs() { *x } else { best },
+    )
 }

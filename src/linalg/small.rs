@@ -40,7 +40,11 @@ pub fn principal_root_inverse(matrix: DMatrix<f64>) -> DMatrix<f64> {
     let floor = eigen.eigenvalues.max() * RANK_TOLERANCE;
     let mut scaled = eigen.eigenvectors.clone();
     for (mut column, &value) in scaled.column_iter_mut().zip(eigen.eigenvalues.iter()) {
-        column *= if value > floor { value.sqrt().recip() } else { 0.0 };
+        column *= if value > floor {
+            value.sqrt().recip()
+        } else {
+            0.0
+        };
     }
     scaled * eigen.eigenvectors.transpose()
 }

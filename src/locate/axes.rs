@@ -127,7 +127,11 @@ fn left_out_correlations(
 }
 
 /// Weighted Pearson correlation; `None` where a side does not vary.
-fn correlation(x: ArrayView1<'_, f64>, y: ArrayView1<'_, f64>, weights: &Array1<f64>) -> Option<f64> {
+fn correlation(
+    x: ArrayView1<'_, f64>,
+    y: ArrayView1<'_, f64>,
+    weights: &Array1<f64>,
+) -> Option<f64> {
     let total = weights.sum();
     let mean = |z: ArrayView1<'_, f64>| z.dot(weights) / total;
     let (x, y) = (&x - mean(x), &y - mean(y));

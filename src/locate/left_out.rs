@@ -50,12 +50,7 @@ pub fn summarise(
         .iter()
         .enumerate()
         .map(|(at, landmark)| {
-            distance_without(
-                material,
-                ways[choice.way].0,
-                landmark.block,
-                asked.of(at),
-            )
+            distance_without(material, ways[choice.way].0, landmark.block, asked.of(at))
         })
         .collect();
     let flags = contradicted(&in_one_space, &trials.single[choice.way]);

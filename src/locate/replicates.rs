@@ -90,7 +90,18 @@ pub fn run(
         settings.replicates,
         watch,
         || Tally::new(&ranking.open, spaces),
-        |tally, replicate| one(tally, replicate, study, material, spaces, ranking),
+        || Array2::zeros((ranking.open.a.len(), ranking.open.b.len())),
+        |tally, dissimilarities, replicate| {
+            one(
+                tally,
+                dissimilarities,
+                replicate,
+                study,
+                material,
+                spaces,
+                ranking,
+            );
+        },
         Tally::add,
     );
     watch.end();
@@ -99,6 +110,7 @@ pub fn run(
 
 fn one(
     tally: &mut Tally,
+    dissimilarities: &mut Array2<f64>,
     replicate: usize,
     study: &Study,
     material: &Material<'_>,
@@ -118,21 +130,21 @@ fn one(
         tally.degenerate += 1;
     }
     for alignment in Alignment::BOTH {
-        stray(&mut tally.spreads[alignment], &spaces[alignment], material, &weights);
+        stray(
+            &mut tally.spreads[alignment],
+            &spaces[alignment],
+            material,
+            &weights,
+        );
     }
 
     let mut chance = Stream::new(settings.seed, Purpose::Evidence, index);
-    let Ok(fitted) = ranking
-        .way
-        .evidence()
-        .fit(material, &weights, &mut chance)
-    else {
+    let Ok(fitted) = ranking.way.evidence().fit(material, &weights, &mut chance) else {
         return;
     };
     let open = &ranking.open;
-    let mut dissimilarities = Array2::zeros((open.a.len(), open.b.len()));
-    fitted.dissimilarities(&open.a, &open.b, &mut dissimilarities);
-    let nearest = place::nearest(&dissimilarities);
+    fitted.dissimilarities(&open.a, &open.b, dissimilarities);
+    let nearest = place::nearest(dissimilarities);
     for side in Side::BOTH {
         for (parcel, first) in nearest[side].iter().enumerate() {
             if let Some(first) = first {
@@ -177,12 +189,7 @@ const SORT_FROM: usize = 10;
 /// How far every parcel strays from its full-sample position relative to the other species: each
 /// replicate is first superimposed on the full sample by the *other* species' parcels. So neither
 /// species is the fixed one, and no error is zero by construction.
-fn stray(
-    spreads: &mut Pair<Spread>,
-    space: &Space,
-    material: &Material<'_>,
-    weights: &[f64],
-) {
+fn stray(spreads: &mut Pair<Spread>, space: &Space, material: &Material<'_>, weights: &[f64]) {
     let Ok(map) = align::fit(space.params, material.anchors.as_ref(), weights) else {
         return;
     };

@@ -46,7 +46,10 @@ fn heading(text: &mut String, study: &Study) {
     line(text, format_args!("{}", study.title));
     line(
         text,
-        format_args!("{}. {}. {landmarks} landmarks{in_blocks}.", species.a, species.b),
+        format_args!(
+            "{}. {}. {landmarks} landmarks{in_blocks}.",
+            species.a, species.b
+        ),
     );
 }
 
@@ -65,7 +68,9 @@ fn trust(text: &mut String, study: &Study, located: &Located) {
     line(text, format_args!(""));
     line(
         text,
-        format_args!("Can the landmarks be trusted? Each left out, every choice made again without it:"),
+        format_args!(
+            "Can the landmarks be trusted? Each left out, every choice made again without it:"
+        ),
     );
     let names = Pair::from_fn(|side| short(study.species[side].parcels.species()));
     line(
@@ -97,7 +102,8 @@ fn trust(text: &mut String, study: &Study, located: &Located) {
         );
     }
     let reciprocal = mean(&|p| 1.0 / p.rank as f64);
-    let chance = mean(&|p| (1..=p.candidates).map(|r| 1.0 / r as f64).sum::<f64>() / p.candidates as f64);
+    let chance =
+        mean(&|p| (1..=p.candidates).map(|r| 1.0 / r as f64).sum::<f64>() / p.candidates as f64);
     line(
         text,
         format_args!(
@@ -142,7 +148,9 @@ fn trust(text: &mut String, study: &Study, located: &Located) {
 
 /// The strongest and the weakest correspondences, and what fits nowhere.
 fn correspondences(text: &mut String, study: &Study, located: &Located) {
-    let firsts: Vec<(&Placement, &Counterpart)> = located.placements.a
+    let firsts: Vec<(&Placement, &Counterpart)> = located
+        .placements
+        .a
         .iter()
         .filter_map(|p| Some((p, p.counterparts.first()?)))
         .collect();
@@ -193,7 +201,11 @@ fn correspondences(text: &mut String, study: &Study, located: &Located) {
         let mut far: Vec<(&Placement, f64)> = located.placements[side]
             .iter()
             .filter_map(|p| {
-                let least = p.counterparts.iter().map(|c| c.distance).min_by(f64::total_cmp)?;
+                let least = p
+                    .counterparts
+                    .iter()
+                    .map(|c| c.distance)
+                    .min_by(f64::total_cmp)?;
                 Some((p, least))
             })
             .collect();
@@ -209,7 +221,11 @@ fn correspondences(text: &mut String, study: &Study, located: &Located) {
         };
         line(
             text,
-            format_args!("  {}: {}{aside}", short(parcels.species()), named.join(", ")),
+            format_args!(
+                "  {}: {}{aside}",
+                short(parcels.species()),
+                named.join(", ")
+            ),
         );
     }
 }

@@ -1,11 +1,12 @@
 //! Writes the files of the demo study into a directory.
 //!
 //! Usage: `cargo run --example make_demo -- [--seed N] DIR`
+#![allow(clippy::print_stderr)] // A program of its own, small enough to speak for itself.
 
 use std::path::{Path, PathBuf};
 use std::process::ExitCode;
 
-#[path = "demo_study/mod.rs"]
+#[path = "mod.rs"]
 mod demo_study;
 
 /// How the program is called.

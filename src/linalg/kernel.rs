@@ -1,0 +1,197 @@
+//! The inner loops of ranking, compiled for the widest vectors the processor has.
+//!
+//! Vector width changes the speed and no bit: every sum runs in the same order, without fused
+//! multiply-add.
+
+use pulp::{Arch, Simd, WithSimd};
+
+/// Columns treated together, enough to fill the registers of any processor.
+const LANES: usize = 16;
+
+/// Squared distances from one point to many: `point` has one coordinate an axis, `others` holds axis
+/// after axis the coordinates of `out.len()` points.
+pub fn squared_distances(point: &[f64], others: &[f64], out: &mut [f64]) {
+    Arch::new().dispatch(SquaredDistances { point, others, out });
+}
+
+/// Index of the least entry, the first of equals; `None` where no entry is below infinity.
+#[must_use]
+pub fn first_least(values: &[f64]) -> Option<usize> {
+    Arch::new().dispatch(FirstLeast { values })
+}
+
+/// Keeps for every column the least value so far and the row that had it first.
+pub fn keep_least(row: u64, values: &[f64], least: &mut [f64], rows: &mut [u64]) {
+    Arch::new().dispatch(KeepLeast {
+        row,
+        values,
+        least,
+        rows,
+    });
+}
+
+/// How many values are below a bound, and how many are not above it.
+#[must_use]
+pub fn count_below(values: &[f64], bound: f64) -> (usize, usize) {
+    Arch::new().dispatch(CountBelow { values, bound })
+}
+
+struct SquaredDistances<'s> {
+    point: &'s [f64],
+    others: &'s [f64],
+    out: &'s mut [f64],
+}
+
+impl WithSimd for SquaredDistances<'_> {
+    type Output = ();
+
+    // Inlined into a function compiled for wider vectors: that is what widens the loops.
+    #[inline(always)]
+    fn with_simd<S: Simd>(self, _simd: S) {
+        let SquaredDistances { point, others, out } = self;
+        let count = out.len();
+        let whole = count - count % LANES;
+        for first in (0..whole).step_by(LANES) {
+            let mut sums = [0.0; LANES];
+            for (axis, &x) in point.iter().enumerate() {
+                let others = &others[axis * count + first..][..LANES];
+                for lane in 0..LANES {
+                    let gap = x - others[lane];
+                    sums[lane] += gap * gap;
+                }
+            }
+            out[first..first + LANES].copy_from_slice(&sums);
+        }
+        for j in whole..count {
+            let mut sum = 0.0;
+            for (axis, &x) in point.iter().enumerate() {
+                let gap = x - others[axis * count + j];
+                sum += gap * gap;
+            }
+            out[j] = sum;
+        }
+    }
+}
+
+struct FirstLeast<'s> {
+    values: &'s [f64],
+}
+
+impl WithSimd for FirstLeast<'_> {
+    type Output = Option<usize>;
+
+    #[inline(always)]
+    fn with_simd<S: Simd>(self, _simd: S) -> Option<usize> {
+        let lesser = |x: f64, y: f64| if x < y { x } else { y };
+        let mut least = [f64::INFINITY; LANES];
+        let chunks = self.values.chunks_exact(LANES);
+        let mut overall = f64::INFINITY;
+        for &value in chunks.remainder() {
+            overall = lesser(value, overall);
+        }
+        for chunk in chunks {
+            for lane in 0..LANES {
+                least[lane] = lesser(chunk[lane], least[lane]);
+            }
+        }
+        for value in least {
+            overall = lesser(value, overall);
+        }
+        if overall == f64::INFINITY {
+            return None;
+        }
+        self.values.iter().position(|&value| value == overall)
+    }
+}
+
+struct KeepLeast<'s> {
+    row: u64,
+    values: &'s [f64],
+    least: &'s mut [f64],
+    rows: &'s mut [u64],
+}
+
+impl WithSimd for KeepLeast<'_> {
+    type Output = ();
+
+    #[inline(always)]
+    fn with_simd<S: Simd>(self, _simd: S) {
+        let KeepLeast {
+            row,
+            values,
+            least,
+            rows,
+        } = self;
+        let count = values.len();
+        let (least, rows) = (&mut least[..count], &mut rows[..count]);
+        for j in 0..count {
+            let better = values[j] < least[j];
+            least[j] = if better { values[j] } else { least[j] };
+            rows[j] = if better { row } else { rows[j] };
+        }
+    }
+}
+
+struct CountBelow<'s> {
+    values: &'s [f64],
+    bound: f64,
+}
+
+impl WithSimd for CountBelow<'_> {
+    type Output = (usize, usize);
+
+    #[inline(always)]
+    fn with_simd<S: Simd>(self, _simd: S) -> (usize, usize) {
+        let (mut below, mut up_to) = (0_u64, 0_u64);
+        for &value in self.values {
+            below += u64::from(value < self.bound);
+            up_to += u64::from(value <= self.bound);
+        }
+        (below as usize, up_to as usize)
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn vectors_give_the_plain_loop_to_the_bit() {
+        for count in [1, 7, 16, 33, 100] {
+            let axes = 5;
+            let wave = |i: usize| (i as f64 * 1.37).sin() * 10.0;
+            let point: Vec<f64> = (0..axes).map(wave).collect();
+            let others: Vec<f64> = (0..axes * count).map(|i| wave(i + 3)).collect();
+            let mut out = vec![f64::NAN; count];
+            squared_distances(&point, &others, &mut out);
+            for (j, found) in out.iter().enumerate() {
+                let mut sum = 0.0;
+                for (axis, x) in point.iter().enumerate() {
+                    let gap = x - others[axis * count + j];
+                    sum += gap * gap;
+                }
+                assert_eq!(*found, sum);
+            }
+            let plain = (0..count).min_by(|&i, &j| out[i].total_cmp(&out[j]));
+            assert_eq!(first_least(&out), plain);
+            let bound = out[count / 2];
+            assert_eq!(
+                count_below(&out, bound),
+                (
+                    out.iter().filter(|x| **x < bound).count(),
+                    out.iter().filter(|x| **x <= bound).count()
+                )
+            );
+        }
+    }
+
+    #[test]
+    fn the_first_of_equals_is_kept() {
+        assert_eq!(first_least(&[2.0, 1.0, 1.0]), Some(1));
+        assert_eq!(first_least(&[f64::INFINITY]), None);
+        let (mut least, mut rows) = (vec![f64::INFINITY; 2], vec![0; 2]);
+        keep_least(1, &[3.0, 2.0], &mut least, &mut rows);
+        keep_least(2, &[3.0, 1.0], &mut least, &mut rows);
+        assert_eq!((least, rows), (vec![3.0, 1.0], vec![1, 2]));
+    }
+}
