@@ -373,6 +373,44 @@ fn entries_that_are_no_weight() {
             &["a.csv, line 4, column 6", "found \"12 mm\"", "units"],
         ),
         case(
+            "text, after blank lines",
+            |s| {
+                s.set("a.csv", 8, 2, "many");
+                s.edit("a.csv", |text| {
+                    text.replace("\nmotor", "\n\nmotor")
+                        .replace("\ntemporal", "\n\n \n\ntemporal")
+                });
+            },
+            &["a.csv, line 12, column 2 (temporal to calcarine): "],
+        ),
+        case(
+            "text, lines ending as on Windows",
+            |s| {
+                s.set("a.csv", 8, 2, "many");
+                s.edit("a.csv", |text| text.replace('\n', "\r\n"));
+            },
+            &["a.csv, line 8, column 2 (temporal to calcarine): "],
+        ),
+        case(
+            "text, lines ending as on Windows, some blank",
+            |s| {
+                s.set("a.csv", 8, 2, "many");
+                s.edit("a.csv", |text| {
+                    text.replace("\ntemporal", "\n\ntemporal")
+                        .replace('\n', "\r\n")
+                });
+            },
+            &["a.csv, line 9, column 2 (temporal to calcarine): "],
+        ),
+        case(
+            "text, lines ending as on old Macs",
+            |s| {
+                s.set("a.csv", 8, 2, "many");
+                s.edit("a.csv", |text| text.replace('\n', "\r"));
+            },
+            &["a.csv, line 8, column 2 (temporal to calcarine): "],
+        ),
+        case(
             "inf",
             |s| s.set("a.csv", 11, 2, "inf"),
             &[

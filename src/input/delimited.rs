@@ -67,6 +67,42 @@ pub struct Row {
     pub cells: StringRecord,
 }
 
+/// Counts lines. The csv reader's own count is that of the place where it went on reading, which
+/// lies before the row itself where blank lines or the second half of a `\r\n` come between.
+struct Lines<'t> {
+    text: &'t [u8],
+    at: usize,
+    line: u64,
+}
+
+impl<'t> Lines<'t> {
+    fn of(text: &'t str) -> Self {
+        Lines {
+            text: text.as_bytes(),
+            at: 0,
+            line: 1,
+        }
+    }
+
+    /// The line of the first row at or after a byte; bytes must not go back.
+    fn line_from(&mut self, byte: u64) -> u64 {
+        let byte = usize::try_from(byte).unwrap_or(usize::MAX);
+        while let Some(&here) = self.text.get(self.at) {
+            let ends_line = match here {
+                b'\n' => true,
+                b'\r' => self.text.get(self.at + 1) != Some(&b'\n'),
+                _ => false,
+            };
+            if self.at >= byte && here != b'\n' && here != b'\r' {
+                break;
+            }
+            self.line += u64::from(ends_line);
+            self.at += 1;
+        }
+        self.line
+    }
+}
+
 /// A table as read: a header and rows of the same width.
 #[derive(Debug)]
 pub struct Table {
@@ -92,11 +128,12 @@ pub fn parse(source: &Source) -> Result<Table, InputError> {
         .from_reader(source.text.as_bytes());
     let mut rows = Vec::new();
     let mut cells = StringRecord::new();
+    let mut lines = Lines::of(&source.text);
     loop {
         match reader.read_record(&mut cells) {
             Ok(false) => break,
             Ok(true) => rows.push(Row {
-                line: cells.position().map_or(0, csv::Position::line),
+                line: lines.line_from(cells.position().map_or(0, csv::Position::byte)),
                 cells: cells.clone(),
             }),
             Err(e) => {
