@@ -254,6 +254,37 @@ fn matrices_of_the_wrong_shape() {
             ],
         ),
         case(
+            "header without a cell above the row labels",
+            |s| {
+                s.edit_table("a.csv", |rows| {
+                    rows[0].remove(0);
+                });
+            },
+            &[
+                "a.csv, line 1: ",
+                "header has 10 cells",
+                "every row below it 11",
+                "above the row labels",
+            ],
+        ),
+        case(
+            "quote without its partner",
+            |s| s.set("a.csv", 4, 1, "\"motor"),
+            &[
+                "a.csv, line 4, column 1: ",
+                "goes on over the end of the line",
+                "close the quote",
+            ],
+        ),
+        case(
+            "label over two lines",
+            |s| s.set("landmarks.csv", 5, 1, "\"high\nvalue\""),
+            &[
+                "landmarks.csv, line 5, column 1: ",
+                "keep the cell on one line",
+            ],
+        ),
+        case(
             "a row too few",
             |s| {
                 s.edit_table("a.csv", |rows| {

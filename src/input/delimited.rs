@@ -117,7 +117,7 @@ pub struct Table {
 /// Splits a text into rows, all as wide as the header.
 ///
 /// # Errors
-/// [`InputError`] for a single column or a ragged row.
+/// [`InputError`] for a single column, a cell over several lines or a ragged row.
 pub fn parse(source: &Source) -> Result<Table, InputError> {
     let separator = Separator::of(&source.text);
     let mut reader = csv::ReaderBuilder::new()
@@ -132,10 +132,20 @@ pub fn parse(source: &Source) -> Result<Table, InputError> {
     loop {
         match reader.read_record(&mut cells) {
             Ok(false) => break,
-            Ok(true) => rows.push(Row {
-                line: lines.line_from(cells.position().map_or(0, csv::Position::byte)),
-                cells: cells.clone(),
-            }),
+            Ok(true) => {
+                let line = lines.line_from(cells.position().map_or(0, csv::Position::byte));
+                // A quote without its partner swallows the lines below it.
+                if let Some(at) = cells.iter().position(|c| c.contains(['\n', '\r'])) {
+                    return Err(InputError::new(
+                        Place::line(source.path(), line).column(at + 1),
+                        Problem::LineBreak,
+                    ));
+                }
+                rows.push(Row {
+                    line,
+                    cells: cells.clone(),
+                });
+            }
             Err(e) => {
                 return Err(InputError::new(
                     Place::file(source.path()),
@@ -163,13 +173,23 @@ pub fn parse(source: &Source) -> Result<Table, InputError> {
     for row in &rows {
         if row.cells.len() != header.cells.len() {
             let place = Place::line(source.path(), row.line);
+            let expected = header.cells.len();
+            if rows.iter().all(|row| row.cells.len() == expected + 1) {
+                return Err(InputError::new(
+                    Place::line(source.path(), header.line),
+                    Problem::HeaderShort {
+                        header: expected,
+                        rows: expected + 1,
+                    },
+                ));
+            }
             return Err(InputError::new(
                 match row.cells.get(0) {
                     Some(label) if !label.is_empty() => place.parcel(label),
                     _ => place,
                 },
                 Problem::Ragged {
-                    expected: header.cells.len(),
+                    expected,
                     found: row.cells.len(),
                     separator: separator.name(),
                 },

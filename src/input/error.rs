@@ -186,6 +186,17 @@ pub enum Problem {
         /// The separator in use, in words.
         separator: &'static str,
     },
+    /// A header without a cell above the row labels.
+    #[error("the header has {header} cells, every row below it {rows}; give the header a cell for every column, also above the row labels (such as \"parcel\")")]
+    HeaderShort {
+        /// Cells of the header.
+        header: usize,
+        /// Cells of every row.
+        rows: usize,
+    },
+    /// A cell with a line break in it.
+    #[error("a cell in quotes goes on over the end of the line; close the quote, or keep the cell on one line")]
+    LineBreak,
     /// Only one column: no separator recognised.
     #[error("found a single column; expected cells separated by commas, semicolons or tabs")]
     OneColumn,
