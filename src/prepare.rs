@@ -123,7 +123,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
                     },
                 ));
             }
-            if landmarks.blocks() < axes + 2 {
+            if landmarks.blocks() <= axes + 1 {
                 warnings.push(Warning::LeftOutUnderdetermined {
                     axes,
                     blocks: landmarks.blocks(),
@@ -253,26 +253,22 @@ fn treatment(described: &SpeciesFile, network: &Connectivity) -> Treatment {
 /// The most axes to embed in, as the landmarks allow.
 fn most_axes(axes: Axes, landmarks: &Landmarks, table: &Source) -> Result<usize, InputError> {
     let blocks = landmarks.blocks();
-    let refuse = |axes: usize| {
-        InputError::new(
-            Place::file(table.path()),
-            Problem::FewerLandmarksThanAxes {
-                found: landmarks.len(),
-                in_blocks: blocks,
-                axes,
-            },
-        )
-    };
+    let refuse = |problem| Err(InputError::new(Place::file(table.path()), problem));
+    // A block is left out as a whole, and two must remain to be aligned at.
+    if blocks < Landmarks::FEWEST {
+        return refuse(Problem::TooFewBlocks {
+            landmarks: landmarks.len(),
+            found: blocks,
+            needed: Landmarks::FEWEST,
+        });
+    }
     match axes {
-        Axes::Number(axes) if blocks < axes + 1 => Err(refuse(axes)),
+        Axes::Number(axes) if blocks <= axes => refuse(Problem::FewerLandmarksThanAxes {
+            found: landmarks.len(),
+            in_blocks: blocks,
+            axes,
+        }),
         Axes::Number(axes) => Ok(axes),
-        Axes::Auto if blocks < Landmarks::FEWEST => Err(InputError::new(
-            Place::file(table.path()),
-            Problem::TooFewLandmarks {
-                found: blocks,
-                needed: Landmarks::FEWEST,
-            },
-        )),
         // Two blocks are left out at a time, and the rest must still span the axes.
         Axes::Auto => Ok(blocks.saturating_sub(3).clamp(1, MOST_AXES)),
     }

@@ -710,14 +710,16 @@ fn landmark_tables() {
             |s| s.edit_table("landmarks.csv", |rows| rows.truncate(1)),
             &["landmarks.csv: ", "found 0 landmarks"],
         ),
-        case("fewer landmarks than axes", |_| {}, {
+        case(
+            "fewer landmarks than axes",
+            |_| {},
             &[
                 "landmarks.csv: ",
                 "6 landmarks cannot fix 9 axes",
                 "at least 10 are needed",
                 "at most 5 axes",
-            ]
-        })
+            ],
+        )
         .options(&["--axes", "9"]),
         case(
             "fewer blocks than axes",
@@ -733,6 +735,39 @@ fn landmark_tables() {
             ],
         )
         .options(&["--axes", "5"]),
+        case(
+            "more axes than can be counted",
+            |_| {},
+            &[
+                "landmarks.csv: ",
+                "6 landmarks cannot fix 18446744073709551615 axes",
+            ],
+        )
+        .options(&["--axes", "18446744073709551615"]),
+        case(
+            "two blocks",
+            |s| {
+                landmark_column(s, "block", "field");
+                s.edit_table("landmarks.csv", |rows| rows.truncate(4));
+                s.set("landmarks.csv", 3, 4, "field");
+            },
+            &[
+                "landmarks.csv: ",
+                "3 landmarks count as 2",
+                "at least 3 blocks are needed",
+                "add landmarks",
+            ],
+        ),
+        case(
+            "two blocks on one axis",
+            |s| {
+                landmark_column(s, "block", "field");
+                s.edit_table("landmarks.csv", |rows| rows.truncate(4));
+                s.set("landmarks.csv", 3, 4, "field");
+            },
+            &["landmarks.csv: ", "3 landmarks count as 2"],
+        )
+        .options(&["--axes", "1"]),
         case(
             "landmark without connections",
             |s| isolate(s, "b.csv", 3),

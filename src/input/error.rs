@@ -327,8 +327,18 @@ pub enum Problem {
         /// Landmarks needed.
         needed: usize,
     },
+    /// Landmarks enough, but in fewer blocks than can be left out one by one.
+    #[error("{landmarks} landmarks count as {found} because those of one block are left out together; at least {needed} blocks are needed: add landmarks, or divide the blocks where their landmarks are independent")]
+    TooFewBlocks {
+        /// Landmarks found.
+        landmarks: usize,
+        /// Blocks they form.
+        found: usize,
+        /// Blocks needed.
+        needed: usize,
+    },
     /// Fewer independent landmarks than axes + 1.
-    #[error("{found} landmarks{} cannot fix {axes} axes: at least {} are needed; ask for at most {} axes or add landmarks", blocks(*found, *in_blocks), axes + 1, in_blocks - 1)]
+    #[error("{found} landmarks{} cannot fix {axes} axes: at least {} are needed; ask for at most {} axes or add landmarks", blocks(*found, *in_blocks), axes.saturating_add(1), in_blocks.saturating_sub(1))]
     FewerLandmarksThanAxes {
         /// Landmarks found.
         found: usize,
