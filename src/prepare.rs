@@ -103,6 +103,12 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         embed_species(raw, side, &treatment[side], &settings, most)
     })?;
 
+    for side in Side::BOTH {
+        if species[side].embedding.axes() == 0 {
+            let place = Place::file(&inputs.matrix[side].path);
+            return Err(InputError::new(place, Problem::NoAxes { side }));
+        }
+    }
     let available = Side::BOTH
         .into_iter()
         .map(|side| species[side].embedding.axes())
@@ -134,16 +140,6 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         Axes::Auto => {
             for side in Side::BOTH {
                 let axes = species[side].embedding.axes();
-                if axes == 0 {
-                    return Err(InputError::new(
-                        Place::file(&inputs.matrix[side].path),
-                        Problem::TooManyAxes {
-                            side,
-                            axes: 1,
-                            available: 0,
-                        },
-                    ));
-                }
                 if axes < most {
                     warnings.push(Warning::FewAxes {
                         species: species[side].parcels.species().to_owned(),

@@ -527,6 +527,15 @@ fn entries_that_are_no_weight() {
             ],
         ),
         case(
+            "a span no number can hold",
+            |s| s.set("a.csv", 2, 3, "1e-320"),
+            &[
+                "a.csv: ",
+                "species a yields no axis at all",
+                "check that its weights",
+            ],
+        ),
+        case(
             "nothing but zeros",
             |s| {
                 s.edit_table("a.csv", |rows| {

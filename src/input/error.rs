@@ -355,6 +355,12 @@ pub enum Problem {
         /// The parcel.
         parcel: String,
     },
+    /// A matrix without any axis.
+    #[error("the connectivity of species {} yields no axis at all; check that its weights differ, span no more than numbers can hold, and are of the kind the study file states", side.letter())]
+    NoAxes {
+        /// The species.
+        side: Side,
+    },
     /// More axes than the matrix yields.
     #[error("{axes} axes were asked for, but the connectivity of species {} yields only {available}; ask for fewer", side.letter())]
     TooManyAxes {
