@@ -1018,12 +1018,15 @@ fn study_files() {
 }
 
 /// Settings no run can use: key, value as in a study file, what the message calls for, what it finds.
-const OUT_OF_RANGE: [(&str, &str, &str); 12] = [
-    ("replicates", "1", "a whole number"),
-    ("replicates", "2.5", "a whole number"),
-    ("rank-replicates", "0", "a whole number"),
+const OUT_OF_RANGE: [(&str, &str, &str); 15] = [
+    ("replicates", "1", "a whole number from 2 to 10000000"),
+    ("replicates", "2.5", "a whole number from 2"),
+    ("replicates", "10000001", "a whole number from 2"),
+    ("rank-replicates", "0", "a whole number from 1 to 100000"),
+    ("rank-replicates", "9999999999", "a whole number from 1"),
     ("seed", "-1", "a whole number of 0 or more"),
-    ("threads", "0", "a whole number"),
+    ("threads", "0", "a whole number from 1 to 1024"),
+    ("threads", "9999999999", "a whole number from 1"),
     ("axes", "0", "auto or a whole number of 1 or more"),
     ("axes", "many", "auto or a whole number"),
     ("density-exponent", "2", "a number from 0 to 1"),
