@@ -263,16 +263,19 @@ fn most_axes(axes: Axes, landmarks: &Landmarks, table: &Source) -> Result<usize,
             },
         )
     };
-    match axes {
-        Axes::Number(axes) if blocks < axes + 1 => Err(refuse(axes)),
-        Axes::Number(axes) => Ok(axes),
-        Axes::Auto if blocks < Landmarks::FEWEST => Err(InputError::new(
+    // With one block left out two landmarks must remain.
+    if blocks < Landmarks::FEWEST {
+        return Err(InputError::new(
             Place::file(table.path()),
-            Problem::TooFewLandmarks {
+            Problem::TooFewBlocks {
                 found: blocks,
                 needed: Landmarks::FEWEST,
             },
-        )),
+        ));
+    }
+    match axes {
+        Axes::Number(axes) if blocks < axes + 1 => Err(refuse(axes)),
+        Axes::Number(axes) => Ok(axes),
         // Two blocks are left out at a time, and the rest must still span the axes.
         Axes::Auto => Ok(blocks.saturating_sub(3).clamp(1, MOST_AXES)),
     }

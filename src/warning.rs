@@ -110,7 +110,7 @@ pub enum Warning {
         /// Dimensions the landmarks fix.
         fixed: usize,
     },
-    /// Resamplings with fewer distinct landmarks than axes + 1.
+    /// Resamplings with fewer distinct landmark blocks than the ranking alignment's axes + 1.
     DegenerateReplicates {
         /// How many.
         replicates: usize,
@@ -147,7 +147,7 @@ impl fmt::Display for Warning {
                 example,
             } => write!(
                 f,
-                "{species}: {entries} correlations off the diagonal are 1 or beyond, such as {} with {}; they are cut to {}",
+                "{species}: {entries} correlations off the diagonal are 1 or beyond, such as {} with {}; Fisher's z takes them for {}",
                 example.0,
                 example.1,
                 crate::transform::LARGEST_CORRELATION
@@ -209,7 +209,7 @@ impl fmt::Display for Warning {
             ),
             Warning::DegenerateReplicates { replicates, of } => write!(
                 f,
-                "{replicates} of {of} replicates drew fewer distinct landmarks than axes + 1; use resampling bayesian"
+                "{replicates} of {of} replicates drew fewer distinct landmark blocks than axes + 1; use resampling bayesian"
             ),
             Warning::FewAxes { species, axes } => write!(
                 f,

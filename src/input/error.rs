@@ -131,6 +131,16 @@ pub enum Problem {
         /// All known keys.
         known: String,
     },
+    /// A key that another table knows.
+    #[error("key {found:?} does not belong in {table} but in {belongs}; move it there")]
+    MisplacedKey {
+        /// The key.
+        found: String,
+        /// Table it stands in.
+        table: String,
+        /// Table it belongs in.
+        belongs: String,
+    },
     /// A key that must be there is not.
     #[error("{table} lacks the key {key:?}; add a line such as: {example}")]
     MissingKey {
@@ -196,7 +206,7 @@ pub enum Problem {
     #[error("expected a number with a decimal point, found {0:?}; write decimal points instead of commas")]
     DecimalComma(String),
     /// An infinite number.
-    #[error("expected a finite number, found {0:?}; for log10 weights leave absent connections out of the logarithm")]
+    #[error("expected a finite number, found {0:?}; where this is the logarithm of an absent connection, give the weights themselves and say weights = \"fractions\" or \"counts\"")]
     Infinite(String),
     /// NaN, NA or an empty cell.
     #[error("expected a number, found {0}; missing entries are not read yet: fill in the value, or remove the parcel's row and column")]
@@ -314,6 +324,14 @@ pub enum Problem {
         /// Landmarks found.
         found: usize,
         /// Landmarks needed.
+        needed: usize,
+    },
+    /// Fewer blocks of landmarks than any alignment needs.
+    #[error("the landmarks form {found} blocks, at least {needed} are needed; add landmarks, or give those that are independent blocks of their own")]
+    TooFewBlocks {
+        /// Blocks found.
+        found: usize,
+        /// Blocks needed.
         needed: usize,
     },
     /// Fewer independent landmarks than axes + 1.

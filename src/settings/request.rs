@@ -79,7 +79,11 @@ request! {
     /// Seed of every random draw.
     seed: u64 = "seed", |key, text| text.parse().map_err(|_| bad(key, "a whole number of 0 or more", text));
     /// Worker threads.
-    threads: usize = "threads", |key, text| whole(key, text, 1, "a whole number of 1 or more");
+    threads: usize = "threads", |key, text| {
+        whole(key, text, 1, THREADS).and_then(|n| {
+            if n <= MOST_THREADS { Ok(n) } else { Err(bad(key, THREADS, text)) }
+        })
+    };
     /// Axes of the joint spaces.
     axes: Axes = "axes", |key, text| match text {
         "auto" => Ok(Axes::Auto),
@@ -110,6 +114,9 @@ request! {
     no_report: bool = "no-report", flag;
 }
 
+/// More worker threads than any machine has processors only cost memory.
+const MOST_THREADS: usize = 1024;
+const THREADS: &str = "a whole number from 1 to 1024";
 /// Replicates unless asked otherwise.
 const REPLICATES: usize = 1000;
 /// Replicates that also rank, unless asked otherwise.
