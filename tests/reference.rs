@@ -9,7 +9,9 @@
 mod common;
 
 use kinmark::affinity::{Likeness, Profiles};
-use kinmark::align::{self, Affine, AlignError, Alignment, JointMap, Scaling};
+use kinmark::align::{
+    self, Affine, AlignError, Alignment, JointMap, ProcrustesParams, RidgeCcaParams, Scaling,
+};
 use kinmark::domain::{Connectivity, Pair, Share, Side, Transform, WeightKind};
 use kinmark::embed::{components, diffusion_map, DiffusionError, DiffusionTime, Embedding};
 use kinmark::linalg::{from_small, largest_eigenpairs, small_svd};
@@ -88,14 +90,20 @@ fn procrustes_agrees_with_scipy() {
 }
 
 /// Distances in the joint space are those after moving one side onto the other by the rotation of
-/// `scipy.linalg.orthogonal_procrustes`.
+/// `scipy.linalg.orthogonal_procrustes`, at the scale that makes both sides' landmarks spread alike:
+/// the least-squares scale would shrink whichever side is moved.
 #[test]
 fn procrustes_joint_space_has_the_distances_of_scipy() {
     let source = reference().cite("scipy.linalg.orthogonal_procrustes");
     for case in &reference().procrustes {
         let Weighted { x, y, weights } = &case.inputs;
-        let size = &case.expected.scaled;
-        let moved = x.dot(&*case.expected.rotation) * size.scale + &*size.translation;
+        let (mean_x, mean_y) = (&*case.expected.mean_x, &*case.expected.mean_y);
+        let spread = |points: &Array2<f64>, mean: &Array1<f64>| {
+            let squares = (points - mean).mapv(|z| z * z).sum_axis(Axis(1));
+            squares.dot(&**weights) / weights.sum()
+        };
+        let scale = (spread(y, mean_y) / spread(x, mean_x)).sqrt();
+        let moved = (&**x - mean_x).dot(&*case.expected.rotation) * scale + mean_y;
         let joint = fit_procrustes(x, y, weights.as_slice(), Scaling::Fitted)
             .expect("a valid fit")
             .joint();
@@ -671,7 +679,7 @@ fn small_singular_value_decompositions_are_complete() {
         for (kind, matrix) in matrices {
             let axes = matrix.nrows();
             let what = |part: &str| format!("seed {seed}, {kind}, {axes} axes: {part}");
-            let svd = small_svd(to_nalgebra(&matrix));
+            let svd = small_svd(&to_nalgebra(&matrix));
             let (u, v) = (from_small(&svd.u), from_small(&svd.v));
             let product = (&u * &Array1::from(svd.values.clone())).dot(&v.t());
             let identity = Array2::eye(axes);
@@ -1104,4 +1112,31 @@ fn assert_same_fits(one: Landmarks<'_>, other: Landmarks<'_>, what: &str) {
             what("weights of y"),
         );
     }
+}
+
+/// Coordinates that are no numbers, and no coordinates at all, are refused before any decomposition
+/// sees them.
+#[test]
+fn coordinates_must_be_there_and_finite() {
+    let good = Array2::from_shape_fn((5, 2), |(i, k)| (i * (k + 1)) as f64);
+    let mut bad = good.clone();
+    bad[(3, 1)] = f64::NAN;
+    let none = Array2::zeros((5, 0));
+    for (x, y, fits) in [
+        (&good, &good, true),
+        (&bad, &good, false),
+        (&good, &bad, false),
+    ] {
+        let dataset = DatasetBase::new(x.clone(), y.clone());
+        let procrustes = Fit::fit(&ProcrustesParams::new(), &dataset);
+        let canonical = Fit::fit(&RidgeCcaParams::new(0.1), &dataset);
+        assert_eq!(procrustes.is_ok(), fits);
+        assert_eq!(canonical.is_ok(), fits);
+        if !fits {
+            assert!(matches!(procrustes, Err(AlignError::NotFinite)));
+        }
+    }
+    let dataset = DatasetBase::new(none.clone(), none);
+    let fitted = Fit::fit(&RidgeCcaParams::new(0.1), &dataset);
+    assert!(matches!(fitted, Err(AlignError::NoAxes)));
 }

@@ -130,7 +130,7 @@ impl JointMap {
             raw[(i, j)] - count * mean_from[i] * mean_onto[j]
         });
         let spread = from.iter().map(|x| x * x).sum::<f64>() - count * mean_from.dot(&mean_from);
-        let svd = small_svd(cross);
+        let svd = small_svd(&cross);
         let turn = from_small(&(&svd.u * svd.v.transpose()));
         let scale = if spread > 0.0 {
             svd.values.iter().sum::<f64>() / spread

@@ -112,7 +112,7 @@ impl Fit<Array2<f64>, Array2<f64>, AlignError> for ProcrustesValidParams {
             });
         }
         let centred = Centred::new(x.view(), y.view(), self.weights.as_deref())?;
-        let svd = small_svd(centred.products(&centred.x, &centred.y));
+        let svd = small_svd(&centred.products(&centred.x, &centred.y));
         let spread = |points: &Array2<f64>| {
             let squares = points.map_axis(ndarray::Axis(1), |row| row.dot(&row));
             centred.weights.dot(&squares)
