@@ -105,7 +105,7 @@ fn unrelated_species_come_out_at_chance_after_every_choice() {
 /// mean error to deviation must lie between 0.75 and 1.25 for either alignment.
 #[test]
 fn standard_errors_match_the_spread_over_other_landmarks() {
-    use kinmark::align::{Alignment, JointMap};
+    use kinmark::align::{Alignment, JointMap, PerAlignment};
     use ndarray::Array2;
     use rand::seq::SliceRandom;
 
@@ -121,7 +121,20 @@ fn standard_errors_match_the_spread_over_other_landmarks() {
     let mut rng = planted::rng(4);
     // Landmarks come from the first 90 parcels, so that the last 30 are always open.
     let mut first: Option<Located> = None;
-    let mut sums: Vec<(Alignment, Array2<f64>, Array2<f64>, Array2<f64>)> = Vec::new();
+    /// Sums over sets of landmarks, `(open parcels, axes)` each.
+    struct Seen {
+        gaps: Array2<f64>,
+        squares: Array2<f64>,
+        claimed: Array2<f64>,
+    }
+    let mut seen = PerAlignment::from_fn(|_| {
+        let zero = || Array2::zeros((30, 3));
+        Seen {
+            gaps: zero(),
+            squares: zero(),
+            claimed: zero(),
+        }
+    });
     let sets = 40;
     for _ in 0..sets {
         let mut pool: Vec<usize> = (0..90).collect();
@@ -139,30 +152,28 @@ fn standard_errors_match_the_spread_over_other_landmarks() {
                     .unwrap()
             })
             .collect();
-        for (k, alignment) in Alignment::BOTH.into_iter().enumerate() {
+        for alignment in Alignment::BOTH {
             let (space, there) = (&found.spaces[alignment], &reference.spaces[alignment]);
             let back = JointMap::superimpose(&space.positions.b, &there.positions.b);
             let moved = space.map.moved(&back);
             let positions = moved.maps[Side::A].apply(study.species.a.embedding.coordinates.view());
-            if sums.len() <= k {
-                let zero = || Array2::zeros((30, 3));
-                sums.push((alignment, zero(), zero(), zero()));
-            }
+            let sums = &mut seen[alignment];
             for (row, &parcel) in open.iter().enumerate() {
                 for axis in 0..3 {
                     // Spread is compared over all axes together: single axes may turn into each other.
                     let gap = positions[(parcel, axis)] - there.positions.a[(parcel, axis)];
-                    sums[k].1[(row, axis)] += gap;
-                    sums[k].2[(row, axis)] += gap * gap;
-                    sums[k].3[(row, axis)] += space.standard_errors.a[(parcel, axis)].powi(2);
+                    sums.gaps[(row, axis)] += gap;
+                    sums.squares[(row, axis)] += gap * gap;
+                    sums.claimed[(row, axis)] += space.standard_errors.a[(parcel, axis)].powi(2);
                 }
             }
         }
     }
     let n = f64::from(sets);
-    for (alignment, sum, squares, claimed) in sums {
-        let observed = (&squares - &(&sum * &sum / n)).sum() / (n - 1.0);
-        let claimed = claimed.sum() / n;
+    for alignment in Alignment::BOTH {
+        let sums = &seen[alignment];
+        let observed = (&sums.squares - &(&sums.gaps * &sums.gaps / n)).sum() / (n - 1.0);
+        let claimed = sums.claimed.sum() / n;
         let ratio = (claimed / observed).sqrt();
         assert!(
             (0.75..1.25).contains(&ratio),
