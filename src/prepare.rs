@@ -103,6 +103,12 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         embed_species(raw, side, &treatment[side], &settings, most)
     })?;
 
+    for side in Side::BOTH {
+        if species[side].embedding.axes() == 0 {
+            let place = Place::file(&inputs.matrix[side].path);
+            return Err(InputError::new(place, Problem::NoAxes { side }));
+        }
+    }
     let available = Side::BOTH
         .into_iter()
         .map(|side| species[side].embedding.axes())
@@ -123,7 +129,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
                     },
                 ));
             }
-            if landmarks.blocks() < axes + 2 {
+            if landmarks.blocks() <= axes + 1 {
                 warnings.push(Warning::LeftOutUnderdetermined {
                     axes,
                     blocks: landmarks.blocks(),
@@ -134,16 +140,6 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         Axes::Auto => {
             for side in Side::BOTH {
                 let axes = species[side].embedding.axes();
-                if axes == 0 {
-                    return Err(InputError::new(
-                        Place::file(&inputs.matrix[side].path),
-                        Problem::TooManyAxes {
-                            side,
-                            axes: 1,
-                            available: 0,
-                        },
-                    ));
-                }
                 if axes < most {
                     warnings.push(Warning::FewAxes {
                         species: species[side].parcels.species().to_owned(),
@@ -253,28 +249,21 @@ fn treatment(described: &SpeciesFile, network: &Connectivity) -> Treatment {
 /// The most axes to embed in, as the landmarks allow.
 fn most_axes(axes: Axes, landmarks: &Landmarks, table: &Source) -> Result<usize, InputError> {
     let blocks = landmarks.blocks();
-    let refuse = |axes: usize| {
-        InputError::new(
-            Place::file(table.path()),
-            Problem::FewerLandmarksThanAxes {
-                found: landmarks.len(),
-                in_blocks: blocks,
-                axes,
-            },
-        )
-    };
-    // With one block left out two landmarks must remain.
+    let refuse = |problem| Err(InputError::new(Place::file(table.path()), problem));
+    // A block is left out as a whole, and two must remain to be aligned at.
     if blocks < Landmarks::FEWEST {
-        return Err(InputError::new(
-            Place::file(table.path()),
-            Problem::TooFewBlocks {
-                found: blocks,
-                needed: Landmarks::FEWEST,
-            },
-        ));
+        return refuse(Problem::TooFewBlocks {
+            landmarks: landmarks.len(),
+            found: blocks,
+            needed: Landmarks::FEWEST,
+        });
     }
     match axes {
-        Axes::Number(axes) if blocks < axes + 1 => Err(refuse(axes)),
+        Axes::Number(axes) if blocks <= axes => refuse(Problem::FewerLandmarksThanAxes {
+            found: landmarks.len(),
+            in_blocks: blocks,
+            axes,
+        }),
         Axes::Number(axes) => Ok(axes),
         // Two blocks are left out at a time, and the rest must still span the axes.
         Axes::Auto => Ok(blocks.saturating_sub(3).clamp(1, MOST_AXES)),

@@ -67,6 +67,37 @@ pub struct Row {
     pub cells: StringRecord,
 }
 
+/// Counts lines. The csv reader's own count is that of the place where it went on reading, which
+/// lies before the row itself where blank lines come between.
+struct Lines<'t> {
+    text: &'t [u8],
+    at: usize,
+    line: u64,
+}
+
+impl<'t> Lines<'t> {
+    fn of(text: &'t str) -> Self {
+        Lines {
+            text: text.as_bytes(),
+            at: 0,
+            line: 1,
+        }
+    }
+
+    /// The line of the first row at or after a byte; bytes must not go back.
+    fn line_from(&mut self, byte: u64) -> u64 {
+        let byte = usize::try_from(byte).unwrap_or(usize::MAX);
+        while let Some(&here) = self.text.get(self.at) {
+            if self.at >= byte && here != b'\n' {
+                break;
+            }
+            self.line += u64::from(here == b'\n');
+            self.at += 1;
+        }
+        self.line
+    }
+}
+
 /// A table as read: a header and rows of the same width.
 #[derive(Debug)]
 pub struct Table {
@@ -81,7 +112,7 @@ pub struct Table {
 /// Splits a text into rows, all as wide as the header.
 ///
 /// # Errors
-/// [`InputError`] for a single column or a ragged row.
+/// [`InputError`] for a single column, a cell over several lines or a ragged row.
 pub fn parse(source: &Source) -> Result<Table, InputError> {
     let separator = Separator::of(&source.text);
     let mut reader = csv::ReaderBuilder::new()
@@ -92,13 +123,24 @@ pub fn parse(source: &Source) -> Result<Table, InputError> {
         .from_reader(source.text.as_bytes());
     let mut rows = Vec::new();
     let mut cells = StringRecord::new();
+    let mut lines = Lines::of(&source.text);
     loop {
         match reader.read_record(&mut cells) {
             Ok(false) => break,
-            Ok(true) => rows.push(Row {
-                line: cells.position().map_or(0, csv::Position::line),
-                cells: cells.clone(),
-            }),
+            Ok(true) => {
+                let line = lines.line_from(cells.position().map_or(0, csv::Position::byte));
+                // A quote without its partner swallows the lines below it.
+                if let Some(at) = cells.iter().position(|c| c.contains('\n')) {
+                    return Err(InputError::new(
+                        Place::line(source.path(), line).column(at + 1),
+                        Problem::LineBreak,
+                    ));
+                }
+                rows.push(Row {
+                    line,
+                    cells: cells.clone(),
+                });
+            }
             Err(e) => {
                 return Err(InputError::new(
                     Place::file(source.path()),
@@ -126,13 +168,23 @@ pub fn parse(source: &Source) -> Result<Table, InputError> {
     for row in &rows {
         if row.cells.len() != header.cells.len() {
             let place = Place::line(source.path(), row.line);
+            let expected = header.cells.len();
+            if rows.iter().all(|row| row.cells.len() == expected + 1) {
+                return Err(InputError::new(
+                    Place::line(source.path(), header.line),
+                    Problem::HeaderShort {
+                        header: expected,
+                        rows: expected + 1,
+                    },
+                ));
+            }
             return Err(InputError::new(
                 match row.cells.get(0) {
                     Some(label) if !label.is_empty() => place.parcel(label),
                     _ => place,
                 },
                 Problem::Ragged {
-                    expected: header.cells.len(),
+                    expected,
                     found: row.cells.len(),
                     separator: separator.name(),
                 },

@@ -196,6 +196,17 @@ pub enum Problem {
         /// The separator in use, in words.
         separator: &'static str,
     },
+    /// A header without a cell above the row labels.
+    #[error("the header has {header} cells, every row below it {rows}; give the header a cell for every column, also above the row labels (such as \"parcel\")")]
+    HeaderShort {
+        /// Cells of the header.
+        header: usize,
+        /// Cells of every row.
+        rows: usize,
+    },
+    /// A cell with a line break in it.
+    #[error("a cell in quotes goes on over the end of the line; close the quote, or keep the cell on one line")]
+    LineBreak,
     /// Only one column: no separator recognised.
     #[error("found a single column; expected cells separated by commas, semicolons or tabs")]
     OneColumn,
@@ -326,16 +337,18 @@ pub enum Problem {
         /// Landmarks needed.
         needed: usize,
     },
-    /// Fewer blocks of landmarks than any alignment needs.
-    #[error("the landmarks form {found} blocks, at least {needed} are needed; add landmarks, or give those that are independent blocks of their own")]
+    /// Landmarks enough, but in fewer blocks than can be left out one by one.
+    #[error("{landmarks} landmarks count as {found} because those of one block are left out together; at least {needed} blocks are needed: add landmarks, or divide the blocks where their landmarks are independent")]
     TooFewBlocks {
-        /// Blocks found.
+        /// Landmarks found.
+        landmarks: usize,
+        /// Blocks they form.
         found: usize,
         /// Blocks needed.
         needed: usize,
     },
     /// Fewer independent landmarks than axes + 1.
-    #[error("{found} landmarks{} cannot fix {axes} axes: at least {} are needed; ask for at most {} axes or add landmarks", blocks(*found, *in_blocks), axes + 1, in_blocks - 1)]
+    #[error("{found} landmarks{} cannot fix {axes} axes: at least {} are needed; ask for at most {} axes or add landmarks", blocks(*found, *in_blocks), axes.saturating_add(1), in_blocks.saturating_sub(1))]
     FewerLandmarksThanAxes {
         /// Landmarks found.
         found: usize,
@@ -351,6 +364,12 @@ pub enum Problem {
         side: Side,
         /// The parcel.
         parcel: String,
+    },
+    /// A matrix without any axis.
+    #[error("the connectivity of species {} yields no axis at all; check that its weights differ, span no more than numbers can hold, and are of the kind the study file states", side.letter())]
+    NoAxes {
+        /// The species.
+        side: Side,
     },
     /// More axes than the matrix yields.
     #[error("{axes} axes were asked for, but the connectivity of species {} yields only {available}; ask for fewer", side.letter())]

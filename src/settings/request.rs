@@ -1,5 +1,7 @@
 //! What a study file or a command line asks for, before defaults.
 
+use std::ops::RangeInclusive;
+
 use thiserror::Error;
 
 use super::{Axes, Conduct, EvidenceChoice, Settings, Top};
@@ -71,23 +73,20 @@ macro_rules! request {
     };
 }
 
+// Upper ends keep a slip of the keyboard from asking for more memory or threads than there are.
 request! {
     /// Bootstrap replicates.
-    replicates: usize = "replicates", |key, text| whole(key, text, 2, "a whole number of 2 or more");
+    replicates: usize = "replicates", |key, text| whole(key, text, 2..=10_000_000, "a whole number from 2 to 10000000");
     /// Replicates that also rank.
-    rank_replicates: usize = "rank-replicates", |key, text| whole(key, text, 1, "a whole number of 1 or more");
+    rank_replicates: usize = "rank-replicates", |key, text| whole(key, text, 1..=100_000, "a whole number from 1 to 100000");
     /// Seed of every random draw.
     seed: u64 = "seed", |key, text| text.parse().map_err(|_| bad(key, "a whole number of 0 or more", text));
     /// Worker threads.
-    threads: usize = "threads", |key, text| {
-        whole(key, text, 1, THREADS).and_then(|n| {
-            if n <= MOST_THREADS { Ok(n) } else { Err(bad(key, THREADS, text)) }
-        })
-    };
+    threads: usize = "threads", |key, text| whole(key, text, 1..=1024, "a whole number from 1 to 1024");
     /// Axes of the joint spaces.
     axes: Axes = "axes", |key, text| match text {
         "auto" => Ok(Axes::Auto),
-        _ => whole(key, text, 1, "auto or a whole number of 1 or more").map(Axes::Number),
+        _ => whole(key, text, 1..=usize::MAX, "auto or a whole number of 1 or more").map(Axes::Number),
     };
     /// How connectivity becomes coordinates.
     embedding: embed::Method = "embedding", choice;
@@ -104,7 +103,7 @@ request! {
     /// Counterparts listed for each parcel.
     top: Top = "top", |key, text| match text {
         "all" => Ok(Top::All),
-        _ => whole(key, text, 1, "all or a whole number of 1 or more").map(Top::Number),
+        _ => whole(key, text, 1..=usize::MAX, "all or a whole number of 1 or more").map(Top::Number),
     };
     /// No progress on the terminal.
     quiet: bool = "quiet", flag;
@@ -114,9 +113,6 @@ request! {
     no_report: bool = "no-report", flag;
 }
 
-/// More worker threads than any machine has processors only cost memory.
-const MOST_THREADS: usize = 1024;
-const THREADS: &str = "a whole number from 1 to 1024";
 /// Replicates unless asked otherwise.
 const REPLICATES: usize = 1000;
 /// Replicates that also rank, unless asked otherwise.
@@ -174,19 +170,19 @@ fn bad(key: &'static str, expected: &'static str, found: &str) -> BadSetting {
 fn whole(
     key: &'static str,
     text: &str,
-    least: usize,
+    range: RangeInclusive<usize>,
     expected: &'static str,
 ) -> Result<usize, BadSetting> {
     text.parse()
         .ok()
-        .filter(|n| *n >= least)
+        .filter(|n| range.contains(n))
         .ok_or_else(|| bad(key, expected, text))
 }
 
 fn number(
     key: &'static str,
     text: &str,
-    range: std::ops::RangeInclusive<f64>,
+    range: RangeInclusive<f64>,
     expected: &'static str,
 ) -> Result<f64, BadSetting> {
     text.parse()
@@ -230,6 +226,9 @@ mod tests {
         for (key, text) in [
             ("replicates", "1"),
             ("replicates", "many"),
+            ("replicates", "10000001"),
+            ("rank-replicates", "100001"),
+            ("threads", "1025"),
             ("axes", "0"),
             ("density-exponent", "1.5"),
             ("diffusion-time", "-1"),
