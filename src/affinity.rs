@@ -81,6 +81,30 @@ impl Profiles {
         concatenate(Axis(1), &halves).expect("both halves have a row for each parcel")
     }
 
+    /// All profiles scaled so that products of rows are their likenesses: of unit length, and for
+    /// Pearson of zero mean. What is compared is then the pattern of links, not their number.
+    #[must_use]
+    pub fn standardised(&self, likeness: Likeness) -> Array2<f64> {
+        let mut profiles = self.matrix();
+        for mut profile in profiles.rows_mut() {
+            let before = profile.dot(&profile);
+            if likeness == Likeness::Pearson {
+                let mean = profile.mean().unwrap_or(0.0);
+                profile.mapv_inplace(|x| x - mean);
+            }
+            let square = profile.dot(&profile);
+            // What is left of a constant profile after centring is rounding, not a pattern.
+            let is_pattern = square > before * f64::EPSILON * profile.len() as f64;
+            let scale = if is_pattern {
+                square.sqrt().recip()
+            } else {
+                0.0
+            };
+            profile.mapv_inplace(|x| x * scale);
+        }
+        profiles
+    }
+
     fn halves(&self) -> impl Iterator<Item = &Array2<f64>> {
         std::iter::once(&self.outgoing).chain(self.incoming.as_ref())
     }

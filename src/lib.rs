@@ -13,6 +13,9 @@
 //! Everything found is a statistical hypothesis about homology, never a target for stimulation or
 //! surgery.
 
+// Tests may unwrap: a panic there is a failed test.
+#![cfg_attr(not(test), warn(clippy::unwrap_used))]
+
 pub mod affinity;
 pub mod align;
 pub mod bootstrap;

@@ -1,5 +1,7 @@
 //! The program: parse, run, print the error, choose the exit code.
 
+#![cfg_attr(not(test), warn(clippy::unwrap_used))]
+
 mod cli;
 
 use std::io::Write;

@@ -280,7 +280,9 @@ fn embed_species(
     let network = transform::apply(raw.network, treatment.weights, treatment.transform);
     let profiles = Profiles::new(network.weights().view(), treatment.affinity.strongest);
     let embedding: Embedding = match settings.embedding {
-        embed::Method::Components => embed::components(&profiles.matrix(), axes),
+        embed::Method::Components => {
+            embed::components(&profiles.standardised(treatment.affinity.likeness), axes)
+        }
         embed::Method::Diffusion => {
             let affinity = profiles.affinity(treatment.affinity.likeness);
             drop(profiles);

@@ -13,7 +13,7 @@ use crate::embed;
 choices! {
     /// Which dissimilarities rank the counterparts.
     pub enum EvidenceChoice {
-        /// The better of both alignments by left-out landmarks.
+        /// Canonical, unless left-out landmarks say that Procrustes is clearly better.
         Auto = "auto",
         /// Distance after weighted Procrustes alignment.
         Procrustes = "procrustes",

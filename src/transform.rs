@@ -54,7 +54,7 @@ fn scale(
 ) -> Box<dyn Fn(f64) -> f64> {
     let positive = || observed(connectivity).filter(|w| *w > 0.0);
     match (weights, transform) {
-        // Logarithms are undone first, but for the transform that would take them again.
+        // Weights in logarithms already are what `log-floor` makes of others.
         (WeightKind::Log10, Transform::LogFloor) => {
             let smallest = observed(connectivity).fold(f64::INFINITY, f64::min);
             Box::new(move |w| 1.0 + w - smallest)

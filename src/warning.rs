@@ -110,7 +110,7 @@ pub enum Warning {
         /// Dimensions the landmarks fix.
         fixed: usize,
     },
-    /// Resamplings with fewer distinct landmarks than axes + 1.
+    /// Resamplings with fewer distinct landmark blocks than the ranking alignment's axes + 1.
     DegenerateReplicates {
         /// How many.
         replicates: usize,
@@ -148,7 +148,7 @@ impl fmt::Display for Warning {
                 example,
             } => write!(
                 f,
-                "{species}: off the diagonal {} 1 or beyond, such as {} with {}; they are cut to {}",
+                "{species}: off the diagonal {} 1 or beyond, such as {} with {}; Fisher's z cuts at {}",
                 counted(*entries, "correlation", "correlations"),
                 example.0,
                 example.1,
@@ -213,7 +213,7 @@ impl fmt::Display for Warning {
             ),
             Warning::DegenerateReplicates { replicates, of } => write!(
                 f,
-                "{replicates} of {of} replicates drew fewer distinct landmarks than axes + 1; use --resampling bayesian"
+                "{replicates} of {of} replicates drew fewer distinct landmark blocks than axes + 1; use --resampling bayesian"
             ),
             Warning::FewAxes { species, axes } => write!(
                 f,

@@ -473,7 +473,7 @@ fn entries_that_are_no_weight() {
             &[
                 "b.csv, line 2, column 3 (Calc to Aud): ",
                 "found \"-inf\"",
-                "no logarithm: give the weights themselves",
+                "the logarithm of an absent connection",
             ],
         ),
         case(

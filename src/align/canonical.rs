@@ -102,7 +102,7 @@ impl Fit<Array2<f64>, Array2<f64>, AlignError> for RidgeCcaValidParams {
             principal_root_inverse(own + DMatrix::identity(axes, axes) * extra)
         };
         let (whiten_x, whiten_y) = (whiten(&own_x), whiten(&own_y));
-        let svd = small_svd(&whiten_x * &cross * &whiten_y);
+        let svd = small_svd(&(&whiten_x * &cross * &whiten_y));
         let mut weights_x = whiten_x * svd.u;
         let mut weights_y = whiten_y * svd.v;
         for k in 0..svd.values.len() {

@@ -130,7 +130,7 @@ impl JointMap {
             raw[(i, j)] - count * mean_from[i] * mean_onto[j]
         });
         let spread = from.iter().map(|x| x * x).sum::<f64>() - count * mean_from.dot(&mean_from);
-        let svd = small_svd(cross);
+        let svd = small_svd(&cross);
         let turn = from_small(&(&svd.u * svd.v.transpose()));
         let scale = if spread > 0.0 {
             svd.values.iter().sum::<f64>() / spread
@@ -146,7 +146,7 @@ impl JointMap {
 
     /// Share of the variance of a species' embedding (over its parcels, on the axes that enter)
     /// that each joint axis predicts on its own: the redundancy of Stewart & Love (1968, Psychol
-    /// Bull 70:160-163). Shares of oblique axes may overlap.
+    /// Bull 70:160-163). Shares of axes that correlate over the parcels overlap.
     #[must_use]
     pub fn shares(&self, side: Side, embedded: &Array2<f64>) -> Array1<f64> {
         let map = &self.maps[side];

@@ -91,6 +91,8 @@ pub struct Procrustes {
     left: Array2<f64>,
     right: Array2<f64>,
     singular_values: Array1<f64>,
+    /// Root mean square spread of the targets relative to that of the records.
+    spread_ratio: f64,
 }
 
 /// Minimises `sum_i w_i |scale x_i R + t - y_i|^2` over orthogonal R, translation t and scale.
@@ -110,7 +112,7 @@ impl Fit<Array2<f64>, Array2<f64>, AlignError> for ProcrustesValidParams {
             });
         }
         let centred = Centred::new(x.view(), y.view(), self.weights.as_deref())?;
-        let svd = small_svd(centred.products(&centred.x, &centred.y));
+        let svd = small_svd(&centred.products(&centred.x, &centred.y));
         let spread = |points: &Array2<f64>| {
             let squares = points.map_axis(ndarray::Axis(1), |row| row.dot(&row));
             centred.weights.dot(&squares)
@@ -132,6 +134,10 @@ impl Fit<Array2<f64>, Array2<f64>, AlignError> for ProcrustesValidParams {
                 .iter()
                 .filter(|s| **s > RANK_TOLERANCE * largest)
                 .count(),
+            spread_ratio: match self.scaling {
+                Scaling::Fitted if spread_x > 0.0 && spread_y > 0.0 => (spread_y / spread_x).sqrt(),
+                _ => 1.0,
+            },
             left: from_small(&svd.u),
             right: from_small(&svd.v),
             singular_values: Array1::from(svd.values),
@@ -143,13 +149,14 @@ impl Fit<Array2<f64>, Array2<f64>, AlignError> for ProcrustesValidParams {
 
 impl Procrustes {
     /// The joint space: both species on the shared directions of their landmarks, in order of the
-    /// singular values, with the records scaled to the size of the targets. Distances are those of
-    /// the one-way transformation; turning both sides alike changes none.
+    /// singular values, with the records scaled to the landmarks' spread in the targets. That scale,
+    /// unlike the least-squares one, which shrinks the side that is moved, does not depend on which
+    /// species comes first.
     #[must_use]
     pub fn joint(self) -> JointMap {
         JointMap {
             maps: Pair {
-                a: Affine::centred(self.mean_x, self.left * self.scale),
+                a: Affine::centred(self.mean_x, self.left * self.spread_ratio),
                 b: Affine::centred(self.mean_y, self.right),
             },
             agreement: self.singular_values,

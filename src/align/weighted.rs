@@ -21,6 +21,12 @@ pub enum AlignError {
     /// Nothing to fit to.
     #[error("at least two landmarks need a weight above zero, found {0}")]
     TooFew(usize),
+    /// A coordinate that is not finite.
+    #[error("coordinates must be finite")]
+    NotFinite,
+    /// No axes to align on.
+    #[error("at least one axis is needed on either side")]
+    NoAxes,
     /// A ridge below zero, or not finite.
     #[error("the ridge must be finite and not negative, found {0}")]
     BadRidge(f64),
@@ -79,6 +85,12 @@ impl Centred {
                 x: landmarks,
                 y: y.nrows(),
             });
+        }
+        if x.ncols() == 0 || y.ncols() == 0 {
+            return Err(AlignError::NoAxes);
+        }
+        if x.iter().chain(&y).any(|value| !value.is_finite()) {
+            return Err(AlignError::NotFinite);
         }
         let weights = match weights {
             None => Array1::ones(landmarks),

@@ -10,7 +10,8 @@ choices! {
     pub enum Resampling {
         /// Bayesian bootstrap (Rubin 1981): Dirichlet(1) weights, no block ever quite absent.
         Bayesian = "bayesian",
-        /// Ordinary bootstrap (Efron 1979): as many draws as blocks, with replacement.
+        /// Ordinary bootstrap (Efron 1979): as many draws as blocks, with replacement. A draw of one
+        /// block alone fixes nothing and is drawn again.
         Ordinary = "ordinary",
     }
 }
@@ -29,8 +30,11 @@ impl Resampling {
             }
             Resampling::Ordinary => {
                 let mut weights = vec![0.0; blocks];
-                for _ in 0..blocks {
-                    weights[rng.gen_range(0..blocks)] += 1.0;
+                while weights.iter().filter(|w| **w > 0.0).count() < 2.min(blocks) {
+                    weights.fill(0.0);
+                    for _ in 0..blocks {
+                        weights[rng.gen_range(0..blocks)] += 1.0;
+                    }
                 }
                 weights
             }

@@ -84,8 +84,8 @@ struct SettingOptions {
     #[arg(long, value_name = "T", value_parser = checked("diffusion-time"))]
     diffusion_time: Option<String>,
 
-    /// What ranks counterparts: distance in one joint space, or auto, the better by left-out
-    /// landmarks [default: auto]
+    /// What ranks counterparts: distance in one of the joint spaces, or auto: canonical, unless
+    /// left-out landmarks say that procrustes is clearly better [default: auto]
     #[arg(long, value_name = "auto|procrustes|canonical", value_parser = checked("evidence"))]
     evidence: Option<String>,
 
@@ -103,7 +103,7 @@ struct SettingOptions {
     #[arg(long, value_name = "N|all", value_parser = checked("top"))]
     top: Option<String>,
 
-    /// Show no progress and no warnings on the terminal; both stay in run.json
+    /// Show no progress and no warnings on the terminal; the warnings stay in run.json
     #[arg(long)]
     quiet: bool,
 

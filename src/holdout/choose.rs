@@ -7,6 +7,7 @@ use crate::align::{Alignment, PerAlignment};
 
 /// Left-out error of one number of axes.
 #[derive(Debug, Clone, Copy, PartialEq, Serialize)]
+#[serde(rename_all = "kebab-case")]
 pub struct Point {
     /// Axes of the joint space.
     pub axes: usize,

@@ -108,10 +108,11 @@ fn error(placed: Pair<Placed>) -> f64 {
 pub struct Trials {
     /// `[way][landmark]`, its block left out.
     pub single: Vec<Vec<Pair<Placed>>>,
-    /// `[way][outer block][landmark]`: error with two blocks left out, the landmark's and the outer
-    /// one; the landmark's own block holds what `single` says. Empty where there is one way only.
-    nested: Vec<Vec<Vec<f64>>>,
-    blocks: Vec<usize>,
+    /// `[way][outer block][landmark]`: with two blocks left out, the landmark's and the outer one. The
+    /// landmark's own block holds what `single` says.
+    pub nested: Vec<Vec<Vec<Pair<Placed>>>>,
+    /// Block of each landmark.
+    pub blocks: Vec<usize>,
 }
 
 impl Trials {
@@ -123,7 +124,7 @@ impl Trials {
         for (landmark, &block) in self.blocks.iter().enumerate() {
             let error = match without {
                 None => error(self.single[way][landmark]),
-                Some(outer) => self.nested[way][outer][landmark],
+                Some(outer) => error(self.nested[way][outer][landmark]),
             };
             sums[block].0 += error;
             sums[block].1 += 1.0;
@@ -136,8 +137,8 @@ impl Trials {
     }
 }
 
-/// Fits every way without every block and, where there is a choice to be made, without every pair of
-/// blocks, so that the choice can be repeated without the landmark it is judged by.
+/// Fits every way without every block and without every pair of blocks, so that a choice can be
+/// repeated without the landmark it is judged by.
 ///
 /// # Errors
 /// [`Interrupted`] where the watch says so.
@@ -154,7 +155,7 @@ pub fn run(
 ) -> Result<Trials, Interrupted> {
     let landmarks = material.landmarks;
     let blocks = landmarks.blocks();
-    let needs_nesting = ways.len() > 1 && blocks > 3;
+    let needs_nesting = blocks > 3;
     let pairs: Vec<(usize, usize)> = (0..blocks)
         .flat_map(|i| (i..blocks).map(move |j| (i, j)))
         .filter(|(i, j)| i == j || needs_nesting)
@@ -194,21 +195,12 @@ pub fn run(
         return Err(Interrupted);
     }
 
-    let nobody = Placed {
+    let nobody = Pair::from_fn(|_| Placed {
         rank: 1,
         candidates: 1,
-    };
-    let mut single = vec![
-        vec![
-            Pair {
-                a: nobody,
-                b: nobody
-            };
-            landmarks.len()
-        ];
-        ways.len()
-    ];
-    let mut nested = vec![vec![vec![0.0; landmarks.len()]; blocks]; ways.len()];
+    });
+    let mut single = vec![vec![nobody; landmarks.len()]; ways.len()];
+    let mut nested = vec![vec![vec![nobody; landmarks.len()]; blocks]; ways.len()];
     for (&(i, j), by_way) in pairs.iter().zip(&placed) {
         for (way, found) in by_way.iter().enumerate() {
             for &(landmark, placed) in found {
@@ -217,18 +209,14 @@ pub fn run(
                 }
                 let own = landmarks.list()[landmark].block;
                 let outer = if own == i { j } else { i };
-                nested[way][outer][landmark] = error(placed);
+                nested[way][outer][landmark] = placed;
             }
         }
     }
     if !needs_nesting {
         // With three blocks no second one can be spared, so the choice is judged as it was made.
-        for (way, by_outer) in nested.iter_mut().enumerate() {
-            for errors in by_outer {
-                for (landmark, e) in errors.iter_mut().enumerate() {
-                    *e = error(single[way][landmark]);
-                }
-            }
+        for (by_outer, single) in nested.iter_mut().zip(&single) {
+            by_outer.fill(single.clone());
         }
     }
     Ok(Trials {

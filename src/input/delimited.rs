@@ -68,7 +68,7 @@ pub struct Row {
 }
 
 /// Counts lines. The csv reader's own count is that of the place where it went on reading, which
-/// lies before the row itself where blank lines or the second half of a `\r\n` come between.
+/// lies before the row itself where blank lines come between.
 struct Lines<'t> {
     text: &'t [u8],
     at: usize,
@@ -88,15 +88,10 @@ impl<'t> Lines<'t> {
     fn line_from(&mut self, byte: u64) -> u64 {
         let byte = usize::try_from(byte).unwrap_or(usize::MAX);
         while let Some(&here) = self.text.get(self.at) {
-            let ends_line = match here {
-                b'\n' => true,
-                b'\r' => self.text.get(self.at + 1) != Some(&b'\n'),
-                _ => false,
-            };
-            if self.at >= byte && here != b'\n' && here != b'\r' {
+            if self.at >= byte && here != b'\n' {
                 break;
             }
-            self.line += u64::from(ends_line);
+            self.line += u64::from(here == b'\n');
             self.at += 1;
         }
         self.line
@@ -135,7 +130,7 @@ pub fn parse(source: &Source) -> Result<Table, InputError> {
             Ok(true) => {
                 let line = lines.line_from(cells.position().map_or(0, csv::Position::byte));
                 // A quote without its partner swallows the lines below it.
-                if let Some(at) = cells.iter().position(|c| c.contains(['\n', '\r'])) {
+                if let Some(at) = cells.iter().position(|c| c.contains('\n')) {
                     return Err(InputError::new(
                         Place::line(source.path(), line).column(at + 1),
                         Problem::LineBreak,

@@ -131,6 +131,16 @@ pub enum Problem {
         /// All known keys.
         known: String,
     },
+    /// A key that another table knows.
+    #[error("key {found:?} does not belong in {table} but in {belongs}; move it there")]
+    MisplacedKey {
+        /// The key.
+        found: String,
+        /// Table it stands in.
+        table: String,
+        /// Table it belongs in.
+        belongs: String,
+    },
     /// A key that must be there is not.
     #[error("{table} lacks the key {key:?}; add a line such as: {example}")]
     MissingKey {
@@ -210,7 +220,7 @@ pub enum Problem {
     #[error("expected a number with a decimal point, found {0:?}; write decimal points instead of commas")]
     DecimalComma(String),
     /// An infinite number.
-    #[error("expected a finite number, found {found:?}; {}", if *.logarithm { "where there is no connection there is no logarithm: give the weights themselves instead" } else { "correct the entry" })]
+    #[error("expected a finite number, found {found:?}; {}", if *.logarithm { "where this is the logarithm of an absent connection, give the weights themselves and say weights = \"fractions\" or \"counts\"" } else { "correct the entry" })]
     Infinite {
         /// What came.
         found: String,

@@ -52,6 +52,10 @@ pub fn read(
     for (row, label) in table.rows.iter().zip(&row_labels) {
         for &column in &order {
             let cell = row.cells.get(column + 1).unwrap_or("");
+            if column_labels[column] == *label && says_nothing(cell) {
+                values.push(0.0);
+                continue;
+            }
             let value = number(cell, weights, table.separator).map_err(|problem| {
                 let pair = format!("{label} to {}", column_labels[column]);
                 InputError::new(
@@ -155,14 +159,23 @@ fn column_order(
         .collect()
 }
 
+/// Whether a cell holds no finite number, as the diagonal, which is no data, often does not.
+fn says_nothing(cell: &str) -> bool {
+    is_missing(cell) || cell.parse().is_ok_and(|w: f64| !w.is_finite())
+}
+
+/// Whether a cell stands for a missing entry.
+fn is_missing(cell: &str) -> bool {
+    cell.is_empty() || MISSING.contains(&cell.to_ascii_lowercase().as_str())
+}
+
 /// One cell as a weight.
 fn number(cell: &str, weights: WeightKind, separator: Separator) -> Result<f64, Problem> {
     if cell.is_empty() {
         return Err(Problem::Missing("an empty cell".to_owned()));
     }
     let Ok(value) = cell.parse::<f64>() else {
-        let lower = cell.to_ascii_lowercase();
-        if MISSING.contains(&lower.as_str()) {
+        if is_missing(cell) {
             return Err(Problem::Missing(cell.to_owned()));
         }
         let pointed = cell.replacen(',', ".", 1);

@@ -21,7 +21,7 @@ pub struct InputFile {
 pub struct Source {
     /// Where it was read and what it holds, for the run record.
     pub file: InputFile,
-    /// Its text, without a byte-order mark.
+    /// Its text, without a byte-order mark, lines ended by a line feed.
     pub text: String,
 }
 
@@ -65,7 +65,12 @@ impl Source {
                     path: path.to_path_buf(),
                     sha256,
                 },
-                text: text.to_owned(),
+                // One kind of line end, so that lines are counted as an editor counts them.
+                text: if text.contains('\r') {
+                    text.replace("\r\n", "\n").replace('\r', "\n")
+                } else {
+                    text.to_owned()
+                },
             }),
             Err(e) => {
                 let at = e.valid_up_to();

@@ -183,6 +183,19 @@ fn bad_setting(error: BadSetting) -> Problem {
     }
 }
 
+/// The table a known key belongs in.
+fn home_of(key: &str) -> Option<&'static str> {
+    if TOP_KEYS.contains(&key) {
+        Some("the study file, above all tables")
+    } else if SPECIES_KEYS.contains(&key) {
+        Some("[species.a] or [species.b]")
+    } else if Request::KEYS.contains(&key) {
+        Some("[settings]")
+    } else {
+        None
+    }
+}
+
 /// The file a table was read from, for places in messages.
 struct Reader<'s> {
     path: &'s Path,
@@ -249,6 +262,16 @@ impl<'s> Table<'s> {
     /// Refuses every key that is not known here.
     fn only(&self, known: &[&str]) -> Result<(), InputError> {
         for (key, _) in self.table.iter() {
+            if let (false, Some(belongs)) = (known.contains(&key), home_of(key)) {
+                return Err(InputError::new(
+                    self.place_of(key),
+                    Problem::MisplacedKey {
+                        found: key.to_owned(),
+                        table: self.name.clone(),
+                        belongs: belongs.to_owned(),
+                    },
+                ));
+            }
             if !known.contains(&key) {
                 return Err(InputError::new(
                     self.place_of(key),

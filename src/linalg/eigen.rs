@@ -19,7 +19,13 @@ const TOLERANCE: f64 = 1e-14;
 ///
 /// Runs on one thread: the same matrix gives the same bits whatever else is running.
 #[must_use]
-pub fn largest_eigenpairs(mut matrix: Array2<f64>, count: usize) -> (Array1<f64>, Array2<f64>) {
+pub fn largest_eigenpairs(matrix: Array2<f64>, count: usize) -> (Array1<f64>, Array2<f64>) {
+    // Symmetric: turned over, it is the same matrix in the other order of storage.
+    let mut matrix = if matrix.is_standard_layout() {
+        matrix
+    } else {
+        matrix.reversed_axes().as_standard_layout().into_owned()
+    };
     let n = matrix.nrows();
     let count = count.min(n);
     if count == 0 {
@@ -95,7 +101,7 @@ fn as_faer<'m>(matrix: ArrayView2<'m, f64>) -> MatRef<'m, f64> {
     MatRef::from_row_major_slice(
         matrix
             .to_slice()
-            .expect("affinities are stored row by row without gaps"),
+            .expect("brought to standard layout at the start"),
         n,
         m,
     )

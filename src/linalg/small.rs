@@ -1,5 +1,6 @@
-//! Matrices of a dozen rows: the sizes of axes and landmarks, left to nalgebra.
+//! Matrices of a dozen rows: the sizes of axes and landmarks.
 
+use faer::MatRef;
 use nalgebra::DMatrix;
 use ndarray::Array2;
 
@@ -17,18 +18,23 @@ pub struct SmallSvd {
     pub v: DMatrix<f64>,
 }
 
-/// Singular value decomposition of a square matrix, complete even where it is singular.
+/// Singular value decomposition, with as many singular vectors as the smaller side even where the
+/// matrix is singular. By faer: nalgebra's (0.35) does not give the matrix back where singular values
+/// are equal or zero, which few landmarks on many axes make them.
+///
+/// # Panics
+/// If an entry is not finite.
 #[must_use]
-pub fn small_svd(matrix: DMatrix<f64>) -> SmallSvd {
-    let svd = matrix.svd(true, true);
-    let u = svd.u.expect("left singular vectors were asked for");
-    let v_t = svd.v_t.expect("right singular vectors were asked for");
-    let mut order: Vec<usize> = (0..svd.singular_values.len()).collect();
-    order.sort_by(|&i, &j| svd.singular_values[j].total_cmp(&svd.singular_values[i]));
+pub fn small_svd(matrix: &DMatrix<f64>) -> SmallSvd {
+    let (rows, columns) = matrix.shape();
+    let svd = MatRef::from_column_major_slice(matrix.as_slice(), rows, columns)
+        .thin_svd()
+        .expect("a finite matrix has singular values");
+    let (u, values, v) = (svd.U(), svd.S().column_vector(), svd.V());
     SmallSvd {
-        u: u.select_columns(&order),
-        values: order.iter().map(|&i| svd.singular_values[i]).collect(),
-        v: v_t.select_rows(&order).transpose(),
+        u: DMatrix::from_fn(rows, u.ncols(), |i, j| u[(i, j)]),
+        values: values.iter().copied().collect(),
+        v: DMatrix::from_fn(columns, v.ncols(), |i, j| v[(i, j)]),
     }
 }
 

@@ -45,15 +45,7 @@ pub fn summarise(
         })
         .collect();
     // Whether a landmark is out of line is judged in one and the same space for all.
-    let in_one_space: Vec<f64> = landmarks
-        .list()
-        .iter()
-        .enumerate()
-        .map(|(at, landmark)| {
-            distance_without(material, ways[choice.way].0, landmark.block, asked.of(at))
-        })
-        .collect();
-    let flags = contradicted(&in_one_space, &trials.single[choice.way]);
+    let flags = contradicted(trials, choice.way);
     nested
         .into_iter()
         .enumerate()

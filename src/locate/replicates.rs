@@ -139,9 +139,11 @@ fn one(
     }
 
     let mut chance = Stream::new(settings.seed, Purpose::Evidence, index);
-    let Ok(fitted) = ranking.way.evidence().fit(material, &weights, &mut chance) else {
-        return;
-    };
+    let fitted = ranking
+        .way
+        .evidence()
+        .fit(material, &weights, &mut chance)
+        .expect("every draw has two landmarks or more");
     let open = &ranking.open;
     fitted.dissimilarities(&open.a, &open.b, dissimilarities);
     let nearest = place::nearest(dissimilarities);
@@ -190,9 +192,8 @@ const SORT_FROM: usize = 10;
 /// replicate is first superimposed on the full sample by the *other* species' parcels. So neither
 /// species is the fixed one, and no error is zero by construction.
 fn stray(spreads: &mut Pair<Spread>, space: &Space, material: &Material<'_>, weights: &[f64]) {
-    let Ok(map) = align::fit(space.params, material.anchors.as_ref(), weights) else {
-        return;
-    };
+    let map = align::fit(space.params, material.anchors.as_ref(), weights)
+        .expect("every draw has two landmarks or more");
     let positions = map.positions(material.embedded());
     for side in Side::BOTH {
         let other = side.opposite();

@@ -1,32 +1,41 @@
 //! What the terminal shows: the answers first, in about 25 lines.
 
-use std::fmt::Write as _;
+use std::fmt::{Result, Write};
 
 use crate::align::Alignment;
 use crate::domain::{Pair, Side};
-use crate::holdout::{Curve, Placed};
+use crate::holdout::Placed;
 use crate::locate::{Counterpart, Located, Placement};
 use crate::prepare::Study;
 
 /// What every output says about its use.
-pub const CAUTION: &str = "Caution: each correspondence is a statistical hypothesis, not a target. For stimulation, surgery or dosing defer to histology, local protocols, ethics boards and licensed practice.";
+pub const CAUTION: &str = "\
+Caution: each correspondence is a statistical hypothesis, not a target. For stimulation, surgery
+or dosing defer to histology, local protocols, ethics boards and licensed practice.";
 
-/// Correspondences listed in each group.
+/// Parcels listed in each group.
 const LISTED: usize = 4;
 /// Longest label shown in full.
 const LABEL_WIDTH: usize = 24;
+/// Support from which a first counterpart counts as stable.
+const STABLE: f64 = 0.5;
 
 /// The summary of a run, for people.
+///
+/// # Panics
+/// Never: writing to memory does not fail.
 #[must_use]
 pub fn summary(study: &Study, located: &Located) -> String {
     let mut text = String::new();
-    heading(&mut text, study);
-    trust(&mut text, study, located);
-    correspondences(&mut text, study, located);
+    heading(&mut text, study)
+        .and_then(|()| trust(&mut text, study, located))
+        .and_then(|()| correspondences(&mut text, study, located))
+        .and_then(|()| outsiders(&mut text, study, located))
+        .expect("writing to memory does not fail");
     text
 }
 
-fn heading(text: &mut String, study: &Study) {
+fn heading(text: &mut String, study: &Study) -> Result {
     let species = Pair::from_fn(|side: Side| {
         let (parcels, treatment) = (&study.species[side].parcels, &study.treatment[side]);
         format!(
@@ -43,77 +52,48 @@ fn heading(text: &mut String, study: &Study) {
     } else {
         format!(" in {blocks} blocks")
     };
-    line(text, format_args!("{}", study.title));
-    line(
+    writeln!(text, "{}", study.title)?;
+    writeln!(
         text,
-        format_args!(
-            "{}. {}. {landmarks} landmarks{in_blocks}.",
-            species.a, species.b
-        ),
-    );
+        "{}. {}. {landmarks} landmarks{in_blocks}.\n",
+        species.a, species.b
+    )
 }
 
 /// How far the landmarks can be trusted when left out.
-fn trust(text: &mut String, study: &Study, located: &Located) {
-    let chosen = located.choice.evidence;
-    let error = |alignment: Alignment| {
-        let axes = located.choice.axes[alignment];
-        located
-            .curves
-            .iter()
-            .find(|curve| curve.alignment == alignment)
-            .and_then(|curve: &Curve| curve.points.iter().find(|p| p.axes == axes))
-            .map_or(f64::NAN, |point| point.error)
-    };
-    line(text, format_args!(""));
-    line(
-        text,
-        format_args!(
-            "Can the landmarks be trusted? Each left out, every choice made again without it:"
-        ),
-    );
+fn trust(text: &mut String, study: &Study, located: &Located) -> Result {
     let names = Pair::from_fn(|side| short(study.species[side].parcels.species()));
-    line(
+    let from = names.map(|name| format!("from {name}"));
+    writeln!(
         text,
-        format_args!(
-            "  {:<26} {:>18} {:>18} {:>8}",
-            "its counterpart comes",
-            format!("from {}", names.a),
-            format!("from {}", names.b),
-            "chance"
-        ),
-    );
+        "Can the landmarks be trusted? Each left out, every choice made again without it:\n  \
+         {:<26} {:>18} {:>18} {:>8}",
+        "its counterpart comes", from.a, from.b, "chance"
+    )?;
     let n = located.left_out.len();
     let placed = |side: Side| located.left_out.iter().map(move |l| l.placed[side]);
     let mean = |of: &dyn Fn(Placed) -> f64| {
         Pair::from_fn(|side| placed(side).map(of).sum::<f64>() / n as f64)
     };
+    let both = |pair: Pair<f64>| (pair.a + pair.b) / 2.0;
     for (what, within) in [("first", 1), ("among the first five", 5)] {
-        let hits = Pair::from_fn(|side| placed(side).filter(|p| p.rank <= within).count());
-        let chance = mean(&|p| within.min(p.candidates) as f64 / p.candidates as f64);
-        line(
+        let hits = Pair::from_fn(|side| placed(side).filter(|p| p.rank <= within).count())
+            .map(|hits| format!("{hits} of {n}"));
+        let chance = both(mean(&|p| (within as f64 / p.candidates as f64).min(1.0)));
+        writeln!(
             text,
-            format_args!(
-                "  {what:<26} {:>18} {:>18} {:>8.2}",
-                format!("{} of {n}", hits.a),
-                format!("{} of {n}", hits.b),
-                (chance.a + chance.b) / 2.0
-            ),
-        );
+            "  {what:<26} {:>18} {:>18} {chance:>8.2}",
+            hits.a, hits.b
+        )?;
     }
     let reciprocal = mean(&|p| 1.0 / p.rank as f64);
-    let chance =
-        mean(&|p| (1..=p.candidates).map(|r| 1.0 / r as f64).sum::<f64>() / p.candidates as f64);
-    line(
+    let harmonic = |n: usize| (1..=n).map(|rank| 1.0 / rank as f64).sum::<f64>();
+    let chance = both(mean(&|p| harmonic(p.candidates) / p.candidates as f64));
+    writeln!(
         text,
-        format_args!(
-            "  {:<26} {:>18.2} {:>18.2} {:>8.2}",
-            "mean reciprocal rank",
-            reciprocal.a,
-            reciprocal.b,
-            (chance.a + chance.b) / 2.0
-        ),
-    );
+        "  {:<26} {:>18.2} {:>18.2} {chance:>8.2}",
+        "mean reciprocal rank", reciprocal.a, reciprocal.b
+    )?;
     let contradicted: Vec<&str> = study
         .landmarks
         .list()
@@ -123,133 +103,109 @@ fn trust(text: &mut String, study: &Study, located: &Located) {
         .map(|(landmark, _)| landmark.name.as_str())
         .collect();
     if !contradicted.is_empty() {
-        line(
+        writeln!(
             text,
-            format_args!("  Contradicted by the others: {}.", contradicted.join(", ")),
-        );
+            "  Contradicted by the others: {}.",
+            contradicted.join(", ")
+        )?;
     }
-    let other = Alignment::BOTH
-        .into_iter()
-        .find(|a| *a != chosen)
-        .unwrap_or(chosen);
-    line(
-        text,
-        format_args!(
-            "  Ranked by {} distance on {} axes: left-out error {:.2} (0 all first, 1 all last); {} on {}: {:.2}.",
-            named(chosen),
-            located.choice.axes[chosen],
-            error(chosen),
-            named(other),
-            located.choice.axes[other],
-            error(other)
-        ),
-    );
+    let chosen = located.choice.evidence;
+    let name = match chosen {
+        Alignment::Procrustes => "Procrustes",
+        Alignment::Canonical => "canonical",
+    };
+    let axes = located.choice.axes[chosen];
+    writeln!(text, "  Ranked by {name} distance on {axes} axes.\n")
 }
 
-/// The strongest and the weakest correspondences, and what fits nowhere.
-fn correspondences(text: &mut String, study: &Study, located: &Located) {
-    let firsts: Vec<(&Placement, &Counterpart)> = located
+/// The strongest and the weakest correspondences of a's parcels.
+fn correspondences(text: &mut String, study: &Study, located: &Located) -> Result {
+    let mut firsts: Vec<(&Placement, &Counterpart)> = located
         .placements
         .a
         .iter()
-        .filter_map(|p| Some((p, p.counterparts.first()?)))
+        .filter_map(|placement| Some((placement, placement.counterparts.first()?)))
         .collect();
-    let mut by_support = firsts.clone();
-    by_support.sort_by(|(_, x), (_, y)| {
-        (y.mutual.cmp(&x.mutual))
-            .then(y.support.total_cmp(&x.support))
-            .then(x.distance.total_cmp(&y.distance))
+    firsts.sort_by(|(_, x), (_, y)| {
+        (y.support.total_cmp(&x.support)).then(x.distance.total_cmp(&y.distance))
     });
-    line(text, format_args!(""));
-    line(
+    let of_all = firsts.len();
+    let is_strong = |found: &Counterpart| found.mutual && found.support >= STABLE;
+    let is_weak = |found: &Counterpart| found.support < STABLE;
+
+    let strong: Vec<_> = firsts
+        .iter()
+        .filter(|(_, found)| is_strong(found))
+        .collect();
+    writeln!(
         text,
-        format_args!(
-            "Strongest correspondences (each the other's first, first under most landmark weights):"
-        ),
-    );
-    for (placement, found) in by_support.iter().filter(|(_, f)| f.mutual).take(LISTED) {
-        pair_line(text, study, placement, found);
+        "Stable: each the other's first, under at least half of all landmark weights ({} of {of_all}).",
+        strong.len()
+    )?;
+    for (placement, found) in strong.iter().take(LISTED) {
+        pair(text, study, placement, found)?;
     }
-    line(
+    let weak: Vec<_> = firsts
+        .iter()
+        .rev()
+        .filter(|(_, found)| is_weak(found))
+        .collect();
+    writeln!(
         text,
-        format_args!("Weakest (another comes first under most landmark weights; cannot tell):"),
-    );
-    let mut weakest = firsts.clone();
-    weakest.sort_by(|(_, x), (_, y)| {
-        x.support
-            .total_cmp(&y.support)
-            .then(y.distance.total_cmp(&x.distance))
-    });
-    for (placement, found) in weakest.iter().take(LISTED) {
-        pair_line(text, study, placement, found);
+        "Cannot tell: another comes first under most landmark weights ({} of {of_all}).",
+        weak.len()
+    )?;
+    for (placement, found) in weak.iter().take(LISTED) {
+        pair(text, study, placement, found)?;
     }
-    let mutual = firsts.iter().filter(|(_, f)| f.mutual).count();
-    line(
+    writeln!(
         text,
-        format_args!(
-            "  In all {mutual} of {} parcels and their first counterparts are each other's first.",
-            firsts.len()
-        ),
-    );
-    line(text, format_args!(""));
-    line(
+        "  Support is stability under other landmark weights, not a chance of being right.\n"
+    )
+}
+
+/// The parcels furthest from everything, and those set aside.
+fn outsiders(text: &mut String, study: &Study, located: &Located) -> Result {
+    writeln!(
         text,
-        format_args!("Furthest from every candidate (1 = as far as random pairs; check these for no counterpart):"),
-    );
+        "Furthest from every candidate (1: as random pairs; far alone is no proof of no counterpart):"
+    )?;
     for side in Side::BOTH {
         let parcels = &study.species[side].parcels;
-        let mut far: Vec<(&Placement, f64)> = located.placements[side]
+        let mut far: Vec<(usize, f64)> = located.placements[side]
             .iter()
-            .filter_map(|p| {
-                let least = p
-                    .counterparts
-                    .iter()
-                    .map(|c| c.distance)
-                    .min_by(f64::total_cmp)?;
-                Some((p, least))
+            .filter_map(|placement| {
+                let distances = placement.counterparts.iter().map(|c| c.distance);
+                Some((placement.parcel, distances.min_by(f64::total_cmp)?))
             })
             .collect();
         far.sort_by(|x, y| y.1.total_cmp(&x.1));
         let named: Vec<String> = far
             .iter()
             .take(LISTED)
-            .map(|(p, d)| format!("{} {d:.2}", short(&parcels.labels()[p.parcel])))
+            .map(|(parcel, d)| format!("{} {d:.2}", short(&parcels.labels()[*parcel])))
             .collect();
         let aside = match parcels.isolated().len() {
             0 => String::new(),
             n => format!("; set aside without connections: {n}"),
         };
-        line(
-            text,
-            format_args!(
-                "  {}: {}{aside}",
-                short(parcels.species()),
-                named.join(", ")
-            ),
-        );
+        let species = short(parcels.species());
+        writeln!(text, "  {species}: {}{aside}", named.join(", "))?;
     }
+    Ok(())
 }
 
-fn pair_line(text: &mut String, study: &Study, placement: &Placement, found: &Counterpart) {
+fn pair(text: &mut String, study: &Study, placement: &Placement, found: &Counterpart) -> Result {
     let label = |side: Side, parcel: usize| short(&study.species[side].parcels.labels()[parcel]);
     let (low, high) = found.rank_interval;
-    line(
+    writeln!(
         text,
-        format_args!(
-            "  {:<20} {:<20} support {:.2}  rank {low}-{high}  distance {:.2}",
-            label(Side::A, placement.parcel),
-            label(Side::B, found.parcel),
-            found.support,
-            found.distance
-        ),
-    );
-}
-
-fn named(alignment: Alignment) -> &'static str {
-    match alignment {
-        Alignment::Procrustes => "Procrustes",
-        Alignment::Canonical => "canonical",
-    }
+        "  {:<20} {:<20} support {:.2}  rank {low}-{high}  distance {:.2}",
+        label(Side::A, placement.parcel),
+        label(Side::B, found.parcel),
+        found.support,
+        found.distance
+    )
 }
 
 /// A label cut to what a terminal line can hold.
@@ -259,13 +215,4 @@ fn short(label: &str) -> String {
     }
     let head: String = label.chars().take(LABEL_WIDTH - 1).collect();
     format!("{head}…")
-}
-
-fn line(text: &mut String, words: std::fmt::Arguments<'_>) {
-    let start = text.len();
-    text.write_fmt(words)
-        .expect("writing to memory does not fail");
-    let end = text.trim_end().len().max(start);
-    text.truncate(end);
-    text.push('\n');
 }
