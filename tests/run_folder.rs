@@ -283,6 +283,20 @@ fn what_is_no_folder_is_refused() {
     assert_eq!(beside(&study), ["file", "inside"]);
 }
 
+/// A run needs room for a longer name beside its folder. That there is none, or no permission, must
+/// not come out when hours have been spent: this run would take many minutes.
+#[test]
+fn a_place_that_will_not_take_the_result_is_refused_at_the_start() {
+    let study = Study::new();
+    let out = study.path(&"long".repeat(62));
+    Run::of(&mut study.command(&out, &["--replicates", "10000000"])).refused(&[
+        "kinmark-new",
+        "name too long",
+        "check",
+    ]);
+    assert_eq!(beside(&study), Vec::<String>::new());
+}
+
 #[test]
 fn a_fault_in_the_input_touches_nothing() {
     let study = finished();

@@ -172,6 +172,7 @@ impl Survey {
         if state != State::Finished {
             write(&marker, identity)?;
         }
+        try_beside(&folder.target)?;
         Ok(folder)
     }
 }
@@ -315,6 +316,14 @@ fn is_record(path: &Path) -> bool {
 fn beside(target: &Path, what: &str) -> PathBuf {
     let name = target.file_name().unwrap_or_default().to_string_lossy();
     target.with_file_name(format!(".{name}.kinmark-{what}"))
+}
+
+/// Tries now what is needed at the end, so that no long run is lost for want of permission.
+fn try_beside(target: &Path) -> Result<(), FolderError> {
+    let fresh = beside(target, "new");
+    remove_ours(&fresh)?;
+    fs::create_dir(&fresh).map_err(on("create the folder", &fresh))?;
+    remove_ours(&fresh)
 }
 
 fn build(
