@@ -841,6 +841,23 @@ fn study_files() {
             ],
         ),
         case(
+            "setting above all tables",
+            |s| s.edit("study.toml", |text| format!("replicates = 50\n{text}")),
+            &[
+                "study.toml, line 1, column 1: ",
+                "key \"replicates\" does not belong in the study file but in [settings]",
+                "move it there",
+            ],
+        ),
+        case(
+            "setting of a species among the settings",
+            |s| s.setting("weights = \"counts\""),
+            &[
+                "study.toml, line 15, column 1: ",
+                "key \"weights\" does not belong in [settings] but in [species.a] or [species.b]",
+            ],
+        ),
+        case(
             "a third species",
             |s| s.edit("study.toml", |text| text + "[species.c]\nname = \"x\"\n"),
             &[
@@ -1103,6 +1120,26 @@ fn options_that_do_not_exist() {
         &["--seed", "1", "--seed", "2"],
         &["--seed", "multiple times"],
     );
+}
+
+#[test]
+fn commands_that_do_not_exist() {
+    for (arguments, says) in [
+        (
+            &["find", "study.toml"][..],
+            "unrecognized subcommand 'find'",
+        ),
+        (&["locate"], "--out <DIR>"),
+        (&[], "Usage: kinmark"),
+    ] {
+        let run = Run::of(common::program().args(arguments));
+        assert_eq!(
+            (run.code, run.stdout.as_str()),
+            (Some(2), ""),
+            "{arguments:?}"
+        );
+        assert!(run.stderr.contains(says), "{}", run.stderr);
+    }
 }
 
 /// Usage errors come from the parser of the command line, which adds a word on how it is used.

@@ -2,9 +2,7 @@
 
 mod common;
 
-use std::path::Path;
-
-use common::{record, recorded_warnings, Run, Study, Tables, PARCELS_A};
+use common::{record, recorded_warnings, Run, Study, Tables, PARCELS_A, PARCELS_B};
 
 const CSV: [&str; 3] = ["a.csv", "b.csv", "landmarks.csv"];
 
@@ -47,23 +45,15 @@ fn landmark_column(study: &Study, column: &str, cells: [&str; 6]) {
     });
 }
 
-/// Recomputes every weight of a matrix.
-fn reweigh(study: &Study, name: &str, weight: impl Fn(usize, usize, &str) -> String) {
-    study.edit_table(name, |rows| {
-        for (i, row) in rows[1..].iter_mut().enumerate() {
-            for (j, cell) in row[1..].iter_mut().enumerate() {
-                *cell = weight(i, j, cell);
-            }
-        }
-    });
-}
+/// Another way to write the same study.
+type Dress = fn(&Study);
 
 #[test]
 fn the_dress_of_a_table_changes_nothing() {
     let study = Study::new();
     study.run(&[]).succeeded();
     let (plain, warnings) = (Tables::of(&study.out()), recorded_warnings(&study.out()));
-    let dresses: [(&str, fn(&Study)); 16] = [
+    let dresses: [(&str, Dress); 16] = [
         ("byte-order mark", |s| {
             each_table(s, |text| format!("\u{feff}{text}"));
             s.edit("study.toml", |text| format!("\u{feff}{text}"));
@@ -103,16 +93,16 @@ fn the_dress_of_a_table_changes_nothing() {
             s.set("b.csv", 1, 1, "from \\ to");
         }),
         ("other spellings of numbers", |s| {
-            reweigh(s, "a.csv", |_, _, cell| match cell {
+            s.reweigh("a.csv", |_, _, cell| match cell {
                 "0" => "0.000".to_owned(),
                 _ => format!("+{cell}.0e0"),
             });
         }),
         ("a diagonal of missing entries", |s| {
-            reweigh(s, "a.csv", |i, j, cell| {
+            s.reweigh("a.csv", |i, j, cell| {
                 if i == j { "NaN" } else { cell }.to_owned()
             });
-            reweigh(s, "b.csv", |i, j, cell| {
+            s.reweigh("b.csv", |i, j, cell| {
                 if i == j { "" } else { cell }.to_owned()
             });
         }),
@@ -287,6 +277,29 @@ fn a_landmark_may_be_a_group_and_say_more_about_itself() {
     );
 }
 
+/// Nothing is left to place then, but landmarks can still be left out and judged.
+#[test]
+fn every_parcel_may_be_a_landmark() {
+    let study = Study::with(|s| {
+        s.edit_table("landmarks.csv", |rows| {
+            for at in 6..PARCELS_A.len() {
+                let name = format!("field {at}");
+                rows.push(vec![
+                    name,
+                    PARCELS_A[at].to_owned(),
+                    PARCELS_B[at].to_owned(),
+                ]);
+            }
+            let last = rows.len() - 1;
+            rows[last][2] += ";Claus;Tect";
+        });
+    });
+    let tables = study.tables(&[]);
+    assert_eq!(tables.rows("landmarks.csv").len(), 10);
+    assert_eq!(tables.rows("counterparts.csv").len(), 0);
+    assert_eq!(tables.rows("positions.csv").len(), 22);
+}
+
 /// Runs the study with these options and asserts that the warning is on standard error and in the
 /// record, and that `--quiet` keeps it from the first only.
 fn warns(study: &Study, options: &[&str], says: &[&str]) {
@@ -333,7 +346,7 @@ fn with_correlations(change: impl FnOnce(&Study)) -> Study {
 #[test]
 fn a_network_that_falls_apart_is_told() {
     let study = Study::with(|s| {
-        reweigh(s, "a.csv", |i, j, cell| {
+        s.reweigh("a.csv", |i, j, cell| {
             let apart = (i < 6) != (j < 6);
             if apart { "0" } else { cell }.to_owned()
         });
@@ -348,7 +361,7 @@ fn a_network_that_falls_apart_is_told() {
 #[test]
 fn parcels_without_connections_are_set_aside_and_told() {
     let study = Study::with(|s| {
-        reweigh(s, "a.csv", |i, j, cell| {
+        s.reweigh("a.csv", |i, j, cell| {
             if i == 6 || j == 6 { "0" } else { cell }.to_owned()
         });
     });
@@ -371,7 +384,7 @@ fn a_diagonal_that_is_no_data_is_told() {
     warns(&study, &[], &["Vole: on the diagonal 1 entry is not zero"]);
     assert!(study.tables(&[]) == Study::new().tables(&[]));
     let study = Study::with(|s| {
-        reweigh(s, "a.csv", |i, j, cell| {
+        s.reweigh("a.csv", |i, j, cell| {
             if i == j { "7" } else { cell }.to_owned()
         });
     });
@@ -383,7 +396,7 @@ fn a_diagonal_that_is_no_data_is_told() {
     // A parcel correlates with itself to 1 by nature.
     does_not_warn(
         &with_correlations(|s| {
-            reweigh(s, "b.csv", |i, j, cell| {
+            s.reweigh("b.csv", |i, j, cell| {
                 if i == j { "1" } else { cell }.to_owned()
             });
         }),
@@ -426,7 +439,7 @@ fn odd_fractions_are_told() {
 fn odd_logarithms_are_told() {
     let logarithms = |s: &Study| {
         s.swap("study.toml", "\"fractions\"", "\"log10\"");
-        reweigh(s, "b.csv", |i, j, cell| {
+        s.reweigh("b.csv", |i, j, cell| {
             let weight: f64 = cell.parse().expect("the study holds numbers");
             if i == j {
                 "0".to_owned()
@@ -538,7 +551,7 @@ fn replicates_with_too_few_landmarks_are_told() {
 fn an_embedding_with_few_axes_is_told() {
     warns(
         &Study::with(|s| {
-            reweigh(s, "a.csv", |i, j, _| {
+            s.reweigh("a.csv", |i, j, _| {
                 if i % 2 == j % 2 { "0" } else { "5" }.to_owned()
             });
         }),
@@ -552,9 +565,7 @@ fn an_embedding_with_few_axes_is_told() {
 fn landmarks_that_do_not_span_the_axes_are_told() {
     warns(
         &Study::with(|s| {
-            reweigh(s, "a.csv", |i, j, _| {
-                if i == j { "0" } else { "5" }.to_owned()
-            });
+            s.reweigh("a.csv", |i, j, _| if i == j { "0" } else { "5" }.to_owned());
         }),
         &[],
         &[
@@ -568,11 +579,7 @@ fn landmarks_that_do_not_span_the_axes_are_told() {
 /// The demo study has one wrong landmark, and its answers name the right partner.
 #[test]
 fn a_landmark_that_the_others_contradict_is_told() {
-    let demo = Path::new(env!("CARGO_MANIFEST_DIR")).join("species-demo");
-    let study = Study::new();
-    for name in ["study.toml", "a.csv", "b.csv", "landmarks.csv"] {
-        study.write(name, common::read(&demo.join(name)));
-    }
+    let study = Study::demo();
     warns(
         &study,
         &[],
