@@ -6,7 +6,7 @@ mod procrustes;
 mod weighted;
 
 pub use canonical::{RidgeCca, RidgeCcaParams, RidgeCcaValidParams};
-pub use joint::{Affine, JointMap, Similarity};
+pub use joint::{Affine, Anchorage, JointMap, Similarity};
 pub use procrustes::{Procrustes, ProcrustesParams, ProcrustesValidParams, Scaling};
 pub use weighted::AlignError;
 

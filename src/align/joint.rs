@@ -58,6 +58,55 @@ pub struct Similarity {
     shift: Array1<f64>,
 }
 
+/// Points of an embedding and where a joint space has them, reduced to what superimposing other maps
+/// of the same points needs: moments, whatever the number of points.
+#[derive(Debug, Clone, PartialEq)]
+pub struct Anchorage {
+    mean: Array1<f64>,
+    mean_onto: Array1<f64>,
+    own: Array2<f64>,
+    cross: Array2<f64>,
+}
+
+impl Anchorage {
+    /// Takes the points' embedding coordinates and their positions, `(points, axes)` each.
+    #[must_use]
+    pub fn new(points: ArrayView2<'_, f64>, onto: &Array2<f64>) -> Anchorage {
+        let mean = points.mean_axis(Axis(0)).unwrap_or_default();
+        let mean_onto = onto.mean_axis(Axis(0)).unwrap_or_default();
+        let centred = &points - &mean;
+        Anchorage {
+            own: centred.t().dot(&centred),
+            cross: centred.t().dot(&(onto - &mean_onto)),
+            mean,
+            mean_onto,
+        }
+    }
+
+    /// The similarity that brings the points, as `map` places them, as close as possible (least
+    /// squares) to their anchored positions.
+    #[must_use]
+    pub fn similarity(&self, map: &Affine) -> Similarity {
+        let cross = map.matrix.t().dot(&self.cross);
+        let svd = small_svd(&DMatrix::from_fn(cross.nrows(), cross.ncols(), |i, j| {
+            cross[(i, j)]
+        }));
+        let spread = (&map.matrix * &self.own.dot(&map.matrix)).sum();
+        let scale = if spread > 0.0 {
+            svd.values.iter().sum::<f64>() / spread
+        } else {
+            1.0
+        };
+        let turn = from_small(&(&svd.u * svd.v.transpose()));
+        let mean_from = (&self.mean - &map.origin).dot(&map.matrix) + &map.offset;
+        Similarity {
+            shift: &self.mean_onto - &(mean_from.dot(&turn) * scale),
+            turn,
+            scale,
+        }
+    }
+}
+
 /// A fitted joint space.
 #[derive(Debug, Clone, PartialEq)]
 pub struct JointMap {
@@ -118,30 +167,12 @@ impl JointMap {
         }
     }
 
-    /// The similarity that brings the parcels of one species, at these positions in this space, as
-    /// close as possible (least squares) to where another space has them. Both `(parcels, axes)`.
+    /// The similarity that brings points as close as possible (least squares) to where another space
+    /// has them. Both `(points, axes)`.
     #[must_use]
     pub fn superimpose(from: &Array2<f64>, onto: &Array2<f64>) -> Similarity {
-        let mean = |points: &Array2<f64>| points.mean_axis(Axis(0)).unwrap_or_default();
-        let (mean_from, mean_onto) = (mean(from), mean(onto));
-        let count = from.nrows() as f64;
-        let raw = from.t().dot(onto);
-        let cross = DMatrix::from_fn(raw.nrows(), raw.ncols(), |i, j| {
-            raw[(i, j)] - count * mean_from[i] * mean_onto[j]
-        });
-        let spread = from.iter().map(|x| x * x).sum::<f64>() - count * mean_from.dot(&mean_from);
-        let svd = small_svd(&cross);
-        let turn = from_small(&(&svd.u * svd.v.transpose()));
-        let scale = if spread > 0.0 {
-            svd.values.iter().sum::<f64>() / spread
-        } else {
-            1.0
-        };
-        Similarity {
-            shift: mean_onto - mean_from.dot(&turn) * scale,
-            turn,
-            scale,
-        }
+        let identity = Affine::centred(Array1::zeros(from.ncols()), Array2::eye(from.ncols()));
+        Anchorage::new(from.view(), onto).similarity(&identity)
     }
 
     /// Share of the variance of a species' embedding (over its parcels, on the axes that enter)

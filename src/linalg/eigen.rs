@@ -12,7 +12,7 @@ const FULL_UP_TO: usize = 150;
 /// A partial solution is believed where no pair misses by more than this share of the spectrum.
 const RESIDUAL: f64 = 1e-10;
 /// Tolerance asked of the iteration, in the spectrum's units.
-const TOLERANCE: f64 = 1e-14;
+const TOLERANCE: f64 = 1e-12;
 
 /// The `count` algebraically largest eigenvalues of a symmetric matrix with spectrum in [-1, 1], in
 /// decreasing order, and their unit eigenvectors, one a column `(n, count)`.

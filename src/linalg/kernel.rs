@@ -82,25 +82,27 @@ impl WithSimd for FirstLeast<'_> {
 
     #[inline(always)]
     fn with_simd<S: Simd>(self, _simd: S) -> Option<usize> {
-        let lesser = |x: f64, y: f64| if x < y { x } else { y };
+        let whole = self.values.len() - self.values.len() % LANES;
         let mut least = [f64::INFINITY; LANES];
-        let chunks = self.values.chunks_exact(LANES);
-        let mut overall = f64::INFINITY;
-        for &value in chunks.remainder() {
-            overall = lesser(value, overall);
-        }
-        for chunk in chunks {
+        // Chunk numbers are kept as floats: one mask then serves values and numbers alike.
+        let mut chunk_of = [0.0; LANES];
+        for (chunk, values) in self.values.chunks_exact(LANES).enumerate() {
+            let chunk = chunk as f64;
             for lane in 0..LANES {
-                least[lane] = lesser(chunk[lane], least[lane]);
+                let better = values[lane] < least[lane];
+                least[lane] = if better { values[lane] } else { least[lane] };
+                chunk_of[lane] = if better { chunk } else { chunk_of[lane] };
             }
         }
-        for value in least {
-            overall = lesser(value, overall);
+        let mut first = (f64::INFINITY, usize::MAX);
+        let lanes = (0..LANES).map(|lane| (least[lane], chunk_of[lane] as usize * LANES + lane));
+        let rest = (whole..self.values.len()).map(|at| (self.values[at], at));
+        for (value, at) in lanes.chain(rest) {
+            if value < first.0 || (value == first.0 && at < first.1) {
+                first = (value, at);
+            }
         }
-        if overall == f64::INFINITY {
-            return None;
-        }
-        self.values.iter().position(|&value| value == overall)
+        (first.0 < f64::INFINITY).then_some(first.1)
     }
 }
 
@@ -122,12 +124,33 @@ impl WithSimd for KeepLeast<'_> {
             least,
             rows,
         } = self;
-        let count = values.len();
-        let (least, rows) = (&mut least[..count], &mut rows[..count]);
-        for j in 0..count {
-            let better = values[j] < least[j];
-            least[j] = if better { values[j] } else { least[j] };
-            rows[j] = if better { row } else { rows[j] };
+        let chunks = values
+            .chunks(LANES)
+            .zip(least.chunks_mut(LANES))
+            .zip(rows.chunks_mut(LANES));
+        for ((values, least), rows) in chunks {
+            // Whole chunks are worked on in copies: writing in place would mask every store.
+            if let (Ok(values), Ok(now), Ok(kept)) = (
+                <[f64; LANES]>::try_from(values),
+                <[f64; LANES]>::try_from(&*least),
+                <[u64; LANES]>::try_from(&*rows),
+            ) {
+                let (mut now, mut kept) = (now, kept);
+                for lane in 0..LANES {
+                    let better = values[lane] < now[lane];
+                    now[lane] = if better { values[lane] } else { now[lane] };
+                    kept[lane] = if better { row } else { kept[lane] };
+                }
+                least.copy_from_slice(&now);
+                rows.copy_from_slice(&kept);
+            } else {
+                for ((value, least), kept) in values.iter().zip(least).zip(rows) {
+                    if value < least {
+                        *least = *value;
+                        *kept = row;
+                    }
+                }
+            }
         }
     }
 }

@@ -1,9 +1,9 @@
 //! A joint space and what its axes carry.
 
-use ndarray::{concatenate, Array1, Array2, ArrayView1, Axis};
+use ndarray::{concatenate, s, Array1, Array2, ArrayView1, Axis};
 
 use super::left_out::map_without;
-use crate::align::{self, JointMap, Params};
+use crate::align::{self, Anchorage, JointMap, Params};
 use crate::domain::{Pair, Side};
 use crate::evidence::Material;
 use crate::holdout::Asked;
@@ -20,6 +20,8 @@ pub struct Space {
     pub map: JointMap,
     /// Positions `(parcels, axes)` of each species.
     pub positions: Pair<Array2<f64>>,
+    /// What brings replicates of the space to these positions, by the parcels of one species.
+    pub(super) anchorage: Pair<Anchorage>,
     /// Bootstrap standard errors of the positions relative to the other species' parcels.
     pub standard_errors: Pair<Array2<f64>>,
     /// Share of each embedding's variance that an axis predicts.
@@ -62,6 +64,10 @@ impl Space {
                 .collect(),
             correlations_left_out: left_out_correlations(material, &positions, params, asked),
             standard_errors: positions.as_ref().map(|p| Array2::zeros(p.dim())),
+            anchorage: Pair::from_fn(|side| {
+                let leading = embedded[side].slice(s![.., ..params.axes]);
+                Anchorage::new(leading, &positions[side])
+            }),
             positions,
             map,
         }

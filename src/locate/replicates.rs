@@ -3,7 +3,7 @@
 use ndarray::{Array2, ArrayView2};
 
 use super::{intervals, JointRanking, Space};
-use crate::align::{self, Alignment, JointMap, PerAlignment};
+use crate::align::{self, Alignment, PerAlignment};
 use crate::bootstrap::{accumulate, Purpose, Spread, Stream};
 use crate::domain::{Pair, Side};
 use crate::evidence::{Evidence, Material};
@@ -194,10 +194,9 @@ const SORT_FROM: usize = 10;
 fn stray(spreads: &mut Pair<Spread>, space: &Space, material: &Material<'_>, weights: &[f64]) {
     let map = align::fit(space.params, material.anchors.as_ref(), weights)
         .expect("every draw has two landmarks or more");
-    let positions = map.positions(material.embedded());
     for side in Side::BOTH {
         let other = side.opposite();
-        let back = JointMap::superimpose(&positions[other], &space.positions[other]);
+        let back = space.anchorage[other].similarity(&map.maps[other]);
         let there = map.maps[side].then(&back);
         spreads[side].record(
             &there.apply(material.embedded()[side].view()),
