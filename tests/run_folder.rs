@@ -495,8 +495,8 @@ fn an_interrupted_replacement_leaves_the_finished_run() {
 fn a_run_that_is_killed_tells_what_it_was_and_can_be_repeated() {
     let study = Study::new();
     let options = ["--replicates", "40000", "--seed", "7"];
-    let running = Running::start(&mut study.command(&study.out(), &options), &study.out());
-    running.signal("KILL");
+    let mut running = Running::start(&mut study.command(&study.out(), &options), &study.out());
+    running.0.kill().unwrap();
     assert_eq!(running.end().code, None);
 
     assert_eq!(names(&study.out()), ["unfinished.json"]);
