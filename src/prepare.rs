@@ -40,6 +40,13 @@ pub struct Inputs {
     pub landmarks: InputFile,
     /// The matrices.
     pub matrix: Pair<InputFile>,
+    /// Files of labels, where matrices have them.
+    #[serde(skip_serializing_if = "none")]
+    pub labels: Pair<Option<InputFile>>,
+}
+
+fn none(files: &Pair<Option<InputFile>>) -> bool {
+    files.a.is_none() && files.b.is_none()
 }
 
 /// A study that has passed every check, embedded.
@@ -68,6 +75,7 @@ pub struct Study {
 /// One species' matrix as read, with what its parcels are.
 struct Raw {
     file: InputFile,
+    labels: Option<InputFile>,
     network: Connectivity,
     parcels: Parcels,
 }
@@ -96,6 +104,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         study: description.file,
         landmarks: table.file,
         matrix: raw.as_ref().map(|raw| raw.file.clone()),
+        labels: raw.as_ref().map(|raw| raw.labels.clone()),
     };
     let mut raw = raw.map(Some);
     let species = Pair::try_from_fn(|side| {
@@ -166,9 +175,9 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
 
 /// Reads and checks one matrix, and finds its parcels.
 fn read_species(described: &SpeciesFile, warnings: &mut Vec<Warning>) -> Result<Raw, InputError> {
-    let source = Source::read(&described.matrix)?;
-    let (mut network, more) = input::read_matrix(&source, described.weights, &described.name)?;
-    warnings.extend(more);
+    let matrix = input::read_matrix_of(described)?;
+    let mut network = matrix.network;
+    warnings.extend(matrix.warnings);
     suspicion::look_over(&network, described, warnings);
     if described.weights == WeightKind::Correlations {
         symmetrise(&mut network);
@@ -201,7 +210,8 @@ fn read_species(described: &SpeciesFile, warnings: &mut Vec<Warning>) -> Result<
         order
     };
     Ok(Raw {
-        file: source.file,
+        file: matrix.file,
+        labels: matrix.labels,
         network: network.select(&order, &order),
         parcels,
     })
