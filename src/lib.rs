@@ -25,6 +25,7 @@ pub mod error;
 pub mod evidence;
 pub mod holdout;
 pub mod input;
+pub mod inspect;
 pub mod linalg;
 pub mod locate;
 pub mod pipeline;

@@ -13,7 +13,12 @@ use crate::species::Species;
 use crate::transform;
 use crate::warning::Warning;
 
+mod parts;
+mod raw_facts;
 mod suspicion;
+
+pub use parts::Parts;
+pub use raw_facts::{Filled, RawFacts, SumsToOne};
 
 /// Fewest parcels that make an embedding.
 const FEWEST_PARCELS: usize = 4;
@@ -55,6 +60,8 @@ pub struct Study {
     pub axes: Vec<usize>,
     /// What was done to the matrices.
     pub treatment: Pair<Treatment>,
+    /// What the matrices held before.
+    pub raw: Pair<RawFacts>,
     /// What was read.
     pub inputs: Inputs,
     /// Every choice.
@@ -70,6 +77,7 @@ struct Raw {
     file: InputFile,
     network: Connectivity,
     parcels: Parcels,
+    facts: RawFacts,
 }
 
 /// Reads a study and everything it names. `asked` wins over the study file's own settings.
@@ -97,6 +105,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         landmarks: table.file,
         matrix: raw.as_ref().map(|raw| raw.file.clone()),
     };
+    let facts = raw.as_ref().map(|raw| raw.facts.clone());
     let mut raw = raw.map(Some);
     let species = Pair::try_from_fn(|side| {
         let raw = raw[side].take().expect("each side is taken once");
@@ -157,6 +166,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         landmarks,
         axes,
         treatment,
+        raw: facts,
         inputs,
         settings,
         conduct,
@@ -170,6 +180,7 @@ fn read_species(described: &SpeciesFile, warnings: &mut Vec<Warning>) -> Result<
     let (mut network, more) = input::read_matrix(&source, described.weights, &described.name)?;
     warnings.extend(more);
     suspicion::look_over(&network, described, warnings);
+    let filled = raw_facts::filled(&network);
     if described.weights == WeightKind::Correlations {
         symmetrise(&mut network);
     }
@@ -200,9 +211,11 @@ fn read_species(described: &SpeciesFile, warnings: &mut Vec<Warning>) -> Result<
         order.sort_by(|&i, &j| labels[i].as_bytes().cmp(labels[j].as_bytes()));
         order
     };
+    let network = network.select(&order, &order);
     Ok(Raw {
         file: source.file,
-        network: network.select(&order, &order),
+        facts: RawFacts::of(&network, described.weights, filled),
+        network,
         parcels,
     })
 }
