@@ -9,12 +9,13 @@ use std::sync::Arc;
 use std::time::Instant;
 
 use clap::Parser;
+use kinmark::draft::draft;
 use kinmark::error::Error;
 use kinmark::pipeline::{self, Finished};
 use kinmark::prepare::prepare;
 use kinmark::report::{self, CAUTION};
 
-use args::{Cli, Command, Inspect, Locate};
+use args::{Cli, Command, Inspect, Locate, New};
 use progress::Progress;
 
 /// Exit code after Ctrl-C: 128 and the number of the signal.
@@ -23,6 +24,7 @@ const INTERRUPTED: i32 = 130;
 /// Parses the command line and does what it says.
 pub fn run() -> Result<(), Error> {
     match Cli::parse().command {
+        Command::New(options) => new(&options),
         Command::Inspect(options) => inspect(&options),
         Command::Locate(options) => locate(&options),
     }
@@ -36,6 +38,13 @@ fn locate(options: &Locate) -> Result<(), Error> {
     let progress = Progress::new(quiet, interrupted);
     let finished = pipeline::run(study, &options.out, &progress, started)?;
     show(&finished, quiet);
+    Ok(())
+}
+
+fn new(options: &New) -> Result<(), Error> {
+    let draft = draft(&options.folder)?;
+    let file = draft.write(&options.folder)?;
+    say(draft.account(&file).as_bytes());
     Ok(())
 }
 

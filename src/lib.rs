@@ -20,6 +20,7 @@ pub mod affinity;
 pub mod align;
 pub mod bootstrap;
 pub mod domain;
+pub mod draft;
 pub mod embed;
 pub mod error;
 pub mod evidence;

@@ -27,6 +27,8 @@ pub struct Cli {
 /// The commands.
 #[derive(Debug, Subcommand)]
 pub enum Command {
+    /// Write a first study file for the matrices and the landmark table of a folder
+    New(New),
     /// Show what is understood of a study, before a run: weights, networks, landmarks, suggestions
     Inspect(Inspect),
     /// Place every parcel of either species in the other's space and write the tables
@@ -46,6 +48,14 @@ pub struct Locate {
 
     #[command(flatten)]
     settings: SettingOptions,
+}
+
+/// Options of `new`.
+#[derive(Debug, Args)]
+pub struct New {
+    /// Folder with the matrices and the landmark table; study.toml is written to it, never over
+    /// another
+    pub folder: PathBuf,
 }
 
 /// Options of `inspect`. It takes the settings of `locate`, so that a command line can be tried.

@@ -63,9 +63,7 @@ fn split(
         return None;
     }
     let (_, vectors) = largest_eigenpairs(&excess / bound, 1);
-    let mut side: Array1<f64> = vectors
-        .column(0)
-        .mapv(|x| if x < 0.0 { -1.0 } else { 1.0 });
+    let mut side: Array1<f64> = vectors.column(0).mapv(|x| if x < 0.0 { -1.0 } else { 1.0 });
     settle(&excess, &mut side);
     let gain = side.dot(&excess.dot(&side)) / 2.0;
     let half = |sign: f64| -> Vec<usize> {
@@ -120,13 +118,20 @@ mod tests {
         let found = systems(&groups(&[3, 6, 4], 0.8, 0.1));
         assert_eq!(
             found,
-            [(3..9).collect::<Vec<_>>(), (9..13).collect(), (0..3).collect()]
+            [
+                (3..9).collect::<Vec<_>>(),
+                (9..13).collect(),
+                (0..3).collect()
+            ]
         );
     }
 
     #[test]
     fn what_has_no_groups_stays_together() {
-        assert_eq!(systems(&groups(&[7], 0.5, 0.0)), [(0..7).collect::<Vec<_>>()]);
+        assert_eq!(
+            systems(&groups(&[7], 0.5, 0.0)),
+            [(0..7).collect::<Vec<_>>()]
+        );
         assert_eq!(systems(&Array2::eye(3)), [[0, 1, 2]]);
     }
 

@@ -82,9 +82,8 @@ impl RawFacts {
     pub fn of(network: &Connectivity, kind: WeightKind, filled: Filled) -> RawFacts {
         let n = network.row_labels().len();
         let weights = network.weights();
-        let is_link = |i: usize, j: usize| {
-            i != j && (weights[(i, j)] != 0.0 || kind == WeightKind::Log10)
-        };
+        let is_link =
+            |i: usize, j: usize| i != j && (weights[(i, j)] != 0.0 || kind == WeightKind::Log10);
         let size = |w: f64| match kind {
             WeightKind::Log10 => 10.0_f64.powf(w),
             _ => w.abs(),

@@ -60,7 +60,10 @@ pub fn inspection(study: &Study, found: &Inspection) -> String {
 /// Can it be run, and what should be looked at first.
 fn verdict(text: &mut String, study: &Study, found: &Inspection) -> Result {
     writeln!(text, "{}", study.title)?;
-    writeln!(text, "Can be run: every check that locate makes is passed.\n")?;
+    writeln!(
+        text,
+        "Can be run: every check that locate makes is passed.\n"
+    )?;
     list(text, "Worth a thought before the run", &found.suggestions)?;
     list(text, "Warnings", &found.warnings)
 }
@@ -110,13 +113,20 @@ fn matrices(text: &mut String, study: &Study, found: &Inspection) -> Result {
                 n => format!("{}; {n} parcels outside", s.parts),
             }),
         ),
-        ("set aside, no links", of(&|_, s| s.set_aside.len().to_string())),
+        (
+            "set aside, no links",
+            of(&|_, s| s.set_aside.len().to_string()),
+        ),
         ("profiles compared by", of(&|_, s| affinity(s))),
         ("axes above chance", of(&|_, s| axes_worth(s))),
         ("  first five carry", of(&|_, s| first_five(s))),
     ];
     for (name, cells) in rows {
-        writeln!(text, "{}", format!("{name:<22}{:<34}{}", cells.a, cells.b).trim_end())?;
+        writeln!(
+            text,
+            "{}",
+            format!("{name:<22}{:<34}{}", cells.a, cells.b).trim_end()
+        )?;
     }
     for species in both(found) {
         let name = short(&species.name);
@@ -143,7 +153,11 @@ fn matrices(text: &mut String, study: &Study, found: &Inspection) -> Result {
         }
         if species.affinity_parts > 1 {
             let parts = species.affinity_parts;
-            wrapped(text, "", &format!("{name}: profiles fall into {parts} parts that share no partner"))?;
+            wrapped(
+                text,
+                "",
+                &format!("{name}: profiles fall into {parts} parts that share no partner"),
+            )?;
         }
     }
     writeln!(text)
@@ -151,10 +165,16 @@ fn matrices(text: &mut String, study: &Study, found: &Inspection) -> Result {
 
 fn landmarks(text: &mut String, found: &Inspection) -> Result {
     let facts = &found.landmarks;
-    let mut said = vec![format!("Landmarks: {} in {} blocks", facts.count, facts.blocks)];
+    let mut said = vec![format!(
+        "Landmarks: {} in {} blocks",
+        facts.count, facts.blocks
+    )];
     said.push(match facts.groups.len() {
         0 => "each a single parcel on either side".to_owned(),
-        n => format!("{n} with several parcels on a side ({})", names(&facts.groups)),
+        n => format!(
+            "{n} with several parcels on a side ({})",
+            names(&facts.groups)
+        ),
     });
     if !facts.weighted.is_empty() {
         let light: Vec<String> = facts
@@ -180,7 +200,11 @@ fn landmarks(text: &mut String, found: &Inspection) -> Result {
             said => format!("{} {}", short(said), basis.landmarks),
         })
         .collect();
-    let bases = if bases.is_empty() { "not stated".to_owned() } else { names(&bases) };
+    let bases = if bases.is_empty() {
+        "not stated".to_owned()
+    } else {
+        names(&bases)
+    };
     wrapped(text, "  ", &format!("they rest on: {bases}"))?;
     let axes = &found.axes;
     let tried = if axes.fewest == axes.most {
@@ -202,7 +226,10 @@ fn coverage(text: &mut String, found: &Inspection) -> Result {
             0 => "each of more than one parcel has a landmark".to_owned(),
             n => format!("{n} WITHOUT a landmark"),
         };
-        writeln!(text, "  {name}: {systems} systems of parcels that connect alike; {without}")?;
+        writeln!(
+            text,
+            "  {name}: {systems} systems of parcels that connect alike; {without}"
+        )?;
         for system in coverage.systems.iter().take(SYSTEMS) {
             let marks = match system.landmarks.len() {
                 0 => "no landmark".to_owned(),
@@ -226,7 +253,10 @@ fn coverage(text: &mut String, found: &Inspection) -> Result {
                 .iter()
                 .map(|far| format!("{} {:.2}", short(&far.parcel), far.affinity))
                 .collect();
-            let line = format!("least like any landmark (median {median:.2}): {}", far.join(", "));
+            let line = format!(
+                "least like any landmark (median {median:.2}): {}",
+                far.join(", ")
+            );
             wrapped(text, "    ", &line)?;
         }
         let beyond: Vec<String> = coverage
@@ -252,9 +282,15 @@ fn both(found: &Inspection) -> [&SpeciesFacts; 2] {
 }
 
 fn range(species: &SpeciesFacts) -> String {
-    let ends = format!("{} to {}", number(species.smallest), number(species.largest));
+    let ends = format!(
+        "{} to {}",
+        number(species.smallest),
+        number(species.largest)
+    );
     match species.least_positive {
-        Some(least) if species.smallest == 0.0 => format!("{ends}, least above 0: {}", number(least)),
+        Some(least) if species.smallest == 0.0 => {
+            format!("{ends}, least above 0: {}", number(least))
+        }
         _ => ends,
     }
 }
