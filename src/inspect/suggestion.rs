@@ -265,10 +265,13 @@ impl fmt::Display for Suggestion {
                 parcels.len(),
                 few(parcels)
             ),
-            Suggestion::BlockSides { pairs } => write!(
-                f,
-                "landmarks: {pairs} pairs look like left and right copies of one area; give each pair a word of its own in the column block (see the warnings)"
-            ),
+            Suggestion::BlockSides { pairs } => {
+                let look = if *pairs == 1 { "1 pair looks" } else { &format!("{pairs} pairs look") };
+                write!(
+                    f,
+                    "landmarks: {look} like left and right copies of one area; give the two a word of their own in the column block (see the warnings)"
+                )
+            }
             Suggestion::FewBlocks { blocks } => write!(
                 f,
                 "landmarks: {blocks} blocks are few, {USUAL_BLOCKS} to 30 are usual; with more, more axes can be tried and the left-out figures say more"
