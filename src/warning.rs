@@ -135,7 +135,8 @@ impl fmt::Display for Warning {
             ),
             Warning::DiagonalNotEmpty { species, entries } => write!(
                 f,
-                "{species}: {entries} entries on the diagonal are not zero; a parcel's link with itself is not used"
+                "{species}: on the diagonal {} not zero; a parcel's link with itself is not used",
+                counted(*entries, "entry", "entries")
             ),
             Warning::AsymmetricCorrelations { species, largest } => write!(
                 f,
@@ -147,18 +148,21 @@ impl fmt::Display for Warning {
                 example,
             } => write!(
                 f,
-                "{species}: {entries} correlations off the diagonal are 1 or beyond, such as {} with {}; Fisher's z takes them for {}",
+                "{species}: off the diagonal {} 1 or beyond, such as {} with {}; Fisher's z cuts at {}",
+                counted(*entries, "correlation", "correlations"),
                 example.0,
                 example.1,
                 crate::transform::LARGEST_CORRELATION
             ),
             Warning::FractionsAboveOne { species, entries } => write!(
                 f,
-                "{species}: {entries} fractions are above 1; are these counts?"
+                "{species}: {} above 1; are these counts?",
+                counted(*entries, "fraction", "fractions")
             ),
             Warning::ZeroLogarithms { species, entries } => write!(
                 f,
-                "{species}: {entries} logarithms are exactly 0 (a weight of 1) while all others are negative; if 0 stands for no connection, give the weights themselves"
+                "{species}: {} exactly 0 (a weight of 1) while all others are negative; if 0 stands for no connection, give the weights themselves",
+                counted(*entries, "logarithm", "logarithms")
             ),
             Warning::Components {
                 species,
@@ -197,7 +201,7 @@ impl fmt::Display for Warning {
             ),
             Warning::LeftOutUnderdetermined { axes, blocks } => write!(
                 f,
-                "with one of {blocks} landmark blocks left out the rest do not fix {axes} axes; left-out figures are poorer than they need be"
+                "with one of {blocks} landmark blocks left out the rest do not fix {axes} axes; left-out figures are poorer than they need be, so add landmarks or ask for fewer axes"
             ),
             Warning::LandmarksDoNotSpan {
                 alignment,
@@ -209,11 +213,12 @@ impl fmt::Display for Warning {
             ),
             Warning::DegenerateReplicates { replicates, of } => write!(
                 f,
-                "{replicates} of {of} replicates drew fewer distinct landmark blocks than axes + 1; use resampling bayesian"
+                "{replicates} of {of} replicates drew fewer distinct landmark blocks than axes + 1; use --resampling bayesian"
             ),
             Warning::FewAxes { species, axes } => write!(
                 f,
-                "{species}: the embedding yields only {axes} axes"
+                "{species}: the embedding yields only {axes} {}, fewer than the landmarks could fix",
+                if *axes == 1 { "axis" } else { "axes" }
             ),
         }
     }
@@ -222,6 +227,14 @@ impl fmt::Display for Warning {
 impl Serialize for Warning {
     fn serialize<S: Serializer>(&self, to: S) -> Result<S::Ok, S::Error> {
         to.collect_str(self)
+    }
+}
+
+/// A number of things, and the verb that goes with it.
+fn counted(n: usize, one: &str, several: &str) -> String {
+    match n {
+        1 => format!("1 {one} is"),
+        _ => format!("{n} {several} are"),
     }
 }
 

@@ -108,14 +108,14 @@ pub enum Problem {
     #[error("cannot be read: {0}")]
     Unreadable(String),
     /// Nothing in it.
-    #[error("the file is empty; expected a header line and data")]
+    #[error("the file is empty; check that it was saved, and that it is the one you mean")]
     EmptyFile,
     /// UTF-16 text.
     #[error("expected UTF-8 text, found UTF-16; save the file again as UTF-8 (in a spreadsheet: CSV UTF-8)")]
     Utf16,
     /// Bytes that are no text.
-    #[error("expected UTF-8 text, found bytes that are none; save the file as CSV in UTF-8")]
-    NotText,
+    #[error("expected UTF-8 text, found the byte {0:#04x}, which is none; save the file again as UTF-8 (in a spreadsheet: CSV UTF-8)")]
+    NotText(u8),
     /// A study file that is no TOML.
     #[error("not valid TOML: {0}")]
     Toml(String),
@@ -151,6 +151,9 @@ pub enum Problem {
         /// A line that would do.
         example: String,
     },
+    /// A species nothing is said about.
+    #[error("there is no table {0}; add it, with the species' name, matrix and weights")]
+    MissingTable(String),
     /// A value of the wrong type or out of range.
     #[error("{key} must be {expected}, found {found}")]
     BadValue {
@@ -217,8 +220,13 @@ pub enum Problem {
     #[error("expected a number with a decimal point, found {0:?}; write decimal points instead of commas")]
     DecimalComma(String),
     /// An infinite number.
-    #[error("expected a finite number, found {0:?}; where this is the logarithm of an absent connection, give the weights themselves and say weights = \"fractions\" or \"counts\"")]
-    Infinite(String),
+    #[error("expected a finite number, found {found:?}; {}", if *.logarithm { "where this is the logarithm of an absent connection, give the weights themselves and say weights = \"fractions\" or \"counts\"" } else { "correct the entry" })]
+    Infinite {
+        /// What came.
+        found: String,
+        /// Whether it should have been a logarithm.
+        logarithm: bool,
+    },
     /// NaN, NA or an empty cell.
     #[error("expected a number, found {0}; missing entries are not read yet: fill in the value, or remove the parcel's row and column")]
     Missing(String),
@@ -231,12 +239,16 @@ pub enum Problem {
         found: f64,
     },
     /// Rows and columns differ in number.
-    #[error("expected a square matrix, found {rows} rows and {columns} columns of data; every parcel needs a row and a column")]
+    #[error("expected a square matrix, found {rows} rows and {columns} columns of data; every parcel needs a row and a column, but {label:?} has no {lacks}")]
     NotSquare {
         /// Rows of data.
         rows: usize,
         /// Columns of data.
         columns: usize,
+        /// The first parcel without a partner.
+        label: String,
+        /// `row` or `column`, whichever it lacks.
+        lacks: &'static str,
     },
     /// An empty label.
     #[error("expected a parcel label, found an empty cell; every row and column needs a label")]
@@ -265,10 +277,10 @@ pub enum Problem {
         near: Vec<String>,
     },
     /// No connection at all.
-    #[error("every weight off the diagonal is zero; expected at least some connections")]
+    #[error("every weight off the diagonal is zero; expected at least some connections, so check what was exported")]
     AllZero,
     /// Too few parcels to embed.
-    #[error("{found} parcels with connections, at least {needed} are needed")]
+    #[error("found {found} parcels with connections, at least {needed} are needed; give a matrix of more parcels")]
     TooFewParcels {
         /// Parcels with a connection.
         found: usize,
@@ -283,6 +295,9 @@ pub enum Problem {
         /// Columns found.
         found: String,
     },
+    /// A column that came before.
+    #[error("the column {0:?} came before in this line; keep one of them")]
+    ColumnTwice(String),
     /// A column that looks like a slip for a known one.
     #[error("unknown column {found:?}; did you mean {nearest:?}? Rename or remove it")]
     UnknownColumn {

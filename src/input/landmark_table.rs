@@ -133,10 +133,7 @@ impl Columns {
                 if found.insert(column, at).is_some() {
                     return Err(InputError::new(
                         place.column(at + 1),
-                        Problem::DuplicateLabel {
-                            label: column.to_owned(),
-                            first: "the same line".to_owned(),
-                        },
+                        Problem::ColumnTwice(column.to_owned()),
                     ));
                 }
             } else if column.chars().count() > 2 && !nearest_few(column, COLUMNS).is_empty() {

@@ -1,6 +1,6 @@
 //! A labelled square matrix of connection weights.
 
-use std::collections::HashMap;
+use std::collections::{HashMap, HashSet};
 
 use ndarray::Array2;
 
@@ -43,7 +43,7 @@ pub fn read(
     if rows != columns {
         return Err(InputError::new(
             Place::file(path),
-            Problem::NotSquare { rows, columns },
+            not_square(&row_labels, &column_labels),
         ));
     }
     let order = column_order(&row_labels, &column_labels, source, &table.rows)?;
@@ -104,6 +104,26 @@ fn labels<'t>(cells: impl Iterator<Item = (&'t str, Place)>) -> Result<Vec<Strin
         labels.push(label.to_owned());
     }
     Ok(labels)
+}
+
+/// The fault of a matrix with more labels on one axis than on the other, by the first that is alone.
+fn not_square(rows: &[String], columns: &[String]) -> Problem {
+    let (more, fewer, lacks) = if rows.len() > columns.len() {
+        (rows, columns, "column")
+    } else {
+        (columns, rows, "row")
+    };
+    let known: HashSet<&String> = fewer.iter().collect();
+    Problem::NotSquare {
+        rows: rows.len(),
+        columns: columns.len(),
+        label: more
+            .iter()
+            .find(|label| !known.contains(label))
+            .cloned()
+            .unwrap_or_default(),
+        lacks,
+    }
 }
 
 /// For each row label, the column that carries it.
@@ -168,7 +188,10 @@ fn number(cell: &str, weights: WeightKind, separator: Separator) -> Result<f64, 
         return Err(Problem::Missing(cell.to_owned()));
     }
     if value.is_infinite() {
-        return Err(Problem::Infinite(cell.to_owned()));
+        return Err(Problem::Infinite {
+            found: cell.to_owned(),
+            logarithm: weights == WeightKind::Log10,
+        });
     }
     if value < 0.0 && weights.is_non_negative() {
         return Err(Problem::Negative {

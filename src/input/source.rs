@@ -56,7 +56,7 @@ impl Source {
         if let Some(at) = body.iter().position(|b| *b == 0) {
             return Err(InputError::new(
                 Place::line(path, line_of(at)),
-                Problem::NotText,
+                Problem::NotText(0),
             ));
         }
         match std::str::from_utf8(body) {
@@ -72,10 +72,13 @@ impl Source {
                     text.to_owned()
                 },
             }),
-            Err(e) => Err(InputError::new(
-                Place::line(path, line_of(e.valid_up_to())),
-                Problem::NotText,
-            )),
+            Err(e) => {
+                let at = e.valid_up_to();
+                Err(InputError::new(
+                    Place::line(path, line_of(at)),
+                    Problem::NotText(body[at]),
+                ))
+            }
         }
     }
 

@@ -74,7 +74,7 @@ pub fn read(path: &Path) -> Result<StudyFile, InputError> {
         reader: &reader,
         name: "the study file".to_owned(),
         table: document.as_table(),
-        start: 0,
+        start: None,
     };
     top.only(TOP_KEYS)?;
     let folder = path.parent().unwrap_or(Path::new(""));
@@ -140,7 +140,7 @@ fn species_file(table: &Table<'_>, folder: &Path) -> Result<SpeciesFile, InputEr
     };
     let name = table.text("name", "name = \"My species\"")?;
     if name.trim().is_empty() {
-        return Err(table.bad_value("name", "a name"));
+        return Err(table.bad_value("name", "more than blanks"));
     }
     Ok(SpeciesFile {
         name,
@@ -218,7 +218,8 @@ struct Table<'s> {
     reader: &'s Reader<'s>,
     name: String,
     table: &'s dyn TableLike,
-    start: usize,
+    /// Where its header stands; nowhere for the study file itself and for a table only its parts name.
+    start: Option<usize>,
 }
 
 impl<'s> Table<'s> {
@@ -230,18 +231,26 @@ impl<'s> Table<'s> {
         source_place(self.reader.path, self.reader.text, at)
     }
 
+    /// Where the table begins: its line, as far as there is one.
+    fn place_of_start(&self) -> Place {
+        Place {
+            column: None,
+            ..self
+                .start
+                .map_or_else(|| Place::file(self.reader.path), |at| self.place(at))
+        }
+    }
+
     fn place_of(&self, key: &str) -> Place {
-        let at = self
-            .table
+        self.table
             .get_key_value(key)
             .and_then(|(key, item)| key.span().or_else(|| item.span()))
-            .map_or(self.start, |span| span.start);
-        self.place(at)
+            .map_or_else(|| self.place_of_start(), |span| self.place(span.start))
     }
 
     fn missing(&self, key: &'static str, example: &str) -> InputError {
         InputError::new(
-            self.place(self.start),
+            self.place_of_start(),
             Problem::MissingKey {
                 key,
                 table: self.name.clone(),
@@ -281,10 +290,12 @@ impl<'s> Table<'s> {
     }
 
     fn table(&self, key: &'static str, example: &str) -> Result<Table<'s>, InputError> {
-        let item = self
-            .table
-            .get(key)
-            .ok_or_else(|| self.missing(key, example))?;
+        let item = self.table.get(key).ok_or_else(|| {
+            InputError::new(
+                Place::file(self.reader.path),
+                Problem::MissingTable(example.to_owned()),
+            )
+        })?;
         let table = item
             .as_table_like()
             .ok_or_else(|| self.bad_value(key, &format!("a table such as {example}")))?;
@@ -295,7 +306,7 @@ impl<'s> Table<'s> {
                 _ => format!("[{key}]"),
             },
             table,
-            start: item.span().map_or(self.start, |span| span.start),
+            start: item.span().map(|span| span.start),
         })
     }
 
@@ -337,10 +348,11 @@ impl<'s> Table<'s> {
 
     fn bad_value(&self, key: &str, expected: &str) -> InputError {
         let found = self.table.get(key).map_or_else(String::new, |item| {
-            scalar(item).map_or_else(
-                || format!("a value of type {}", item.type_name()),
-                |text| format!("{text:?}"),
-            )
+            match (scalar(item), item.as_str()) {
+                (None, _) => format!("a value of type {}", item.type_name()),
+                (Some(_), Some(text)) => format!("{text:?}"),
+                (Some(number), None) => number,
+            }
         });
         InputError::new(
             self.place_of(key),

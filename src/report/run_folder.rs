@@ -43,7 +43,7 @@ pub enum FolderError {
         found: String,
     },
     /// A file where the folder should be.
-    #[error("{} is a file; name a folder", .0.display())]
+    #[error("{} is not a folder; name a folder, or a place where there is nothing yet", .0.display())]
     NotAFolder(PathBuf),
     /// A path without a name, such as `..`.
     #[error("{} does not name a folder of its own; name a new one", .0.display())]
@@ -122,48 +122,57 @@ impl Survey {
     /// # Errors
     /// [`FolderError`] where that fails, or another run owns the folder.
     pub fn open(self, identity: &[u8]) -> Result<RunFolder, FolderError> {
-        let target = self.target;
+        let Survey {
+            target,
+            state,
+            replace,
+        } = self;
         let marker = target.join(UNFINISHED);
-        let mut created = false;
-        match self.state {
-            State::Finished => {}
-            State::Unfinished => {
-                let known = fs::read(&marker).map_err(on("read", &marker))?;
-                // A kill while it was written leaves a marker that says nothing and guards nothing.
-                let says_something = serde_json::from_slice::<serde_json::Value>(&known).is_ok();
-                if says_something && known != identity && !self.replace {
-                    return Err(FolderError::OtherUnfinished(target));
-                }
-            }
-            State::Absent | State::Empty => {
-                created = self.state == State::Absent;
-                fs::create_dir_all(&target).map_err(on("create the folder", &target))?;
-            }
-        }
-        let held = match self.state {
+        let fresh = matches!(state, State::Absent | State::Empty);
+        let made = if fresh {
+            Made::folder(&target)?
+        } else {
+            Made::default()
+        };
+        let held = match state {
             State::Finished => target.join(RECORD),
             _ => marker.clone(),
         };
-        let lock = File::options()
+        let opened = File::options()
             .read(true)
             .append(true)
-            .create(true)
-            .open(&held)
-            .map_err(on("write", &held))?;
+            .create(fresh)
+            .open(&held);
+        let lock = match opened {
+            // Another run has come to its end since the survey.
+            Err(e) if !fresh && e.kind() == io::ErrorKind::NotFound => {
+                return Survey::of(&target, replace)?.open(identity);
+            }
+            opened => opened.map_err(on("write", &held))?,
+        };
         match lock.try_lock() {
             Ok(()) => {}
             Err(fs::TryLockError::WouldBlock) => return Err(FolderError::InUse(target)),
             Err(fs::TryLockError::Error(source)) => return Err(on("lock", &held)(source)),
         }
+        if state == State::Unfinished && !replace {
+            let known = fs::read(&marker).map_err(on("read", &marker))?;
+            // A kill while it was written leaves a marker that says nothing and guards nothing.
+            let says_something = serde_json::from_slice::<serde_json::Value>(&known).is_ok();
+            if says_something && known != identity {
+                return Err(FolderError::OtherUnfinished(target));
+            }
+        }
         let folder = RunFolder {
             target,
-            created,
+            made,
             _lock: lock,
             done: false,
         };
-        if self.state != State::Finished {
+        if state != State::Finished {
             write(&marker, identity)?;
         }
+        try_beside(&folder.target)?;
         Ok(folder)
     }
 }
@@ -172,7 +181,7 @@ impl Survey {
 #[derive(Debug)]
 pub struct RunFolder {
     target: PathBuf,
-    created: bool,
+    made: Made,
     /// Held open: dropping it releases the folder.
     _lock: File,
     done: bool,
@@ -203,6 +212,7 @@ impl RunFolder {
             return Err(error);
         }
         self.done = true;
+        self.made.keep();
         Ok(self.target.clone())
     }
 }
@@ -216,9 +226,35 @@ impl Drop for RunFolder {
         let marker = self.target.join(UNFINISHED);
         if marker.exists() {
             let _ = fs::remove_file(&marker);
-            if self.created {
-                let _ = fs::remove_dir(&self.target);
-            }
+        }
+    }
+}
+
+/// Folders that were made for a run, innermost first. Unless they are kept they go again, as far as
+/// they are empty.
+#[derive(Debug, Default)]
+struct Made(Vec<PathBuf>);
+
+impl Made {
+    /// Makes a folder and those above it that are missing.
+    fn folder(folder: &Path) -> Result<Made, FolderError> {
+        let missing = folder
+            .ancestors()
+            .take_while(|above| !above.as_os_str().is_empty() && !above.exists());
+        let made = Made(missing.map(Path::to_owned).collect());
+        fs::create_dir_all(folder).map_err(on("create the folder", folder))?;
+        Ok(made)
+    }
+
+    fn keep(&mut self) {
+        self.0.clear();
+    }
+}
+
+impl Drop for Made {
+    fn drop(&mut self) {
+        for folder in &self.0 {
+            let _ = fs::remove_dir(folder);
         }
     }
 }
@@ -227,6 +263,10 @@ impl Drop for RunFolder {
 fn state(target: &Path) -> Result<State, FolderError> {
     match fs::symlink_metadata(target) {
         Err(e) if e.kind() == io::ErrorKind::NotFound => return Ok(State::Absent),
+        Err(e) if e.kind() == io::ErrorKind::NotADirectory => {
+            let file = target.ancestors().find(|above| above.is_file());
+            return Err(FolderError::NotAFolder(file.unwrap_or(target).to_owned()));
+        }
         Err(e) => return Err(on("look at", target)(e)),
         Ok(meta) if !meta.is_dir() => return Err(FolderError::NotAFolder(target.to_owned())),
         Ok(_) => {}
@@ -276,6 +316,14 @@ fn is_record(path: &Path) -> bool {
 fn beside(target: &Path, what: &str) -> PathBuf {
     let name = target.file_name().unwrap_or_default().to_string_lossy();
     target.with_file_name(format!(".{name}.kinmark-{what}"))
+}
+
+/// Tries now what is needed at the end, so that no long run is lost for want of permission.
+fn try_beside(target: &Path) -> Result<(), FolderError> {
+    let fresh = beside(target, "new");
+    remove_ours(&fresh)?;
+    fs::create_dir(&fresh).map_err(on("create the folder", &fresh))?;
+    remove_ours(&fresh)
 }
 
 fn build(

@@ -80,6 +80,16 @@ impl Study {
         study
     }
 
+    /// A copy of the demo study, which is larger: 90 and 118 parcels.
+    pub fn demo() -> Study {
+        let demo = Path::new(env!("CARGO_MANIFEST_DIR")).join("species-demo");
+        let study = Study::new();
+        for name in ["study.toml", "a.csv", "b.csv", "landmarks.csv"] {
+            study.write(name, read(&demo.join(name)));
+        }
+        study
+    }
+
     /// The same study with one thing changed.
     pub fn with(change: impl FnOnce(&Study)) -> Study {
         let study = Study::new();
@@ -139,6 +149,17 @@ impl Study {
             .collect();
         change(&mut rows);
         self.write(name, csv(&rows));
+    }
+
+    /// Recomputes every weight of a matrix from its row, its column and what it was.
+    pub fn reweigh(&self, name: &str, weight: impl Fn(usize, usize, &str) -> String) {
+        self.edit_table(name, |rows| {
+            for (i, row) in rows[1..].iter_mut().enumerate() {
+                for (j, cell) in row[1..].iter_mut().enumerate() {
+                    *cell = weight(i, j, cell);
+                }
+            }
+        });
     }
 
     /// Adds a line under `[settings]`.
