@@ -35,7 +35,7 @@ pub fn guess(matrix: &MatrixLooks) -> Guess {
             WeightKind::Log10,
             "no entry is above 0 and not all are whole numbers",
         )
-    } else if low < 0.0 && low >= -1.0 && high <= 1.0 {
+    } else if (-1.0..0.0).contains(&low) && high <= 1.0 {
         (
             WeightKind::Correlations,
             "entries lie between -1 and 1 on both sides of 0",
