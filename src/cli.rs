@@ -9,12 +9,13 @@ use std::sync::Arc;
 use std::time::Instant;
 
 use clap::Parser;
+use kinmark::draft::draft;
 use kinmark::error::Error;
 use kinmark::pipeline::{self, Finished};
 use kinmark::prepare::prepare;
-use kinmark::report::CAUTION;
+use kinmark::report::{self, CAUTION};
 
-use args::{Cli, Command, Locate};
+use args::{Cli, Command, Inspect, Locate, New};
 use progress::Progress;
 
 /// Exit code after Ctrl-C: 128 and the number of the signal.
@@ -23,6 +24,8 @@ const INTERRUPTED: i32 = 130;
 /// Parses the command line and does what it says.
 pub fn run() -> Result<(), Error> {
     match Cli::parse().command {
+        Command::New(options) => new(&options),
+        Command::Inspect(options) => inspect(&options),
         Command::Locate(options) => locate(&options),
     }
 }
@@ -36,6 +39,33 @@ fn locate(options: &Locate) -> Result<(), Error> {
     let finished = pipeline::run(study, &options.out, &progress, started)?;
     show(&finished, quiet);
     Ok(())
+}
+
+fn new(options: &New) -> Result<(), Error> {
+    let draft = draft(&options.folder)?;
+    let file = draft.write(&options.folder)?;
+    say(draft.account(&file).as_bytes());
+    Ok(())
+}
+
+fn inspect(options: &Inspect) -> Result<(), Error> {
+    let study = prepare(&options.study, options.request())?;
+    let found = kinmark::inspect::inspect(&study);
+    if options.json {
+        say(&report::inspection_json(&study, &found));
+    } else {
+        say(report::inspection(&study, &found).as_bytes());
+        say(format!("\n{CAUTION}\n").as_bytes());
+    }
+    Ok(())
+}
+
+/// Writes to standard output.
+fn say(bytes: &[u8]) {
+    let mut out = std::io::stdout();
+    // A reader that has closed the pipe has seen enough: no error.
+    let _ = out.write_all(bytes);
+    let _ = out.flush();
 }
 
 /// Answers and the caution to standard output, the rest to standard error.

@@ -2,6 +2,7 @@
 
 use thiserror::Error;
 
+use crate::draft::DraftError;
 use crate::input::InputError;
 use crate::report::FolderError;
 use crate::watch::Interrupted;
@@ -15,6 +16,9 @@ pub enum Error {
     /// A folder that cannot take the run.
     #[error(transparent)]
     Folder(#[from] FolderError),
+    /// A folder for which no study file can be drafted.
+    #[error(transparent)]
+    Draft(#[from] DraftError),
     /// Told to stop.
     #[error("interrupted; nothing was written")]
     Interrupted(#[from] Interrupted),
@@ -34,7 +38,7 @@ impl Error {
     #[must_use]
     pub fn exit_code(&self) -> u8 {
         match self {
-            Error::Input(_) | Error::Folder(_) | Error::Threads { .. } => 2,
+            Error::Input(_) | Error::Folder(_) | Error::Draft(_) | Error::Threads { .. } => 2,
             Error::Interrupted(_) => 130,
         }
     }

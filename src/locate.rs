@@ -8,6 +8,7 @@ mod span;
 pub use axes::{AxisEnds, Space};
 pub use left_out::LeftOut;
 pub use replicates::Tally;
+pub use span::beyond_landmarks;
 
 use ndarray::{Array2, ArrayView1};
 
@@ -148,7 +149,7 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             .into_iter()
             .map(|alignment| Curve::of(alignment, &ways, &trials))
             .collect(),
-        beyond: span::beyond_landmarks(&material, settled[choice.evidence].axes),
+        beyond: beyond_landmarks(&material, settled[choice.evidence].axes),
         choice,
         spaces,
         left_out,

@@ -13,7 +13,12 @@ use crate::species::Species;
 use crate::transform;
 use crate::warning::Warning;
 
+mod parts;
+mod raw_facts;
 mod suspicion;
+
+pub use parts::Parts;
+pub use raw_facts::{Filled, RawFacts, SumsToOne};
 
 /// Fewest parcels that make an embedding.
 const FEWEST_PARCELS: usize = 4;
@@ -62,6 +67,8 @@ pub struct Study {
     pub axes: Vec<usize>,
     /// What was done to the matrices.
     pub treatment: Pair<Treatment>,
+    /// What the matrices held before.
+    pub raw: Pair<RawFacts>,
     /// What was read.
     pub inputs: Inputs,
     /// Every choice.
@@ -78,6 +85,7 @@ struct Raw {
     labels: Option<InputFile>,
     network: Connectivity,
     parcels: Parcels,
+    facts: RawFacts,
 }
 
 /// Reads a study and everything it names. `asked` wins over the study file's own settings.
@@ -106,6 +114,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         matrix: raw.as_ref().map(|raw| raw.file.clone()),
         labels: raw.as_ref().map(|raw| raw.labels.clone()),
     };
+    let facts = raw.as_ref().map(|raw| raw.facts.clone());
     let mut raw = raw.map(Some);
     let species = Pair::try_from_fn(|side| {
         let raw = raw[side].take().expect("each side is taken once");
@@ -166,6 +175,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         landmarks,
         axes,
         treatment,
+        raw: facts,
         inputs,
         settings,
         conduct,
@@ -179,6 +189,7 @@ fn read_species(described: &SpeciesFile, warnings: &mut Vec<Warning>) -> Result<
     let mut network = matrix.network;
     warnings.extend(matrix.warnings);
     suspicion::look_over(&network, described, warnings);
+    let filled = raw_facts::filled(&network);
     if described.weights == WeightKind::Correlations {
         symmetrise(&mut network);
     }
@@ -209,10 +220,12 @@ fn read_species(described: &SpeciesFile, warnings: &mut Vec<Warning>) -> Result<
         order.sort_by(|&i, &j| labels[i].as_bytes().cmp(labels[j].as_bytes()));
         order
     };
+    let network = network.select(&order, &order);
     Ok(Raw {
         file: matrix.file,
         labels: matrix.labels,
-        network: network.select(&order, &order),
+        facts: RawFacts::of(&network, described.weights, filled),
+        network,
         parcels,
     })
 }

@@ -1,11 +1,13 @@
 //! Results to bytes: tables, the run record, the summary, and the folder they go into. Computes
 //! nothing that a table does not show.
 
+mod inspection;
 mod record;
 mod run_folder;
 mod summary;
 mod tables;
 
+pub use inspection::{inspection, inspection_json};
 pub use record::{Identity, Record, Wall};
 pub use run_folder::{FolderError, RunFolder, Survey, RECORD, TABLES, UNFINISHED};
 pub use summary::{summary, CAUTION};

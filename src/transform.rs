@@ -7,7 +7,7 @@ pub const LARGEST_CORRELATION: f64 = 0.999;
 
 /// Orders of magnitude between the smallest and the largest positive weight from which
 /// `log-floor` is the default: below the median `log1p` is linear, so that weak links vanish.
-const WIDE_SPAN: f64 = 3.0;
+pub const WIDE_SPAN: f64 = 3.0;
 
 /// The transform for these weights where none was asked for.
 #[must_use]

@@ -27,6 +27,10 @@ pub struct Cli {
 /// The commands.
 #[derive(Debug, Subcommand)]
 pub enum Command {
+    /// Write a first study file for the matrices and the landmark table of a folder
+    New(New),
+    /// Show what is understood of a study, before a run: weights, networks, landmarks, suggestions
+    Inspect(Inspect),
     /// Place every parcel of either species in the other's space and write the tables
     Locate(Locate),
 }
@@ -41,6 +45,29 @@ pub struct Locate {
     /// Folder for the tables; must be absent, empty, or an unfinished run of the same study
     #[arg(long, value_name = "DIR")]
     pub out: PathBuf,
+
+    #[command(flatten)]
+    settings: SettingOptions,
+}
+
+/// Options of `new`.
+#[derive(Debug, Args)]
+pub struct New {
+    /// Folder with the matrices and the landmark table; study.toml is written to it, never over
+    /// another
+    pub folder: PathBuf,
+}
+
+/// Options of `inspect`. It takes the settings of `locate`, so that a command line can be tried.
+#[derive(Debug, Args)]
+#[command(after_help = kinmark::report::CAUTION)]
+pub struct Inspect {
+    /// Study file (TOML): both species, their matrices, the landmark table
+    pub study: PathBuf,
+
+    /// Write everything as JSON, for other programs
+    #[arg(long)]
+    pub json: bool,
 
     #[command(flatten)]
     settings: SettingOptions,
@@ -119,7 +146,20 @@ struct SettingOptions {
 impl Locate {
     /// The settings asked for.
     pub fn request(&self) -> Request {
-        let given = &self.settings;
+        self.settings.request()
+    }
+}
+
+impl Inspect {
+    /// The settings asked for.
+    pub fn request(&self) -> Request {
+        self.settings.request()
+    }
+}
+
+impl SettingOptions {
+    fn request(&self) -> Request {
+        let given = self;
         let flag = |on: bool| on.then(|| "true".to_owned());
         let (quiet, replace, no_report) = (
             flag(given.quiet),
@@ -177,12 +217,14 @@ mod tests {
     #[test]
     fn every_setting_has_an_option() {
         let command = Cli::command();
-        let locate = command.find_subcommand("locate").unwrap();
-        for key in Request::KEYS {
-            assert!(
-                locate.get_arguments().any(|a| a.get_long() == Some(key)),
-                "--{key}"
-            );
+        for name in ["locate", "inspect"] {
+            let command = command.find_subcommand(name).unwrap();
+            for key in Request::KEYS {
+                assert!(
+                    command.get_arguments().any(|a| a.get_long() == Some(key)),
+                    "{name} --{key}"
+                );
+            }
         }
     }
 }

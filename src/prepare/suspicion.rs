@@ -1,5 +1,6 @@
 //! A look over a matrix for what is legal but odd.
 
+use super::parts::Parts;
 use crate::domain::{Connectivity, WeightKind};
 use crate::input::SpeciesFile;
 use crate::warning::Warning;
@@ -76,40 +77,16 @@ pub fn look_over(network: &Connectivity, described: &SpeciesFile, warnings: &mut
 
 /// Parts between which there is no connection; parcels without any are reported elsewhere.
 fn components(network: &Connectivity, species: &str, warnings: &mut Vec<Warning>) {
-    let n = network.row_labels().len();
+    let labels = network.row_labels();
     let weights = network.weights();
-    let linked = |i: usize, j: usize| i != j && (weights[(i, j)] != 0.0 || weights[(j, i)] != 0.0);
-    let mut part = vec![None; n];
-    let mut sizes = Vec::new();
-    for first in 0..n {
-        if part[first].is_some() {
-            continue;
-        }
-        let mut size = 0;
-        let mut waiting = vec![first];
-        part[first] = Some(sizes.len());
-        while let Some(i) = waiting.pop() {
-            size += 1;
-            for j in 0..n {
-                if part[j].is_none() && linked(i, j) {
-                    part[j] = part[first];
-                    waiting.push(j);
-                }
-            }
-        }
-        sizes.push(size);
-    }
-    let real = sizes.iter().filter(|size| **size > 1).count();
-    if real > 1 {
-        let largest = (0..sizes.len()).max_by_key(|&p| (sizes[p], std::cmp::Reverse(p)));
-        let outside = (0..n)
-            .filter(|&i| part[i] != largest && part[i].is_some_and(|p| sizes[p] > 1))
-            .map(|i| network.row_labels()[i].clone())
-            .collect();
+    let parts = Parts::of(labels.len(), |i, j| {
+        i != j && (weights[(i, j)] != 0.0 || weights[(j, i)] != 0.0)
+    });
+    if parts.real() > 1 {
         warnings.push(Warning::Components {
             species: species.to_owned(),
-            components: real,
-            outside,
+            components: parts.real(),
+            outside: parts.outside().map(|i| labels[i].clone()).collect(),
         });
     }
 }

@@ -126,7 +126,8 @@ impl Identity<'_> {
     }
 }
 
-fn json(value: &impl Serialize) -> Vec<u8> {
+/// Any value as indented JSON.
+pub(super) fn json(value: &impl Serialize) -> Vec<u8> {
     let mut bytes = serde_json::to_vec_pretty(value).expect("maps have text keys");
     bytes.push(b'\n');
     bytes

@@ -209,7 +209,7 @@ fn pair(text: &mut String, study: &Study, placement: &Placement, found: &Counter
 }
 
 /// A label cut to what a terminal line can hold.
-fn short(label: &str) -> String {
+pub(super) fn short(label: &str) -> String {
     if label.chars().count() <= LABEL_WIDTH {
         return label.to_owned();
     }

@@ -49,6 +49,10 @@ macro_rules! request {
             /// Every key, as in `[settings]` of a study file and (behind `--`) on the command line.
             pub const KEYS: &'static [&'static str] = &[$($key),+];
 
+            /// Every key with a sentence on its meaning.
+            pub const MEANINGS: &'static [(&'static str, &'static str)] =
+                &[$(($key, concat!($($doc),+))),+];
+
             /// Sets one key from its text.
             ///
             /// # Errors
@@ -75,41 +79,41 @@ macro_rules! request {
 
 // Upper ends keep a slip of the keyboard from asking for more memory or threads than there are.
 request! {
-    /// Bootstrap replicates.
+    /// Bootstrap replicates: more make support and standard errors smoother.
     replicates: usize = "replicates", |key, text| whole(key, text, 2..=10_000_000, "a whole number from 2 to 10000000");
-    /// Replicates that also rank.
+    /// How many of them also rank, for the rank intervals.
     rank_replicates: usize = "rank-replicates", |key, text| whole(key, text, 1..=100_000, "a whole number from 1 to 100000");
-    /// Seed of every random draw.
+    /// Seed of every random draw; the same seed gives the same tables.
     seed: u64 = "seed", |key, text| text.parse().map_err(|_| bad(key, "a whole number of 0 or more", text));
-    /// Worker threads.
+    /// Worker threads, which change no number; without this line one for each processor.
     threads: usize = "threads", |key, text| whole(key, text, 1..=1024, "a whole number from 1 to 1024");
-    /// Axes of the joint spaces.
+    /// Axes of the joint spaces, or "auto": left-out landmarks choose.
     axes: Axes = "axes", |key, text| match text {
         "auto" => Ok(Axes::Auto),
         _ => whole(key, text, 1..=usize::MAX, "auto or a whole number of 1 or more").map(Axes::Number),
     };
     /// How connectivity becomes coordinates.
     embedding: embed::Method = "embedding", choice;
-    /// Density exponent of the diffusion map.
+    /// Density exponent of the diffusion map, 0 to 1: 1 removes the density of parcels from it.
     density_exponent: f64 = "density-exponent", |key, text| number(key, text, 0.0..=1.0, "a number from 0 to 1");
-    /// Diffusion time.
+    /// Diffusion time in steps: larger keeps coarser structure, 0 weighs all times together.
     diffusion_time: f64 = "diffusion-time", |key, text| number(key, text, 0.0..=1e3, "a number from 0 to 1000");
     /// What ranks the counterparts.
     evidence: EvidenceChoice = "evidence", choice;
-    /// Ridge of the canonical correlation.
+    /// Ridge of the canonical correlation in units of the landmarks' mean variance; 0 is classical.
     ridge: f64 = "ridge", |key, text| number(key, text, 0.0..=1e6, "a number of 0 or more");
     /// How landmark blocks are drawn.
     resampling: Resampling = "resampling", choice;
-    /// Counterparts listed for each parcel.
+    /// Counterparts listed for each parcel, or "all".
     top: Top = "top", |key, text| match text {
         "all" => Ok(Top::All),
         _ => whole(key, text, 1..=usize::MAX, "all or a whole number of 1 or more").map(Top::Number),
     };
-    /// No progress on the terminal.
+    /// No progress and no warnings on the terminal; the warnings are in run.json all the same.
     quiet: bool = "quiet", flag;
-    /// Replace a finished run.
+    /// Replace a finished run in the output folder, once the new one is complete.
     replace: bool = "replace", flag;
-    /// No report page.
+    /// Write no report page (there is none in this version).
     no_report: bool = "no-report", flag;
 }
 
@@ -130,6 +134,22 @@ const RIDGE: f64 = 0.4;
 const TOP: usize = 10;
 
 impl Request {
+    /// The default of a key, as it is written in a study file; of `threads`, which has none, a value
+    /// that does no harm.
+    #[must_use]
+    pub fn default_of(key: &str) -> String {
+        let (settings, conduct) = Request::default().settle();
+        match key {
+            "threads" => "1".to_owned(),
+            "quiet" => conduct.quiet.to_string(),
+            "replace" => conduct.replace.to_string(),
+            _ => serde_json::to_value(settings)
+                .ok()
+                .and_then(|all| all.get(key).map(ToString::to_string))
+                .unwrap_or_else(|| "false".to_owned()),
+        }
+    }
+
     /// Fills in the defaults.
     #[must_use]
     pub fn settle(self) -> (Settings, Conduct) {

@@ -1,0 +1,172 @@
+//! Which file of a folder is which: two matrices and a landmark table.
+
+use std::collections::HashSet;
+use std::path::Path;
+
+use super::guess::guess;
+use super::names::names;
+use super::{Draft, DraftError, DraftSpecies, FoundLandmarks, FoundMatrix};
+use crate::domain::{Pair, Side};
+use crate::input::{recognise, LandmarkLooks, Looks, MatrixLooks, Source};
+use crate::transform;
+
+/// Endings of tables.
+const ENDINGS: [&str; 4] = ["csv", "tsv", "tab", "txt"];
+
+/// Looks at every table of a folder and settles on the likeliest three.
+pub fn assign(folder: &Path) -> Result<Draft, DraftError> {
+    let mut matrices = Vec::new();
+    let mut tables = Vec::new();
+    let mut unused = Vec::new();
+    for name in files(folder)? {
+        let looks = match Source::read(&folder.join(&name)) {
+            Ok(source) => recognise(&source),
+            Err(fault) => Looks::Neither(fault.problem.to_string()),
+        };
+        match looks {
+            Looks::Matrix(looks) => matrices.push(found(name, *looks)),
+            Looks::Landmarks(looks) => tables.push((name, looks)),
+            Looks::Neither(why) => unused.push((name, why)),
+        }
+    }
+    let landmarks = likeliest_table(&mut tables);
+    for (name, _) in tables {
+        unused.push((name, "another landmark table has more rows".to_owned()));
+    }
+    if matrices.is_empty() {
+        return Err(DraftError::NoMatrix {
+            folder: folder.to_path_buf(),
+            looked_at: unused,
+        });
+    }
+    let chosen = likeliest_pair(&matrices, landmarks.as_ref().map(|(_, looks)| looks));
+    let mut matrices: Vec<Option<FoundMatrix>> = matrices.into_iter().map(Some).collect();
+    let chosen = chosen.map(|at| at.and_then(|at| matrices[at].take()));
+    for matrix in matrices.into_iter().flatten() {
+        unused.push((matrix.file, "two other matrices were taken".to_owned()));
+    }
+    unused.sort();
+    let names = names(&chosen.as_ref().map(|m| m.as_ref().map(|m| m.file.clone())));
+    let landmarks = landmarks.map(|(file, looks)| FoundLandmarks {
+        file,
+        rows: looks.rows,
+        known: Pair::from_fn(|side| {
+            let asked = column(&looks, side);
+            let known = chosen[side].as_ref().map_or(0, |m| hits(asked, m));
+            (known, asked.len())
+        }),
+    });
+    let Pair { a, b } = names;
+    Ok(Draft {
+        species: Pair {
+            a: DraftSpecies {
+                name: a,
+                matrix: chosen.a,
+            },
+            b: DraftSpecies {
+                name: b,
+                matrix: chosen.b,
+            },
+        },
+        landmarks,
+        unused,
+    })
+}
+
+/// Names of the tables in a folder, in order; those no study file can spell are passed over.
+fn files(folder: &Path) -> Result<Vec<String>, DraftError> {
+    let unlisted = |e: std::io::Error| DraftError::Unlisted {
+        folder: folder.to_path_buf(),
+        reason: e.to_string(),
+    };
+    let mut names = Vec::new();
+    for entry in std::fs::read_dir(folder).map_err(unlisted)? {
+        let path = entry.map_err(unlisted)?.path();
+        let ending = path.extension().and_then(|e| e.to_str());
+        let is_table = ending.is_some_and(|e| ENDINGS.contains(&e.to_lowercase().as_str()));
+        if let (true, true, Some(name)) = (
+            is_table,
+            path.is_file(),
+            path.file_name().and_then(|n| n.to_str()),
+        ) {
+            if !name.starts_with('.') {
+                names.push(name.to_owned());
+            }
+        }
+    }
+    names.sort();
+    Ok(names)
+}
+
+fn found(file: String, looks: MatrixLooks) -> FoundMatrix {
+    let guess = guess(&looks);
+    let (transform, fault) = match looks.read {
+        Ok(network) => (Some(transform::default_for(&network, guess.kind)), None),
+        Err(fault) => (None, Some(fault)),
+    };
+    FoundMatrix {
+        file,
+        labels: looks.labels,
+        guess,
+        transform,
+        fault,
+    }
+}
+
+/// Takes out the table with the most rows; of equals one that is called after landmarks.
+fn likeliest_table(tables: &mut Vec<(String, LandmarkLooks)>) -> Option<(String, LandmarkLooks)> {
+    let best = (0..tables.len()).max_by_key(|&at| {
+        let (name, looks) = &tables[at];
+        let named = name.to_lowercase().contains("landmark");
+        (looks.rows, named, std::cmp::Reverse(at))
+    })?;
+    Some(tables.remove(best))
+}
+
+/// The matrices that the landmarks name; as far as these leave it open those without a fault, then
+/// those of different parcels, then the first by name.
+fn likeliest_pair(
+    matrices: &[FoundMatrix],
+    landmarks: Option<&LandmarkLooks>,
+) -> Pair<Option<usize>> {
+    let known = |side: Side, at: usize| {
+        landmarks.map_or(0, |looks| hits(column(looks, side), &matrices[at]))
+    };
+    let sound = |at: usize| usize::from(matrices[at].fault.is_none());
+    if matrices.len() < 2 {
+        let is_b = known(Side::B, 0) > known(Side::A, 0);
+        return Pair::from_fn(|side| ((side == Side::B) == is_b).then_some(0));
+    }
+    let hits = Pair::from_fn(|side| -> Vec<usize> {
+        (0..matrices.len()).map(|at| known(side, at)).collect()
+    });
+    let sets: Vec<HashSet<&String>> = matrices.iter().map(|m| m.labels.iter().collect()).collect();
+    let best = (0..matrices.len())
+        .flat_map(|a| (0..matrices.len()).map(move |b| (a, b)))
+        .filter(|(a, b)| a != b)
+        .max_by_key(|&(a, b)| {
+            (
+                hits.a[a] + hits.b[b],
+                sound(a) + sound(b),
+                sets[a] != sets[b],
+                std::cmp::Reverse((a, b)),
+            )
+        });
+    Pair {
+        a: best.map(|(a, _)| a),
+        b: best.map(|(_, b)| b),
+    }
+}
+
+fn column(looks: &LandmarkLooks, side: Side) -> &[String] {
+    match side {
+        Side::A => &looks.a,
+        Side::B => &looks.b,
+    }
+}
+
+/// How many of these parcels a matrix has.
+fn hits(parcels: &[String], matrix: &FoundMatrix) -> usize {
+    let labels: HashSet<&String> = matrix.labels.iter().collect();
+    parcels.iter().filter(|p| labels.contains(p)).count()
+}
