@@ -2,6 +2,9 @@
 
 mod delimited;
 mod error;
+mod formats;
+mod grid;
+mod label_file;
 mod landmark_table;
 mod matrix;
 mod nearest;
@@ -11,8 +14,9 @@ mod source;
 mod study_file;
 
 pub use error::{InputError, Place, Problem};
+pub use formats::{Fault, Inflated};
 pub use landmark_table::read as read_landmarks;
-pub use matrix::read as read_matrix;
+pub use matrix::{read as read_matrix, read_of as read_matrix_of, Matrix};
 pub use nearest::{nearest, nearest_few};
 pub use recognise::{recognise, LandmarkLooks, Looks, MatrixLooks};
 pub use source::{InputFile, Source};

@@ -45,6 +45,13 @@ pub struct Inputs {
     pub landmarks: InputFile,
     /// The matrices.
     pub matrix: Pair<InputFile>,
+    /// Files of labels, where matrices have them.
+    #[serde(skip_serializing_if = "none")]
+    pub labels: Pair<Option<InputFile>>,
+}
+
+fn none(files: &Pair<Option<InputFile>>) -> bool {
+    files.a.is_none() && files.b.is_none()
 }
 
 /// A study that has passed every check, embedded.
@@ -75,6 +82,7 @@ pub struct Study {
 /// One species' matrix as read, with what its parcels are.
 struct Raw {
     file: InputFile,
+    labels: Option<InputFile>,
     network: Connectivity,
     parcels: Parcels,
     facts: RawFacts,
@@ -104,6 +112,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         study: description.file,
         landmarks: table.file,
         matrix: raw.as_ref().map(|raw| raw.file.clone()),
+        labels: raw.as_ref().map(|raw| raw.labels.clone()),
     };
     let facts = raw.as_ref().map(|raw| raw.facts.clone());
     let mut raw = raw.map(Some);
@@ -176,9 +185,9 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
 
 /// Reads and checks one matrix, and finds its parcels.
 fn read_species(described: &SpeciesFile, warnings: &mut Vec<Warning>) -> Result<Raw, InputError> {
-    let source = Source::read(&described.matrix)?;
-    let (mut network, more) = input::read_matrix(&source, described.weights, &described.name)?;
-    warnings.extend(more);
+    let matrix = input::read_matrix_of(described)?;
+    let mut network = matrix.network;
+    warnings.extend(matrix.warnings);
     suspicion::look_over(&network, described, warnings);
     let filled = raw_facts::filled(&network);
     if described.weights == WeightKind::Correlations {
@@ -213,7 +222,8 @@ fn read_species(described: &SpeciesFile, warnings: &mut Vec<Warning>) -> Result<
     };
     let network = network.select(&order, &order);
     Ok(Raw {
-        file: source.file,
+        file: matrix.file,
+        labels: matrix.labels,
         facts: RawFacts::of(&network, described.weights, filled),
         network,
         parcels,

@@ -14,6 +14,8 @@ pub enum Separator {
     Semicolon,
     /// A tab.
     Tab,
+    /// Any number of blanks, where the table says nothing else and could be nothing else.
+    Blanks,
 }
 
 impl Separator {
@@ -24,6 +26,7 @@ impl Separator {
             Separator::Comma => b',',
             Separator::Semicolon => b';',
             Separator::Tab => b'\t',
+            Separator::Blanks => b' ',
         }
     }
 
@@ -33,6 +36,7 @@ impl Separator {
             Separator::Comma => "(comma)",
             Separator::Semicolon => "(semicolon)",
             Separator::Tab => "(tab)",
+            Separator::Blanks => "(blank)",
         }
     }
 
@@ -49,6 +53,9 @@ impl Separator {
                 })
                 .count()
         };
+        if Separator::ALL.into_iter().all(|s| count(s) == 0) && is_blank_separated(first) {
+            return Separator::Blanks;
+        }
         // `max_by_key` keeps the last of equals; commas are the commonest, so they come last.
         Separator::ALL
             .into_iter()
@@ -56,6 +63,15 @@ impl Separator {
             .max_by_key(|s| count(*s))
             .unwrap_or(Separator::Comma)
     }
+}
+
+/// Whether a line is several numbers, or the header of an edge list, between blanks. Labels may hold
+/// blanks, so blanks separate nothing else.
+fn is_blank_separated(line: &str) -> bool {
+    let words: Vec<&str> = line.split_whitespace().collect();
+    words.len() > 1
+        && (words.iter().all(|w| w.parse::<f64>().is_ok())
+            || words == ["source", "target", "weight"])
 }
 
 /// One row of a table: its line in the file and its cells, without surrounding blanks.
@@ -115,6 +131,9 @@ pub struct Table {
 /// [`InputError`] for a single column, a cell over several lines or a ragged row.
 pub fn parse(source: &Source) -> Result<Table, InputError> {
     let separator = Separator::of(&source.text);
+    if separator == Separator::Blanks {
+        return tabulate(source, separator, blank_separated(&source.text));
+    }
     let mut reader = csv::ReaderBuilder::new()
         .has_headers(false)
         .flexible(true)
@@ -149,6 +168,26 @@ pub fn parse(source: &Source) -> Result<Table, InputError> {
             }
         }
     }
+    tabulate(source, separator, rows)
+}
+
+/// Rows of a text whose cells stand between blanks.
+fn blank_separated(text: &str) -> Vec<Row> {
+    text.lines()
+        .zip(1..)
+        .map(|(line, at)| Row {
+            line: at,
+            cells: line.split_whitespace().collect(),
+        })
+        .collect()
+}
+
+/// Parts the header from the rest and sees that all rows are as wide.
+fn tabulate(
+    source: &Source,
+    separator: Separator,
+    mut rows: Vec<Row>,
+) -> Result<Table, InputError> {
     // A line of separators only is what spreadsheets leave below a table.
     rows.retain(|row| row.cells.iter().any(|c| !c.is_empty()));
     let mut rows = rows.into_iter();

@@ -3,6 +3,7 @@
 use std::fmt;
 use std::path::{Path, PathBuf};
 
+use super::formats::Fault;
 use crate::domain::Side;
 
 /// A place in an input file, as exactly as it is known.
@@ -10,8 +11,12 @@ use crate::domain::Side;
 pub struct Place {
     /// The file.
     pub file: PathBuf,
+    /// Array of a file that holds several.
+    pub array: Option<String>,
     /// Line, counted from 1.
     pub line: Option<u64>,
+    /// Row of a table without lines, counted from 1.
+    pub row: Option<usize>,
     /// Column of a table or character of a line, counted from 1.
     pub column: Option<usize>,
     /// Parcel or landmark the entry belongs to.
@@ -24,7 +29,9 @@ impl Place {
     pub fn file(file: &Path) -> Self {
         Place {
             file: file.to_path_buf(),
+            array: None,
             line: None,
+            row: None,
             column: None,
             parcel: None,
         }
@@ -39,7 +46,25 @@ impl Place {
         }
     }
 
-    /// The same line, at a column.
+    /// The same file, in an array of it.
+    #[must_use]
+    pub fn array(self, name: &str) -> Self {
+        Place {
+            array: Some(name.to_owned()),
+            ..self
+        }
+    }
+
+    /// The same table, at a row.
+    #[must_use]
+    pub fn row(self, row: usize) -> Self {
+        Place {
+            row: Some(row),
+            ..self
+        }
+    }
+
+    /// The same line or row, at a column.
     #[must_use]
     pub fn column(self, column: usize) -> Self {
         Place {
@@ -58,14 +83,26 @@ impl Place {
     }
 }
 
+impl Place {
+    /// The place in words, without the file.
+    #[must_use]
+    pub fn within_file(&self) -> String {
+        let parts = [
+            self.array.as_ref().map(|array| format!("array {array:?}")),
+            self.line.map(|line| format!("line {line}")),
+            self.row.map(|row| format!("row {row}")),
+            self.column.map(|column| format!("column {column}")),
+        ];
+        parts.into_iter().flatten().collect::<Vec<_>>().join(", ")
+    }
+}
+
 impl fmt::Display for Place {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
         write!(f, "{}", self.file.display())?;
-        if let Some(line) = self.line {
-            write!(f, ", line {line}")?;
-        }
-        if let Some(column) = self.column {
-            write!(f, ", column {column}")?;
+        let within = self.within_file();
+        if !within.is_empty() {
+            write!(f, ", {within}")?;
         }
         if let Some(parcel) = &self.parcel {
             write!(f, " ({parcel})")?;
@@ -95,9 +132,12 @@ impl InputError {
     }
 }
 
-/// What is wrong. The wording of every message lives here.
+/// What is wrong. The wording of every message lives here, save that of single formats.
 #[derive(Debug, Clone, PartialEq, thiserror::Error)]
 pub enum Problem {
+    /// A fault of one format of matrices.
+    #[error(transparent)]
+    Format(#[from] Fault),
     /// No such file.
     #[error("there is no such file; check the path (in a study file it is relative to that file's folder)")]
     NotFound,
@@ -404,7 +444,8 @@ pub enum Problem {
     },
 }
 
-fn hint(near: &[String]) -> String {
+/// Near spellings in words, with a blank before; empty where there are none.
+pub(super) fn hint(near: &[String]) -> String {
     if near.is_empty() {
         return String::new();
     }

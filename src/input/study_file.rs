@@ -5,6 +5,7 @@ use std::path::{Path, PathBuf};
 use toml_edit::{Document, Item, TableLike};
 
 use super::error::{InputError, Place, Problem};
+use super::formats::Fault;
 use super::nearest::nearest;
 use super::source::{InputFile, Source};
 use crate::affinity::Likeness;
@@ -18,6 +19,12 @@ pub struct SpeciesFile {
     pub name: String,
     /// Its connectivity.
     pub matrix: PathBuf,
+    /// Its parcels' labels, where a file of their own holds them.
+    pub labels: Option<PathBuf>,
+    /// Array that is the matrix, in a file of several.
+    pub variable: Option<String>,
+    /// Array that holds the labels, in a file of several.
+    pub label_variable: Option<String>,
     /// What the weights measure.
     pub weights: WeightKind,
     /// Transform asked for.
@@ -51,6 +58,9 @@ const SPECIES_KEYS: &[&str] = &[
     "transform",
     "affinity",
     "strongest",
+    "labels",
+    "variable",
+    "label-variable",
 ];
 
 /// Reads and checks a study file.
@@ -142,8 +152,19 @@ fn species_file(table: &Table<'_>, folder: &Path) -> Result<SpeciesFile, InputEr
     if name.trim().is_empty() {
         return Err(table.bad_value("name", "more than blanks"));
     }
+    let labels = table.optional_text("labels")?;
+    let label_variable = table.optional_text("label-variable")?;
+    if labels.is_some() && label_variable.is_some() {
+        return Err(InputError::new(
+            table.place_of("label-variable"),
+            Fault::TwoLabelKeys.into(),
+        ));
+    }
     Ok(SpeciesFile {
         name,
+        labels: labels.map(|path| folder.join(path)),
+        variable: table.optional_text("variable")?,
+        label_variable,
         matrix: folder.join(table.text("matrix", "matrix = \"matrix.csv\"")?),
         weights,
         transform,
@@ -318,6 +339,11 @@ impl<'s> Table<'s> {
         item.as_str()
             .map(str::to_owned)
             .ok_or_else(|| self.bad_value(key, "text in quotes"))
+    }
+
+    /// Text in quotes; `None` where the key is absent.
+    fn optional_text(&self, key: &'static str) -> Result<Option<String>, InputError> {
+        self.has(key).then(|| self.text(key, "")).transpose()
     }
 
     /// A string, number or truth value as text; `None` where the key is absent.

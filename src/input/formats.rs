@@ -1,0 +1,89 @@
+//! Formats of matrices, recognised by what the file holds. Each reader gives a [`Grid`]; nothing is
+//! checked here but the format itself.
+
+use super::error::{InputError, Place};
+use super::grid::{Grid, Label};
+use super::source::{Bytes, Source};
+use crate::domain::WeightKind;
+
+mod choose;
+mod cifti;
+mod cifti_labels;
+mod edges;
+mod fault;
+mod gzip;
+mod magic;
+mod mat;
+mod mat_array;
+mod npy;
+mod npz;
+mod numbers;
+mod text;
+
+pub use fault::Fault;
+pub use gzip::Inflated;
+use magic::Kind;
+pub use text::read as text;
+
+/// What a study says about a matrix, as far as a reader must know it.
+#[derive(Debug, Clone, Copy)]
+pub struct Wanted<'k> {
+    /// What the weights measure.
+    pub weights: WeightKind,
+    /// Array that is the matrix.
+    pub variable: Option<&'k str>,
+    /// Array that holds the labels.
+    pub label_variable: Option<&'k str>,
+    /// Labels from a file of their own.
+    pub labels: Option<&'k [Label]>,
+}
+
+impl Wanted<'_> {
+    /// Refuses keys that name an array where there is only one table.
+    fn no_arrays(&self, format: &'static str) -> Result<(), Fault> {
+        for (key, value) in [
+            ("variable", self.variable),
+            ("label-variable", self.label_variable),
+        ] {
+            if value.is_some() {
+                return Err(Fault::UselessKey { key, format });
+            }
+        }
+        Ok(())
+    }
+}
+
+/// Reads a matrix of any format.
+///
+/// # Errors
+/// [`InputError`] where the file is damaged, of an unknown kind, or does not hold what is wanted.
+pub fn read(file: Bytes, wanted: &Wanted<'_>) -> Result<Grid, InputError> {
+    match Kind::of(&file.bytes) {
+        Kind::Gzip => {
+            let file = gzip::inflate(file)?;
+            match Kind::of(&file.bytes) {
+                Kind::Gzip => Err(refuse(&file, Fault::GzipTwice)),
+                kind => read_plain(kind, file, wanted),
+            }
+        }
+        kind => read_plain(kind, file, wanted),
+    }
+}
+
+fn read_plain(kind: Kind, file: Bytes, wanted: &Wanted<'_>) -> Result<Grid, InputError> {
+    let reader = match kind {
+        Kind::Text | Kind::Gzip => return text(&Source::of(file)?, wanted),
+        Kind::Npy => npy::read,
+        Kind::Zip => npz::read,
+        Kind::Nifti2 => cifti::read,
+        Kind::Mat => mat::read,
+        Kind::Hdf5 => return Err(refuse(&file, Fault::Hdf5)),
+        Kind::Nifti1 => return Err(refuse(&file, Fault::Nifti1)),
+    };
+    let place = Place::file(&file.file.path);
+    reader(&file.bytes, &place, wanted).map_err(|fault| InputError::new(place, fault.into()))
+}
+
+fn refuse(file: &Bytes, fault: Fault) -> InputError {
+    InputError::new(Place::file(&file.file.path), fault.into())
+}
