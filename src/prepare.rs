@@ -83,6 +83,7 @@ pub struct Study {
 struct Raw {
     file: InputFile,
     labels: Option<InputFile>,
+    warnings: Vec<Warning>,
     network: Connectivity,
     parcels: Parcels,
     facts: RawFacts,
@@ -95,8 +96,11 @@ struct Raw {
 pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
     let description = input::read_study_file(study)?;
     let (settings, conduct) = asked.or(description.request.clone()).settle();
-    let mut warnings = Vec::new();
-    let raw = Pair::try_from_fn(|side| read_species(&description.species[side], &mut warnings))?;
+    let raw = description
+        .species
+        .as_ref()
+        .try_map_at_once(conduct.threads, |_, described| read_species(described))?;
+    let mut warnings = [&raw.a.warnings[..], &raw.b.warnings[..]].concat();
 
     let table = Source::read(&description.landmarks)?;
     let parcels = Pair {
@@ -115,9 +119,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         labels: raw.as_ref().map(|raw| raw.labels.clone()),
     };
     let facts = raw.as_ref().map(|raw| raw.facts.clone());
-    let mut raw = raw.map(Some);
-    let species = Pair::try_from_fn(|side| {
-        let raw = raw[side].take().expect("each side is taken once");
+    let species = raw.try_map_at_once(conduct.threads, |side, raw| {
         embed_species(raw, side, &treatment[side], &settings, most)
     })?;
 
@@ -184,11 +186,11 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
 }
 
 /// Reads and checks one matrix, and finds its parcels.
-fn read_species(described: &SpeciesFile, warnings: &mut Vec<Warning>) -> Result<Raw, InputError> {
+fn read_species(described: &SpeciesFile) -> Result<Raw, InputError> {
     let matrix = input::read_matrix_of(described)?;
     let mut network = matrix.network;
-    warnings.extend(matrix.warnings);
-    suspicion::look_over(&network, described, warnings);
+    let mut warnings = matrix.warnings;
+    suspicion::look_over(&network, described, &mut warnings);
     let filled = raw_facts::filled(&network);
     if described.weights == WeightKind::Correlations {
         symmetrise(&mut network);
@@ -224,6 +226,7 @@ fn read_species(described: &SpeciesFile, warnings: &mut Vec<Warning>) -> Result<
     Ok(Raw {
         file: matrix.file,
         labels: matrix.labels,
+        warnings,
         facts: RawFacts::of(&network, described.weights, filled),
         network,
         parcels,

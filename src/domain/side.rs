@@ -68,6 +68,39 @@ impl<T> Pair<T> {
         Ok(Pair { a, b })
     }
 
+    /// Turns both values into others, at the same time where `threads` is not 1. An error of a comes
+    /// before one of b, as if they had been turned one after the other.
+    ///
+    /// # Errors
+    /// The error of a, else that of b.
+    ///
+    /// # Panics
+    /// If `change` panics.
+    pub fn try_map_at_once<U: Send, E: Send>(
+        self,
+        threads: usize,
+        change: impl Fn(Side, T) -> Result<U, E> + Sync,
+    ) -> Result<Pair<U>, E>
+    where
+        T: Send,
+    {
+        let Pair { a, b } = self;
+        if threads == 1 {
+            let a = change(Side::A, a)?;
+            let b = change(Side::B, b)?;
+            return Ok(Pair { a, b });
+        }
+        let (a, b) = std::thread::scope(|scope| {
+            let other = scope.spawn(|| change(Side::B, b));
+            let a = change(Side::A, a);
+            let b = other
+                .join()
+                .unwrap_or_else(|fault| std::panic::resume_unwind(fault));
+            (a, b)
+        });
+        Ok(Pair { a: a?, b: b? })
+    }
+
     /// Borrows both values.
     pub fn as_ref(&self) -> Pair<&T> {
         Pair {

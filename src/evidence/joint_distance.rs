@@ -30,6 +30,7 @@ impl Evidence for JointDistance {
         let positions = map.positions(material.embedded());
         Ok(Box::new(Positions {
             a: positions.a,
+            b_norms: positions.b.rows().into_iter().map(|y| y.dot(&y)).collect(),
             b_by_axis: positions
                 .b
                 .reversed_axes()
@@ -44,6 +45,8 @@ impl Evidence for JointDistance {
 struct Positions {
     a: Array2<f64>,
     b_by_axis: Array2<f64>,
+    /// Squared lengths of b's positions.
+    b_norms: Vec<f64>,
 }
 
 impl Fitted for Positions {
@@ -52,14 +55,12 @@ impl Fitted for Positions {
             self.b_by_axis[(axis, b[j])]
         });
         let others = others.as_slice().expect("gathered row by row above");
+        let norms: Vec<f64> = b.iter().map(|&parcel| self.b_norms[parcel]).collect();
         for (mut row, &parcel) in out.rows_mut().into_iter().zip(a) {
             let row = row.as_slice_mut().expect("rows of `out` are contiguous");
             let own = self.a.row(parcel);
-            squared_distances(
-                own.as_slice().expect("positions are stored row by row"),
-                others,
-                row,
-            );
+            let own = own.as_slice().expect("positions are stored row by row");
+            squared_distances(own, others, &norms, row);
         }
     }
 }

@@ -9,9 +9,17 @@ use pulp::{Arch, Simd, WithSimd};
 const LANES: usize = 16;
 
 /// Squared distances from one point to many: `point` has one coordinate an axis, `others` holds axis
-/// after axis the coordinates of `out.len()` points.
-pub fn squared_distances(point: &[f64], others: &[f64], out: &mut [f64]) {
-    Arch::new().dispatch(SquaredDistances { point, others, out });
+/// after axis the coordinates of `out.len()` points, `norms` their squared lengths.
+///
+/// Computed as |x|^2 + |y|^2 - 2 x y, which spares a third of the work and loses digits only where a
+/// distance is tiny beside the lengths; one that should be zero may come out a little below.
+pub fn squared_distances(point: &[f64], others: &[f64], norms: &[f64], out: &mut [f64]) {
+    Arch::new().dispatch(SquaredDistances {
+        point,
+        others,
+        norms,
+        out,
+    });
 }
 
 /// Index of the least entry, the first of equals; `None` where no entry is below infinity.
@@ -39,6 +47,7 @@ pub fn count_below(values: &[f64], bound: f64) -> (usize, usize) {
 struct SquaredDistances<'s> {
     point: &'s [f64],
     others: &'s [f64],
+    norms: &'s [f64],
     out: &'s mut [f64],
 }
 
@@ -48,25 +57,34 @@ impl WithSimd for SquaredDistances<'_> {
     // Inlined into a function compiled for wider vectors: that is what widens the loops.
     #[inline(always)]
     fn with_simd<S: Simd>(self, _simd: S) {
-        let SquaredDistances { point, others, out } = self;
+        let SquaredDistances {
+            point,
+            others,
+            norms,
+            out,
+        } = self;
         let count = out.len();
+        let own: f64 = point.iter().map(|x| x * x).sum();
         let whole = count - count % LANES;
         for first in (0..whole).step_by(LANES) {
-            let mut sums = [0.0; LANES];
+            let norms = &norms[first..][..LANES];
+            let mut sums = [own; LANES];
+            for lane in 0..LANES {
+                sums[lane] += norms[lane];
+            }
             for (axis, &x) in point.iter().enumerate() {
+                let twice = -2.0 * x;
                 let others = &others[axis * count + first..][..LANES];
                 for lane in 0..LANES {
-                    let gap = x - others[lane];
-                    sums[lane] += gap * gap;
+                    sums[lane] += twice * others[lane];
                 }
             }
             out[first..first + LANES].copy_from_slice(&sums);
         }
         for j in whole..count {
-            let mut sum = 0.0;
+            let mut sum = own + norms[j];
             for (axis, &x) in point.iter().enumerate() {
-                let gap = x - others[axis * count + j];
-                sum += gap * gap;
+                sum += -2.0 * x * others[axis * count + j];
             }
             out[j] = sum;
         }
@@ -186,14 +204,20 @@ mod tests {
             let point: Vec<f64> = (0..axes).map(wave).collect();
             let others: Vec<f64> = (0..axes * count).map(|i| wave(i + 3)).collect();
             let mut out = vec![f64::NAN; count];
-            squared_distances(&point, &others, &mut out);
+            let norms: Vec<f64> = (0..count)
+                .map(|j| (0..axes).map(|k| others[k * count + j].powi(2)).sum())
+                .collect();
+            squared_distances(&point, &others, &norms, &mut out);
+            let own: f64 = point.iter().map(|x| x * x).sum();
             for (j, found) in out.iter().enumerate() {
-                let mut sum = 0.0;
+                let mut sum = own + norms[j];
+                let mut plain = 0.0;
                 for (axis, x) in point.iter().enumerate() {
-                    let gap = x - others[axis * count + j];
-                    sum += gap * gap;
+                    sum += -2.0 * x * others[axis * count + j];
+                    plain += (x - others[axis * count + j]).powi(2);
                 }
                 assert_eq!(*found, sum);
+                assert!((found - plain).abs() < 1e-12 * (own + norms[j]));
             }
             let plain = (0..count).min_by(|&i, &j| out[i].total_cmp(&out[j]));
             assert_eq!(first_least(&out), plain);

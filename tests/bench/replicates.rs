@@ -39,12 +39,14 @@ fn replicates(c: &mut Criterion) {
     }
     let (a, b_by_axis) = (cloud(400, 3), cloud(360, 4).reversed_axes());
     let others: Vec<f64> = b_by_axis.iter().copied().collect();
+    let norms: Vec<f64> = b_by_axis.columns().into_iter().map(|y| y.dot(&y)).collect();
     let mut out = Array2::zeros((400, 360));
     c.bench_function("distances and nearest, 400 x 360 x 8", |b| {
         b.iter(|| {
             for (mut row, point) in out.rows_mut().into_iter().zip(a.rows()) {
                 let row = row.as_slice_mut().expect("standard layout");
-                squared_distances(point.as_slice().expect("standard layout"), &others, row);
+                let point = point.as_slice().expect("standard layout");
+                squared_distances(point, &others, &norms, row);
             }
             black_box(place::nearest(&out))
         });

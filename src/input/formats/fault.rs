@@ -159,7 +159,7 @@ pub enum Fault {
         found: String,
     },
     /// An XML that is refused before it is read.
-    #[error("the XML of the file has {found}, which no CIFTI-2 file needs; it is not read. Save the file again by Connectome Workbench or nibabel")]
+    #[error("the XML of the file has {found}, which no CIFTI-2 file needs; it is not read. Save the file again by a current CIFTI library such as nibabel")]
     XmlDeclares {
         /// What it has.
         found: String,
