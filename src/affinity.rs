@@ -1,9 +1,11 @@
 //! How alike two parcels of one species are: by the profiles of their connections.
 
-use ndarray::linalg::general_mat_mul;
-use ndarray::{concatenate, Array1, Array2, ArrayView2, Axis};
+use std::collections::HashMap;
 
-use crate::domain::{choices, Share, WeightKind};
+use ndarray::linalg::general_mat_mul;
+use ndarray::{s, Array1, Array2, ArrayView2, Axis};
+
+use crate::domain::{choices, Connectivity, Share, WeightKind};
 
 choices! {
     /// How two profiles are compared.
@@ -44,41 +46,151 @@ impl Params {
     }
 }
 
+/// Entries that two profiles must both have been observed in before they are compared, at least.
+const FEWEST_SHARED: f64 = 3.0;
+/// The same as a share of a whole profile.
+pub const SMALLEST_SHARED: f64 = 0.1;
+
+/// One half of the profiles: links sent, or links received.
+#[derive(Debug, Clone)]
+struct Half {
+    /// The parcels that have it, where not all do.
+    parcels: Option<Vec<usize>>,
+    /// Strengths `(parcels that have it, entries)`; zero where nothing was observed.
+    links: Array2<f64>,
+    /// One where an entry was observed, zero elsewhere; `None` where all were.
+    observed: Option<Array2<f64>>,
+}
+
 /// The profile of every parcel: its links to all others, and in a directed network the links it
 /// receives beside them. Kept apart, so that they need not be copied side by side.
+///
+/// In a rectangular network the rows are the parcels; links received are known for those that are
+/// columns too, and compared among these only. Entries that were never observed are left out of
+/// every comparison: two profiles are compared where both were observed.
 #[derive(Debug, Clone)]
 pub struct Profiles {
-    outgoing: Array2<f64>,
-    incoming: Option<Array2<f64>>,
+    parcels: usize,
+    halves: Vec<Half>,
 }
 
 impl Profiles {
-    /// Takes strengths `(parcels, parcels)`; each half of a profile is cut to its strongest links.
+    /// Profiles of a complete square network, strengths `(parcels, parcels)`; each half of a profile
+    /// is cut to its strongest links.
     #[must_use]
     pub fn new(strengths: ArrayView2<'_, f64>, strongest: Share) -> Profiles {
-        let directed = is_directed(strengths);
-        let half = |view: ArrayView2<'_, f64>| {
-            let mut half = view.as_standard_layout().into_owned();
-            keep_strongest(&mut half, strongest);
-            half
-        };
+        let mut halves = vec![Half::whole(strengths, strongest)];
+        if is_directed(strengths) {
+            halves.push(Half::whole(strengths.t(), strongest));
+        }
         Profiles {
-            outgoing: half(strengths),
-            incoming: directed.then(|| half(strengths.t())),
+            parcels: strengths.nrows(),
+            halves,
+        }
+    }
+
+    /// Profiles of any network whose rows are the parcels.
+    #[must_use]
+    pub fn of(network: &Connectivity, strongest: Share) -> Profiles {
+        let strengths = network.weights().view();
+        if network.is_square() && !network.has_missing() {
+            return Profiles::new(strengths, strongest);
+        }
+        let observed = network.has_missing().then(|| {
+            Array2::from_shape_fn(strengths.dim(), |(i, j)| {
+                // The diagonal is known to be no link; it is not missing.
+                f64::from(u8::from(!network.is_missing(i, j)))
+            })
+        });
+        let mut outgoing = Half::whole(strengths, strongest);
+        outgoing.observed.clone_from(&observed);
+        let mut halves = vec![outgoing];
+        let row_of: HashMap<&str, usize> = network
+            .row_labels()
+            .iter()
+            .enumerate()
+            .map(|(row, label)| (label.as_str(), row))
+            .collect();
+        // Columns that are parcels, and the rows these stand in.
+        let (columns, rows): (Vec<usize>, Vec<usize>) = network
+            .column_labels()
+            .iter()
+            .enumerate()
+            .filter_map(|(column, label)| Some((column, *row_of.get(label.as_str())?)))
+            .unzip();
+        let symmetric = network.is_square() && !is_directed_where_observed(network);
+        if !symmetric && !columns.is_empty() {
+            let received = strengths.select(Axis(1), &columns).reversed_axes();
+            let mut incoming = Half::whole(received.view(), strongest);
+            incoming.observed = observed.map(|mask| {
+                let mask = mask.select(Axis(1), &columns).reversed_axes();
+                mask.as_standard_layout().into_owned()
+            });
+            incoming.parcels =
+                (rows.len() < strengths.nrows() || !rows.is_sorted()).then_some(rows);
+            halves.push(incoming);
+        }
+        Profiles {
+            parcels: strengths.nrows(),
+            halves,
         }
     }
 
     /// Number of entries of a profile.
     #[must_use]
     pub fn width(&self) -> usize {
-        self.halves().map(Array2::ncols).sum()
+        self.halves.iter().map(|half| half.links.ncols()).sum()
     }
 
-    /// All profiles, one a row: `(parcels, width)`.
+    /// Share of each parcel's profile that was observed.
+    #[must_use]
+    pub fn coverage(&self) -> Array1<f64> {
+        let mut seen = Array1::zeros(self.parcels);
+        let mut possible: Array1<f64> = Array1::zeros(self.parcels);
+        for half in &self.halves {
+            let width = half.links.ncols() as f64;
+            for at in 0..half.links.nrows() {
+                let parcel = half.parcel(at);
+                possible[parcel] += width;
+                seen[parcel] += half
+                    .observed
+                    .as_ref()
+                    .map_or(width, |mask| mask.row(at).sum());
+            }
+        }
+        seen / possible
+    }
+
+    /// All profiles, one a row: `(parcels, width)`. Where nothing was observed stands the mean of the
+    /// parcels that were, which says nothing about the one that was not.
     #[must_use]
     pub fn matrix(&self) -> Array2<f64> {
-        let halves: Vec<ArrayView2<'_, f64>> = self.halves().map(Array2::view).collect();
-        concatenate(Axis(1), &halves).expect("both halves have a row for each parcel")
+        let mut all = Array2::zeros((self.parcels, self.width()));
+        let mut first = 0;
+        for half in &self.halves {
+            let width = half.links.ncols();
+            let count = half.observed.as_ref().map_or_else(
+                || Array1::from_elem(width, half.links.nrows() as f64),
+                |mask| mask.sum_axis(Axis(0)),
+            );
+            let mean = half.links.sum_axis(Axis(0)) / count.mapv(|c| c.max(1.0));
+            let mut block = all.slice_mut(s![.., first..first + width]);
+            block.assign(&mean);
+            for (at, links) in half.links.rows().into_iter().enumerate() {
+                let mut row = block.row_mut(half.parcel(at));
+                for (entry, &link) in links.iter().enumerate() {
+                    if half
+                        .observed
+                        .as_ref()
+                        .is_none_or(|mask| mask[(at, entry)] > 0.0)
+                    {
+                        row[entry] = link;
+                    }
+                }
+            }
+            first += width;
+        }
+        all
     }
 
     /// All profiles scaled so that products of rows are their likenesses: of unit length, and for
@@ -105,24 +217,31 @@ impl Profiles {
         profiles
     }
 
-    fn halves(&self) -> impl Iterator<Item = &Array2<f64>> {
-        std::iter::once(&self.outgoing).chain(self.incoming.as_ref())
-    }
-
     /// Affinities `(parcels, parcels)`: symmetric, in [0, 1], one on the diagonal. Unlikeness beyond
-    /// independence (a negative cosine or correlation) counts as none.
+    /// independence (a negative cosine or correlation) counts as none, and so do two profiles of
+    /// which less than a tenth, or fewer than three entries, were observed in both.
     #[must_use]
     pub fn affinity(&self, likeness: Likeness) -> Array2<f64> {
-        let n = self.outgoing.nrows();
+        if self.halves.iter().all(Half::is_complete) {
+            self.affinity_of_complete(likeness)
+        } else {
+            self.affinity_where_both_observed(likeness)
+        }
+    }
+
+    fn affinity_of_complete(&self, likeness: Likeness) -> Array2<f64> {
+        let n = self.parcels;
         let mut gram = Array2::zeros((n, n));
-        for half in self.halves() {
-            general_mat_mul(1.0, half, &half.t(), 1.0, &mut gram);
+        for half in &self.halves {
+            general_mat_mul(1.0, &half.links, &half.links.t(), 1.0, &mut gram);
         }
         if likeness == Likeness::Pearson {
             let width = self.width() as f64;
+            let sums = |half: &Half| half.links.sum_axis(Axis(1));
             let means: Array1<f64> = self
-                .halves()
-                .fold(Array1::zeros(n), |sum, half| sum + half.sum_axis(Axis(1)))
+                .halves
+                .iter()
+                .fold(Array1::zeros(n), |sum, half| sum + sums(half))
                 / width;
             for ((i, j), g) in gram.indexed_iter_mut() {
                 *g -= width * means[i] * means[j];
@@ -137,16 +256,119 @@ impl Profiles {
                 0.0
             }
         });
-        for i in 0..n {
-            for j in 0..i {
-                let likeness = (gram[(i, j)] * inverse[i] * inverse[j]).clamp(0.0, 1.0);
-                gram[(i, j)] = likeness;
-                gram[(j, i)] = likeness;
-            }
-            gram[(i, i)] = 1.0;
-        }
+        likenesses(&mut gram, |gram, i, j| {
+            gram[(i, j)] * inverse[i] * inverse[j]
+        });
         gram
     }
+
+    /// The same over the entries that both profiles have; every sum is then one for each pair.
+    fn affinity_where_both_observed(&self, likeness: Likeness) -> Array2<f64> {
+        let square = |n: usize| Array2::<f64>::zeros((n, n));
+        let n = self.parcels;
+        // For pair (i, j), over entries observed in both: products, squares and sum of i's, count.
+        let (mut products, mut squares, mut sums, mut shared) =
+            (square(n), square(n), square(n), square(n));
+        let mut possible = square(n);
+        for half in &self.halves {
+            let all_seen;
+            let mask = match &half.observed {
+                Some(mask) => mask,
+                None => {
+                    all_seen = Array2::ones(half.links.dim());
+                    &all_seen
+                }
+            };
+            let squared = half.links.mapv(|x| x * x);
+            half.add(&half.links, &half.links, &mut products);
+            half.add(&squared, mask, &mut squares);
+            half.add(&half.links, mask, &mut sums);
+            half.add(mask, mask, &mut shared);
+            let ones = Array2::from_elem((half.links.nrows(), 1), 1.0);
+            let width = ones.mapv(|one: f64| one * half.links.ncols() as f64);
+            half.add(&width, &ones, &mut possible);
+        }
+        let mut affinity = products;
+        likenesses(&mut affinity, |products, i, j| {
+            let count = shared[(i, j)];
+            if count < FEWEST_SHARED || count < SMALLEST_SHARED * possible[(i, j)] {
+                return 0.0;
+            }
+            let (mut product, mut own_i, mut own_j) =
+                (products[(i, j)], squares[(i, j)], squares[(j, i)]);
+            let before = own_i.max(own_j);
+            if likeness == Likeness::Pearson {
+                let (sum_i, sum_j) = (sums[(i, j)], sums[(j, i)]);
+                product -= sum_i * sum_j / count;
+                own_i -= sum_i * sum_i / count;
+                own_j -= sum_j * sum_j / count;
+            }
+            if own_i.min(own_j) <= before * f64::EPSILON * count {
+                0.0
+            } else {
+                product / (own_i * own_j).sqrt()
+            }
+        });
+        affinity
+    }
+}
+
+impl Half {
+    fn whole(links: ArrayView2<'_, f64>, strongest: Share) -> Half {
+        let mut links = links.as_standard_layout().into_owned();
+        keep_strongest(&mut links, strongest);
+        Half {
+            parcels: None,
+            links,
+            observed: None,
+        }
+    }
+
+    fn is_complete(&self) -> bool {
+        self.parcels.is_none() && self.observed.is_none()
+    }
+
+    /// The parcel whose links stand in a row.
+    fn parcel(&self, row: usize) -> usize {
+        self.parcels.as_ref().map_or(row, |parcels| parcels[row])
+    }
+
+    /// Adds the products of rows of `left` with rows of `right` to the pairs of parcels they stand for.
+    fn add(&self, left: &Array2<f64>, right: &Array2<f64>, to: &mut Array2<f64>) {
+        match &self.parcels {
+            None => general_mat_mul(1.0, left, &right.t(), 1.0, to),
+            Some(parcels) => {
+                let products = left.dot(&right.t());
+                for ((i, j), product) in products.indexed_iter() {
+                    to[(parcels[i], parcels[j])] += product;
+                }
+            }
+        }
+    }
+}
+
+/// Turns sums into likenesses, pair by pair: clamped to [0, 1], symmetric, one on the diagonal.
+fn likenesses(gram: &mut Array2<f64>, likeness: impl Fn(&Array2<f64>, usize, usize) -> f64) {
+    for i in 0..gram.nrows() {
+        for j in 0..i {
+            let value = likeness(gram, i, j).clamp(0.0, 1.0);
+            gram[(i, j)] = value;
+            gram[(j, i)] = value;
+        }
+        gram[(i, i)] = 1.0;
+    }
+}
+
+/// Whether links of a square network differ by direction where both directions were observed.
+fn is_directed_where_observed(network: &Connectivity) -> bool {
+    let strengths = network.weights();
+    (0..strengths.nrows()).any(|i| {
+        (0..i).any(|j| {
+            strengths[(i, j)] != strengths[(j, i)]
+                && !network.is_missing(i, j)
+                && !network.is_missing(j, i)
+        })
+    })
 }
 
 /// Whether links differ by direction.
@@ -172,5 +394,126 @@ fn keep_strongest(rows: &mut Array2<f64>, share: Share) {
             .copied()
             .unwrap_or(f64::INFINITY);
         row.mapv_inplace(|x| if x >= weakest { x } else { 0.0 });
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use approx::assert_abs_diff_eq;
+
+    /// A network whose entries follow no pattern; `missing` says which were never observed.
+    fn network(
+        rows: usize,
+        columns: usize,
+        missing: impl Fn(usize, usize) -> bool,
+    ) -> Connectivity {
+        let label = |i: usize| format!("p{i:02}");
+        let weights = Array2::from_shape_fn((rows, columns), |(i, j)| {
+            let wave = ((i * 31 + j * 17) as f64).sin() + 1.1;
+            if i == j || missing(i, j) {
+                0.0
+            } else {
+                wave
+            }
+        });
+        let mask = Array2::from_shape_fn((rows, columns), |(i, j)| missing(i, j));
+        let any = mask.iter().any(|m| *m);
+        Connectivity::new(
+            (0..rows).map(label).collect(),
+            (0..columns).map(label).collect(),
+            weights,
+            any.then_some(mask),
+        )
+        .expect("labels fit")
+    }
+
+    /// The definition, entry by entry.
+    fn by_definition(network: &Connectivity, likeness: Likeness, i: usize, j: usize) -> f64 {
+        let (rows, columns) = network.weights().dim();
+        let w = |a: usize, b: usize| network.weights()[(a, b)];
+        let mut pairs = Vec::new();
+        for k in 0..columns {
+            if !network.is_missing(i, k) && !network.is_missing(j, k) {
+                pairs.push((w(i, k), w(j, k)));
+            }
+        }
+        if i < columns && j < columns {
+            for k in 0..rows {
+                if !network.is_missing(k, i) && !network.is_missing(k, j) {
+                    pairs.push((w(k, i), w(k, j)));
+                }
+            }
+        }
+        let n = pairs.len() as f64;
+        let (mut mean_x, mut mean_y) = (0.0, 0.0);
+        if likeness == Likeness::Pearson {
+            mean_x = pairs.iter().map(|p| p.0).sum::<f64>() / n;
+            mean_y = pairs.iter().map(|p| p.1).sum::<f64>() / n;
+        }
+        let sum = |of: &dyn Fn(f64, f64) -> f64| {
+            pairs
+                .iter()
+                .map(|p| of(p.0 - mean_x, p.1 - mean_y))
+                .sum::<f64>()
+        };
+        let product = sum(&|x, y| x * y);
+        let own = sum(&|x, _| x * x) * sum(&|_, y| y * y);
+        (product / own.sqrt()).clamp(0.0, 1.0)
+    }
+
+    #[test]
+    fn only_what_both_profiles_have_is_compared() {
+        for likeness in [Likeness::Cosine, Likeness::Pearson] {
+            for network in [
+                network(12, 12, |i, j| (i * 7 + j * 3) % 5 == 0),
+                network(12, 5, |_, _| false),
+                network(12, 5, |i, j| i == 2 && j > 2),
+            ] {
+                let found = Profiles::of(&network, Share::ALL).affinity(likeness);
+                for i in 0..12 {
+                    assert_eq!(found[(i, i)], 1.0);
+                    for j in 0..i {
+                        let expected = by_definition(&network, likeness, i, j);
+                        assert_abs_diff_eq!(found[(i, j)], expected, epsilon = 1e-12);
+                        assert_eq!(found[(i, j)], found[(j, i)]);
+                    }
+                }
+            }
+        }
+    }
+
+    #[test]
+    fn the_masked_path_agrees_with_the_complete_one() {
+        let network = network(10, 10, |_, _| false);
+        let complete = Profiles::of(&network, Share::ALL);
+        for likeness in [Likeness::Cosine, Likeness::Pearson] {
+            assert_abs_diff_eq!(
+                complete.affinity_of_complete(likeness),
+                complete.affinity_where_both_observed(likeness),
+                epsilon = 1e-12
+            );
+        }
+    }
+
+    #[test]
+    fn too_little_in_common_is_no_likeness() {
+        // Parcels 0 and 1 were observed on different sides of the middle, with two entries in common.
+        let network = network(20, 20, |i, j| {
+            (i == 0 && j > 10) || (i == 1 && j < 9) || (j == 0) || (j == 1)
+        });
+        let profiles = Profiles::of(&network, Share::ALL);
+        assert_eq!(profiles.affinity(Likeness::Cosine)[(0, 1)], 0.0);
+        assert!(profiles.affinity(Likeness::Cosine)[(2, 3)] > 0.0);
+        let coverage = profiles.coverage();
+        assert!(coverage[0] < coverage[2]);
+    }
+
+    #[test]
+    fn a_missing_entry_says_nothing_to_components() {
+        let network = network(6, 6, |i, j| i == 4 && j == 2);
+        let matrix = Profiles::of(&network, Share::ALL).matrix();
+        let others: f64 = (0..6).filter(|i| *i != 4).map(|i| matrix[(i, 2)]).sum();
+        assert_abs_diff_eq!(matrix[(4, 2)], others / 5.0, epsilon = 1e-12);
     }
 }

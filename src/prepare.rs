@@ -304,7 +304,7 @@ fn embed_species(
     axes: usize,
 ) -> Result<Species, InputError> {
     let network = transform::apply(raw.network, treatment.weights, treatment.transform);
-    let profiles = Profiles::new(network.weights().view(), treatment.affinity.strongest);
+    let profiles = Profiles::of(&network, treatment.affinity.strongest);
     let embedding: Embedding = match settings.embedding {
         embed::Method::Components => {
             embed::components(&profiles.standardised(treatment.affinity.likeness), axes)

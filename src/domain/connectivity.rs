@@ -109,6 +109,12 @@ impl Connectivity {
         self.missing.as_ref().is_some_and(|m| m[(row, column)])
     }
 
+    /// Whether any entry was never observed.
+    #[must_use]
+    pub fn has_missing(&self) -> bool {
+        self.missing.is_some()
+    }
+
     /// Whether rows and columns are the same parcels in the same order.
     #[must_use]
     pub fn is_square(&self) -> bool {
