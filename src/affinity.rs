@@ -49,7 +49,7 @@ impl Params {
 /// Entries that two profiles must both have been observed in before they are compared, at least.
 const FEWEST_SHARED: f64 = 3.0;
 /// The same as a share of a whole profile.
-pub const SMALLEST_SHARED: f64 = 0.1;
+const SMALLEST_SHARED: f64 = 0.1;
 
 /// One half of the profiles: links sent, or links received.
 #[derive(Debug, Clone)]

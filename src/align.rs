@@ -29,6 +29,15 @@ choices! {
 impl Alignment {
     /// Both, in the order of the tables.
     pub const BOTH: [Alignment; 2] = [Alignment::Procrustes, Alignment::Canonical];
+
+    /// Its name in a sentence.
+    #[must_use]
+    pub fn in_words(self) -> &'static str {
+        match self {
+            Alignment::Procrustes => "Procrustes",
+            Alignment::Canonical => "canonical",
+        }
+    }
 }
 
 /// A value for each alignment.

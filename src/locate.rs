@@ -129,10 +129,7 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         let map = &spaces[alignment].map;
         if map.fixed < map.axes() {
             warnings.push(Warning::LandmarksDoNotSpan {
-                alignment: match alignment {
-                    Alignment::Procrustes => "Procrustes",
-                    Alignment::Canonical => "canonical",
-                },
+                alignment: alignment.in_words(),
                 axes: map.axes(),
                 fixed: map.fixed,
             });

@@ -1,6 +1,7 @@
 //! From raw weights to strengths that can be compared: logarithms, ranks, Fisher's z.
 
 use crate::domain::{Connectivity, Transform, WeightKind};
+use crate::linalg::median;
 
 /// Correlations are cut to this before Fisher's z, which is infinite at 1.
 pub const LARGEST_CORRELATION: f64 = 0.999;
@@ -60,11 +61,11 @@ fn scale(
             Box::new(move |w| 1.0 + w - smallest)
         }
         (WeightKind::Log10, Transform::Log1p) => {
-            let median = median(observed(connectivity).map(|w| 10.0_f64.powf(w)).collect());
+            let median = median_or_one(observed(connectivity).map(|w| 10.0_f64.powf(w)));
             Box::new(move |w| (10.0_f64.powf(w) / median).ln_1p())
         }
         (_, Transform::Log1p) => {
-            let median = median(positive().collect());
+            let median = median_or_one(positive());
             Box::new(move |w| (w / median).ln_1p())
         }
         (_, Transform::LogFloor) => {
@@ -94,18 +95,9 @@ pub(crate) fn observed(connectivity: &Connectivity) -> impl Iterator<Item = f64>
         .map(|(_, w)| *w)
 }
 
-/// The median; 1 where there is nothing, so that dividing by it is harmless.
-fn median(mut values: Vec<f64>) -> f64 {
-    if values.is_empty() {
-        return 1.0;
-    }
-    values.sort_by(f64::total_cmp);
-    let half = values.len() / 2;
-    if values.len() % 2 == 1 {
-        values[half]
-    } else {
-        (values[half - 1] + values[half]) / 2.0
-    }
+/// The median weight; 1 where there is none, so that dividing by it is harmless.
+fn median_or_one(weights: impl Iterator<Item = f64>) -> f64 {
+    median(weights.collect()).unwrap_or(1.0)
 }
 
 /// Average ranks as a share of all entries; where zero means no connection, zero stays zero.

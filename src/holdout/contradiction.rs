@@ -2,6 +2,7 @@
 
 use super::trials::{Placed, Trials};
 use crate::domain::Pair;
+use crate::linalg::median;
 
 /// Makes the median absolute deviation estimate the standard deviation of normal data.
 const MAD_TO_DEVIATION: f64 = 1.4826;
@@ -30,9 +31,10 @@ pub fn contradicted(trials: &Trials, way: usize) -> Vec<bool> {
                 .filter(|other| trials.blocks[*other] != own)
                 .map(|other| log_odds(trials.nested[way][own][other]))
                 .collect();
-            let centre = median(others.clone());
-            let deviation =
-                median(others.iter().map(|x| (x - centre).abs()).collect()) * MAD_TO_DEVIATION;
+            let centre = median(others.clone()).unwrap_or(0.0);
+            let deviation = median(others.iter().map(|x| (x - centre).abs()).collect())
+                .unwrap_or(0.0)
+                * MAD_TO_DEVIATION;
             let limit = centre + OUT_OF_LINE * deviation.max(LEAST_DEVIATION);
             log_odds(placed) > limit && share_ahead(placed) > PLAUSIBLE_SHARE
         })
@@ -51,15 +53,6 @@ fn log_odds(placed: Pair<Placed>) -> f64 {
 /// Share of the candidates ahead of the counterpart, mean of both directions.
 fn share_ahead(placed: Pair<Placed>) -> f64 {
     1.0 - (placed.a.percentile() + placed.b.percentile()) / 2.0
-}
-
-fn median(mut values: Vec<f64>) -> f64 {
-    values.sort_by(f64::total_cmp);
-    let n = values.len();
-    if n == 0 {
-        return 0.0;
-    }
-    (values[(n - 1) / 2] + values[n / 2]) / 2.0
 }
 
 #[cfg(test)]

@@ -2,7 +2,6 @@
 
 use std::fmt::{Result, Write};
 
-use crate::align::Alignment;
 use crate::domain::{Pair, Side};
 use crate::holdout::Placed;
 use crate::locate::{Counterpart, Located, Placement};
@@ -110,10 +109,7 @@ fn trust(text: &mut String, study: &Study, located: &Located) -> Result {
         )?;
     }
     let chosen = located.choice.evidence;
-    let name = match chosen {
-        Alignment::Procrustes => "Procrustes",
-        Alignment::Canonical => "canonical",
-    };
+    let name = chosen.in_words();
     let axes = located.choice.axes[chosen];
     writeln!(text, "  Ranked by {name} distance on {axes} axes.\n")
 }
