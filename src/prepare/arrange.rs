@@ -143,7 +143,7 @@ fn without_unobserved(network: Connectivity, rows_are: RowsAre) -> (Connectivity
 fn standing(network: &Connectivity, weights: WeightKind, any_missing: bool) -> Vec<Standing> {
     let (rows, columns) = network.weights().dim();
     let mut connected = vec![false; rows];
-    let (mut seen, mut possible) = (vec![0_usize; rows], vec![0_usize; rows]);
+    let (mut seen, mut possible) = (vec![0_usize; rows], vec![columns; rows]);
     for ((i, j), &w) in network.weights().indexed_iter() {
         if !network.is_data(i, j) {
             continue;
@@ -154,9 +154,6 @@ fn standing(network: &Connectivity, weights: WeightKind, any_missing: bool) -> V
             connected[parcel] |= link;
             seen[parcel] += 1;
         }
-    }
-    for entries in &mut possible {
-        *entries = columns;
     }
     for j in 0..columns {
         if let Some(parcel) = network.row_of_column(j) {
