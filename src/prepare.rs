@@ -1,22 +1,30 @@
 //! From files to two species ready for comparison: read, check, transform, embed.
 
+use std::collections::BTreeMap;
 use std::path::Path;
 
 use serde::Serialize;
 
 use crate::affinity::{self, Profiles};
-use crate::domain::{Connectivity, Landmarks, Pair, Parcels, Side, Transform, WeightKind};
+use crate::domain::{
+    Attributes, Connectivity, Geometry, Hemispheres, Landmarks, Pair, Parcels, Side, Transform,
+    WeightKind,
+};
 use crate::embed::{self, DiffusionTime, Embedding};
-use crate::input::{self, InputError, InputFile, Place, Problem, Source, SpeciesFile};
+use crate::input::{self, InputError, InputFile, ParcelFault, Place, Problem, Source, SpeciesFile};
+use crate::place::Candidates;
 use crate::settings::{Axes, Conduct, Request, Settings};
 use crate::species::Species;
 use crate::transform;
 use crate::warning::Warning;
 
+mod fold;
 mod parts;
 mod raw_facts;
+mod sides;
 mod suspicion;
 
+use fold::Folding;
 pub use parts::Parts;
 pub use raw_facts::{Filled, RawFacts, SumsToOne};
 
@@ -48,6 +56,12 @@ pub struct Inputs {
     /// Files of labels, where matrices have them.
     #[serde(skip_serializing_if = "none")]
     pub labels: Pair<Option<InputFile>>,
+    /// Tables of parcels, where there are any.
+    #[serde(skip_serializing_if = "none")]
+    pub parcels: Pair<Option<InputFile>>,
+    /// Files of distances, where there are any.
+    #[serde(skip_serializing_if = "none")]
+    pub distances: Pair<Option<InputFile>>,
 }
 
 fn none(files: &Pair<Option<InputFile>>) -> bool {
@@ -71,6 +85,10 @@ pub struct Study {
     pub raw: Pair<RawFacts>,
     /// What was read.
     pub inputs: Inputs,
+    /// Which parcels may be counterparts.
+    pub candidates: Candidates,
+    /// What was asked for, before defaults.
+    pub asked: Request,
     /// Every choice.
     pub settings: Settings,
     /// How the run behaves.
@@ -83,9 +101,13 @@ pub struct Study {
 struct Raw {
     file: InputFile,
     labels: Option<InputFile>,
+    table: Option<InputFile>,
+    distances: Option<InputFile>,
     warnings: Vec<Warning>,
     network: Connectivity,
     parcels: Parcels,
+    attributes: Vec<Attributes>,
+    geometry: Geometry,
     facts: RawFacts,
 }
 
@@ -95,11 +117,14 @@ struct Raw {
 /// [`InputError`] for the first fault found.
 pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
     let description = input::read_study_file(study)?;
-    let (settings, conduct) = asked.or(description.request.clone()).settle();
+    let asked = asked.or(description.request.clone());
+    let (settings, conduct) = asked.clone().settle();
     let raw = description
         .species
         .as_ref()
-        .try_map_at_once(conduct.threads, |_, described| read_species(described))?;
+        .try_map_at_once(conduct.threads, |_, described| {
+            read_species(described, settings.hemispheres)
+        })?;
     let mut warnings = [&raw.a.warnings[..], &raw.b.warnings[..]].concat();
 
     let table = Source::read(&description.landmarks)?;
@@ -110,6 +135,26 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
     let (landmarks, more) = input::read_landmarks(&table, parcels)?;
     warnings.extend(more);
     let most = most_axes(settings.axes, &landmarks, &table)?;
+    let candidates = match settings.hemispheres {
+        Hemispheres::Ignore => Candidates::everywhere(),
+        Hemispheres::Fold => {
+            if Side::BOTH.iter().all(|side| parcels[*side].folded() == 0) {
+                let place = Place::file(&description.file.path);
+                return Err(InputError::new(place, ParcelFault::NothingToFold.into()));
+            }
+            Candidates::everywhere()
+        }
+        Hemispheres::Match => {
+            let attributes = raw.as_ref().map(|raw| raw.attributes.as_slice());
+            sides::matched(parcels, attributes, &landmarks, &mut warnings).map_err(|fault| {
+                let file = match &fault {
+                    ParcelFault::LandmarkAcross { .. } => table.path(),
+                    _ => &description.file.path,
+                };
+                InputError::new(Place::file(file), fault.into())
+            })?
+        }
+    };
 
     let treatment = Pair::from_fn(|side| treatment(&description.species[side], &raw[side].network));
     let inputs = Inputs {
@@ -117,6 +162,8 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         landmarks: table.file,
         matrix: raw.as_ref().map(|raw| raw.file.clone()),
         labels: raw.as_ref().map(|raw| raw.labels.clone()),
+        parcels: raw.as_ref().map(|raw| raw.table.clone()),
+        distances: raw.as_ref().map(|raw| raw.distances.clone()),
     };
     let facts = raw.as_ref().map(|raw| raw.facts.clone());
     let species = raw.try_map_at_once(conduct.threads, |side, raw| {
@@ -179,14 +226,61 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         treatment,
         raw: facts,
         inputs,
+        candidates,
+        asked,
         settings,
         conduct,
         warnings,
     })
 }
 
-/// Reads and checks one matrix, and finds its parcels.
-fn read_species(described: &SpeciesFile) -> Result<Raw, InputError> {
+/// What is known of a species besides its connections, for the labels of its matrix.
+struct Known {
+    attributes: Vec<Attributes>,
+    geometry: Geometry,
+    table: Option<InputFile>,
+    distances: Option<InputFile>,
+}
+
+fn read_known(
+    described: &SpeciesFile,
+    labels: &[String],
+    warnings: &mut Vec<Warning>,
+) -> Result<Known, InputError> {
+    let table = match &described.parcels {
+        None => None,
+        Some(path) => {
+            let source = Source::read(path)?;
+            let table = input::read_parcels(&source, labels, &described.name)?;
+            warnings.extend(table.warnings);
+            Some((table.file, table.attributes))
+        }
+    };
+    let distances = match &described.distances {
+        None => None,
+        Some(path) => {
+            let own = described.labels.as_deref();
+            let read = input::read_distances(path, own, labels, &described.name)?;
+            warnings.extend(read.warnings);
+            Some((read.file, read.values))
+        }
+    };
+    let (table, attributes) = table.unzip();
+    let (file, distances) = distances.unzip();
+    let attributes: Vec<Attributes> =
+        attributes.unwrap_or_else(|| vec![Attributes::default(); labels.len()]);
+    let coordinates = attributes.iter().map(|a| a.coordinates).collect();
+    Ok(Known {
+        geometry: Geometry::new(coordinates, distances),
+        attributes,
+        table,
+        distances: file,
+    })
+}
+
+/// Reads and checks one matrix and what is said of its parcels, folds it where that is asked for, and
+/// finds the parcels that take part.
+fn read_species(described: &SpeciesFile, hemispheres: Hemispheres) -> Result<Raw, InputError> {
     let matrix = input::read_matrix_of(described)?;
     let mut network = matrix.network;
     let mut warnings = matrix.warnings;
@@ -195,12 +289,34 @@ fn read_species(described: &SpeciesFile) -> Result<Raw, InputError> {
     if described.weights == WeightKind::Correlations {
         symmetrise(&mut network);
     }
+    let mut labels = network.row_labels().to_vec();
+    let mut known = read_known(described, &labels, &mut warnings)?;
+    let mut copies = BTreeMap::new();
+    let folding = (hemispheres == Hemispheres::Fold)
+        .then(|| Folding::of(&labels, &known.attributes))
+        .flatten();
+    if let Some(folding) = folding {
+        network = folding.network(&network, described.weights);
+        let attributes = folding.attributes(&known.attributes);
+        known.geometry = folding.geometry(&known.geometry, &attributes);
+        known.attributes = attributes;
+        labels = folding.labels();
+        copies = folding.copies();
+        let alone = folding.without_copy();
+        if !alone.is_empty() {
+            warnings.push(Warning::NoCopy {
+                species: described.name.clone(),
+                parcels: alone,
+            });
+        }
+    }
+    suspicion::components(&network, described, &mut warnings);
     let connected = connected(&network, described.weights);
     let place = || Place::file(&described.matrix);
     if !connected.contains(&true) {
         return Err(InputError::new(place(), Problem::AllZero));
     }
-    let parcels = Parcels::new(&described.name, network.row_labels(), &connected);
+    let parcels = Parcels::new(&described.name, &labels, &connected).made_of(copies);
     if parcels.len() < FEWEST_PARCELS {
         return Err(InputError::new(
             place(),
@@ -218,7 +334,6 @@ fn read_species(described: &SpeciesFile) -> Result<Raw, InputError> {
     }
     let order: Vec<usize> = {
         let mut order: Vec<usize> = (0..connected.len()).filter(|&i| connected[i]).collect();
-        let labels = network.row_labels();
         order.sort_by(|&i, &j| labels[i].as_bytes().cmp(labels[j].as_bytes()));
         order
     };
@@ -226,6 +341,10 @@ fn read_species(described: &SpeciesFile) -> Result<Raw, InputError> {
     Ok(Raw {
         file: matrix.file,
         labels: matrix.labels,
+        table: known.table,
+        distances: known.distances,
+        attributes: order.iter().map(|&i| known.attributes[i].clone()).collect(),
+        geometry: known.geometry.select(&order),
         warnings,
         facts: RawFacts::of(&network, described.weights, filled),
         network,
@@ -325,6 +444,8 @@ fn embed_species(
     };
     Ok(Species {
         parcels: raw.parcels,
+        attributes: raw.attributes,
+        geometry: raw.geometry,
         network,
         embedding,
     })

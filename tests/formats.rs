@@ -24,6 +24,8 @@ fn species(matrix: &str) -> SpeciesFile {
         labels: None,
         variable: None,
         label_variable: None,
+        parcels: None,
+        distances: None,
         weights: WeightKind::Counts,
         transform: None,
         likeness: None,

@@ -1,5 +1,7 @@
 //! The parcels of one species that take part, and those that cannot.
 
+use std::collections::BTreeMap;
+
 /// One species' parcels. Those with connections stand in bytewise order of their labels, so that no
 /// result depends on the order of the input and ties go to the first.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -8,6 +10,7 @@ pub struct Parcels {
     labels: Vec<String>,
     as_listed: Vec<usize>,
     isolated: Vec<String>,
+    copies: BTreeMap<String, String>,
 }
 
 impl Parcels {
@@ -30,7 +33,27 @@ impl Parcels {
                 .filter(|&i| !connected[i])
                 .map(|i| listed[i].clone())
                 .collect(),
+            copies: BTreeMap::new(),
         }
+    }
+
+    /// The same parcels, of which some were made of copies: each copy's label and that of the parcel
+    /// it went into.
+    #[must_use]
+    pub fn made_of(self, copies: BTreeMap<String, String>) -> Self {
+        Parcels { copies, ..self }
+    }
+
+    /// The label of the parcel that a label stands for: that of a copy for the parcel it went into.
+    #[must_use]
+    pub fn resolve<'l>(&'l self, label: &'l str) -> &'l str {
+        self.copies.get(label).map_or(label, String::as_str)
+    }
+
+    /// How many parcels, isolated ones included, are made of a left and a right copy.
+    #[must_use]
+    pub fn folded(&self) -> usize {
+        self.copies.len() / 2
     }
 
     /// The species' name.
@@ -69,9 +92,10 @@ impl Parcels {
         &self.isolated
     }
 
-    /// Index of a parcel with connections.
+    /// Index of a parcel with connections, by its label or by that of a copy.
     #[must_use]
     pub fn find(&self, label: &str) -> Option<usize> {
+        let label = self.resolve(label);
         self.labels
             .binary_search_by(|known| known.as_bytes().cmp(label.as_bytes()))
             .ok()

@@ -83,7 +83,7 @@ struct Axes {
 }
 
 /// Checks labels, shape and entries, and brings the columns into the order of the rows.
-fn settle(
+pub(super) fn settle(
     mut grid: Grid,
     given: Option<&LabelFile>,
     weights: WeightKind,

@@ -25,6 +25,10 @@ pub struct SpeciesFile {
     pub variable: Option<String>,
     /// Array that holds the labels, in a file of several.
     pub label_variable: Option<String>,
+    /// What is known of its parcels besides.
+    pub parcels: Option<PathBuf>,
+    /// Distances between its parcels.
+    pub distances: Option<PathBuf>,
     /// What the weights measure.
     pub weights: WeightKind,
     /// Transform asked for.
@@ -61,6 +65,8 @@ const SPECIES_KEYS: &[&str] = &[
     "labels",
     "variable",
     "label-variable",
+    "parcels",
+    "distances",
 ];
 
 /// Reads and checks a study file.
@@ -152,7 +158,8 @@ fn species_file(table: &Table<'_>, folder: &Path) -> Result<SpeciesFile, InputEr
     if name.trim().is_empty() {
         return Err(table.bad_value("name", "more than blanks"));
     }
-    let labels = table.optional_text("labels")?;
+    let file = |key| Ok(table.optional_text(key)?.map(|path| folder.join(path)));
+    let labels = file("labels")?;
     let label_variable = table.optional_text("label-variable")?;
     if labels.is_some() && label_variable.is_some() {
         return Err(InputError::new(
@@ -162,9 +169,11 @@ fn species_file(table: &Table<'_>, folder: &Path) -> Result<SpeciesFile, InputEr
     }
     Ok(SpeciesFile {
         name,
-        labels: labels.map(|path| folder.join(path)),
+        labels,
         variable: table.optional_text("variable")?,
         label_variable,
+        parcels: file("parcels")?,
+        distances: file("distances")?,
         matrix: folder.join(table.text("matrix", "matrix = \"matrix.csv\"")?),
         weights,
         transform,

@@ -55,8 +55,15 @@ pub struct Wall {
 struct SpeciesCounts<'s> {
     name: &'s str,
     parcels: usize,
+    #[serde(skip_serializing_if = "is_zero")]
+    folded: usize,
     set_aside: &'s [String],
     eigenvalues: Vec<f64>,
+}
+
+/// Nothing is said of folding where nothing was folded.
+fn is_zero(n: &usize) -> bool {
+    *n == 0
 }
 
 /// Everything in `run.json`.
@@ -90,6 +97,7 @@ impl<'s> Record<'s> {
                 SpeciesCounts {
                     name: species.parcels.species(),
                     parcels: species.parcels.len(),
+                    folded: species.parcels.folded(),
                     set_aside: species.parcels.isolated(),
                     eigenvalues: species.embedding.eigenvalues.to_vec(),
                 }
