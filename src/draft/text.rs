@@ -144,14 +144,14 @@ fn species(lines: &mut Vec<String>, side: Side, species: &DraftSpecies) {
             lines.push(format!("parcels = {}", text(&table.file)));
         }
         None => {
-            lines.push(comment(&format!("A table of its parcels. {PARCEL_TABLE}")));
-            lines.push(format!("# parcels = \"parcels-{}.csv\"", side.letter()));
+            lines.push(comment(&format!(
+                "A table of its parcels may be added: parcels = \"FILE\". {PARCEL_TABLE}"
+            )));
         }
     }
     lines.push(comment(
-        "Distances between its parcels (geodesic, along tracts), a matrix of any format.",
+        "So may distances between them, a matrix of any format: distances = \"FILE\".",
     ));
-    lines.push(format!("# distances = \"distances-{}.csv\"", side.letter()));
 }
 
 fn settings(lines: &mut Vec<String>) {
