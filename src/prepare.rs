@@ -297,6 +297,10 @@ fn read_species(described: &SpeciesFile, hemispheres: Hemispheres) -> Result<Raw
         .flatten();
     if let Some(folding) = folding {
         network = folding.network(&network, described.weights);
+        if !network.weights().iter().all(|w| w.is_finite()) {
+            let place = Place::file(&described.matrix);
+            return Err(InputError::new(place, ParcelFault::FoldOverflows.into()));
+        }
         let attributes = folding.attributes(&known.attributes);
         known.geometry = folding.geometry(&known.geometry, &attributes);
         known.attributes = attributes;

@@ -507,6 +507,20 @@ fn folding_needs_copies() {
 }
 
 #[test]
+fn sums_beyond_the_range_of_numbers_are_refused() {
+    let labels: Vec<String> = (0..8)
+        .map(|i| format!("{}-{}", i / 2, ["L", "R"][i % 2]))
+        .collect();
+    let labels: Vec<&str> = labels.iter().map(String::as_str).collect();
+    let study = Study::new();
+    let huge = common::matrix(&labels, |_, _| "1.7e308".to_owned());
+    study.write("a.csv", common::csv(&huge));
+    study
+        .run(&["--hemispheres", "fold"])
+        .refused(&["a.csv", "too large", "divide all weights"]);
+}
+
+#[test]
 fn inspect_asks_what_two_hemispheres_mean() {
     let (_folder, file) = sided();
     let said = inspected(&file, &[]);

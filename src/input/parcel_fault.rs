@@ -92,6 +92,9 @@ pub enum ParcelFault {
         /// The species.
         side: Side,
     },
+    /// Weights whose sum over both sides no number can hold.
+    #[error("the weights of both sides are too large to be added up (beyond 1.8e308); divide all weights by one number")]
+    FoldOverflows,
     /// Brains to be folded that have no two sides.
     #[error("hemispheres = \"fold\" found no left and right copies of one area in either species; name copies alike but for the side (V1-L, V1-R), or give both the same long_name and their hemisphere in a table of parcels")]
     NothingToFold,

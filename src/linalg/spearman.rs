@@ -61,4 +61,14 @@ mod tests {
         assert_eq!(spearman(&x, &[1.0; 4]), None);
         assert_eq!(spearman(&x[..2], &x[..2]), None);
     }
+
+    /// Intelligence and hours of television of ten people: the usual worked example, -29/165 (from
+    /// memory; the sum of squared differences of ranks is 194).
+    #[test]
+    fn a_worked_example_comes_out() {
+        let iq = [86., 97., 99., 100., 101., 103., 106., 110., 112., 113.];
+        let hours = [2., 20., 28., 27., 50., 29., 7., 17., 6., 12.];
+        let rho = spearman(&iq, &hours).unwrap();
+        approx::assert_relative_eq!(rho, -29.0 / 165.0, epsilon = 1e-15);
+    }
 }

@@ -1,7 +1,7 @@
 //! Left and right copies of one area made one parcel, so that a brain of two hemispheres is compared
 //! like one of which one hemisphere was mapped.
 
-use std::collections::{BTreeMap, HashMap, HashSet};
+use std::collections::{BTreeMap, HashMap};
 
 use ndarray::Array2;
 
@@ -72,9 +72,9 @@ impl Folding {
     pub fn of(labels: &[String], attributes: &[Attributes]) -> Option<Folding> {
         let mut partner: Vec<Option<(usize, Hemisphere)>> = vec![None; labels.len()];
         let mut rests: HashMap<usize, String> = HashMap::new();
-        let mut pair = |key: Vec<(usize, Hemisphere, Option<String>)>| {
+        let mut pair = |alike: Vec<Reading>| {
             let of_side = |side| {
-                let mut members = key.iter().filter(|(_, s, _)| *s == side);
+                let mut members = alike.iter().filter(|(_, s, _)| *s == side);
                 members.next().filter(|_| members.next().is_none())
             };
             if let (Some((left, _, rest)), Some((right, ..))) =
@@ -97,8 +97,11 @@ impl Folding {
             return None;
         }
 
-        // The label without its side, unless another parcel has it.
-        let mut taken: HashSet<&str> = labels.iter().map(String::as_str).collect();
+        // The label without its side, unless another parcel has it or would get it too.
+        let mut wanted: HashMap<&str, usize> = HashMap::new();
+        for label in labels.iter().chain(rests.values()) {
+            *wanted.entry(label).or_default() += 1;
+        }
         let mut parcels = Vec::new();
         for (at, label) in labels.iter().enumerate() {
             let (left, right) = match partner[at] {
@@ -117,7 +120,7 @@ impl Folding {
                 continue;
             }
             let label = match rests.get(&left) {
-                Some(rest) if taken.insert(rest) => rest.clone(),
+                Some(rest) if wanted[rest.as_str()] == 1 => rest.clone(),
                 _ => labels[left].clone(),
             };
             parcels.push((label, Members::Copies { left, right }));
@@ -261,11 +264,14 @@ impl Folding {
     }
 }
 
+/// A parcel that may be one side of an area, the side, and what its label says without it.
+type Reading = (usize, Hemisphere, Option<String>);
+
 /// Labels by what they say without their side, in an order that does not depend on that of the file.
 fn by_label(
     labels: &[String],
     attributes: &[Attributes],
-) -> BTreeMap<(SideMark, String), Vec<(usize, Hemisphere, Option<String>)>> {
+) -> BTreeMap<(SideMark, String), Vec<Reading>> {
     let mut found: BTreeMap<_, Vec<_>> = BTreeMap::new();
     for (at, label) in labels.iter().enumerate() {
         for (mark, side, rest) in without_side(label) {
@@ -286,9 +292,7 @@ fn by_label(
 }
 
 /// Parcels of a known side by their long name without it, and their group.
-fn by_name(
-    attributes: &[Attributes],
-) -> BTreeMap<(String, Option<&str>), Vec<(usize, Hemisphere, Option<String>)>> {
+fn by_name(attributes: &[Attributes]) -> BTreeMap<(String, Option<&str>), Vec<Reading>> {
     let mut found: BTreeMap<_, Vec<_>> = BTreeMap::new();
     for (at, known) in attributes.iter().enumerate() {
         if let (Some(side), Some(name)) = (known.hemisphere, &known.long_name) {
@@ -334,19 +338,20 @@ impl Entries<'_> {
 
     /// `None` where nothing of a part that there is was observed.
     fn link(&self, from: Members, to: Members, kind: WeightKind) -> Option<f64> {
-        let amount = |w: f64| {
-            if kind == WeightKind::Log10 {
-                10.0_f64.powf(w)
-            } else {
-                w
-            }
+        let pairs = |same_side| {
+            from.pairs(to, same_side)
+                .filter_map(|(p, q)| self.get(p, q))
+        };
+        // Logarithms are taken relative to the largest, so that none overflows.
+        let all = || pairs(true).chain(pairs(false)).flatten();
+        let largest = all().reduce(f64::max).unwrap_or(0.0);
+        let amount = |w: f64| match kind {
+            WeightKind::Log10 => 10.0_f64.powf(w - largest),
+            _ => w,
         };
         let mut parts = Vec::new();
         for same_side in [true, false] {
-            let entries: Vec<Option<f64>> = from
-                .pairs(to, same_side)
-                .filter_map(|(p, q)| self.get(p, q))
-                .collect();
+            let entries: Vec<Option<f64>> = pairs(same_side).collect();
             let observed: Vec<f64> = entries.iter().flatten().map(|w| amount(*w)).collect();
             match mean(&observed) {
                 Some(mean) => parts.push(mean),
@@ -358,10 +363,9 @@ impl Entries<'_> {
             WeightKind::Ordinal => parts.into_iter().reduce(f64::max),
             _ => parts.into_iter().reduce(|ipsi, contra| ipsi + contra),
         }?;
-        Some(if kind == WeightKind::Log10 {
-            total.log10()
-        } else {
-            total
+        Some(match kind {
+            WeightKind::Log10 => largest + total.log10(),
+            _ => total,
         })
     }
 
@@ -526,5 +530,18 @@ mod tests {
         let all = labels(&["V1", "V1-L", "V1-R"]);
         let folding = Folding::of(&all, &vec![Attributes::default(); 3]).unwrap();
         assert_eq!(folding.labels(), ["V1", "V1-L"]);
+        let all = labels(&["lh-V1", "V1-L", "V1-R", "rh-V1"]);
+        let folding = Folding::of(&all, &vec![Attributes::default(); 4]).unwrap();
+        assert_eq!(folding.labels(), ["lh-V1", "V1-L"]);
+    }
+
+    #[test]
+    fn logarithms_beyond_the_range_of_numbers_are_added() {
+        let labels = labels(&["A-L", "A-R", "B-L", "B-R"]);
+        let folding = Folding::of(&labels, &vec![Attributes::default(); 4]).unwrap();
+        let weights = Array2::from_elem((4, 4), 400.0);
+        let network = Connectivity::new(labels.clone(), labels, weights, None).unwrap();
+        let folded = folding.network(&network, WeightKind::Log10);
+        approx::assert_relative_eq!(folded.weights()[(0, 1)], 400.0 + 2.0_f64.log10());
     }
 }
