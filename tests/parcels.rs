@@ -632,6 +632,12 @@ fn distances_are_checked_and_change_no_table() {
         "0 or more",
         "-3",
     ]);
+    let several = apart(steps);
+    let file = Path::new(env!("CARGO_MANIFEST_DIR")).join("tests/data/formats/several.npz");
+    several.write("d.csv", std::fs::read(file).unwrap());
+    several
+        .run(&[])
+        .refused(&["d.csv", "several arrays", "matrix of distances alone"]);
     let short = apart(steps);
     short.edit_table("d.csv", |rows| {
         rows.remove(3);

@@ -110,7 +110,13 @@ fn read_grid(
         label_variable: None,
         labels: labels.as_ref().map(|l| l.labels.as_slice()),
     };
-    let grid = formats::read(bytes, &wanted)?;
+    let grid = formats::read(bytes, &wanted).map_err(|error| match *error.problem {
+        // No key of the study file chooses here.
+        Problem::Format(Fault::SeveralArrays { names, .. }) => {
+            InputError::new(*error.place, ParcelFault::SeveralDistances { names }.into())
+        }
+        problem => InputError::new(*error.place, problem),
+    })?;
     if let Some(((i, j), &found)) = grid.values.indexed_iter().find(|(_, d)| **d < 0.0) {
         let name = |labels: &Option<Vec<super::grid::Label>>, at: usize| {
             let labels = labels.as_ref().or(grid.row_labels.as_ref());

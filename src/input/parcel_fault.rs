@@ -74,6 +74,12 @@ pub enum ParcelFault {
         /// The number.
         found: f64,
     },
+    /// Several arrays that could be the distances or their labels.
+    #[error("the file holds several arrays that could be meant: {}; save the matrix of distances alone, or with one list of labels", named(names))]
+    SeveralDistances {
+        /// Their names.
+        names: Vec<String>,
+    },
     /// Parcels without a distance.
     #[error("no distances for {} of the parcels of the matrix ({}); the file must name every parcel by the label it has there", parcels.len(), named(parcels))]
     DistancesLack {
