@@ -93,8 +93,17 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         .flat_map(|alignment| study.axes.iter().map(move |&axes| params(alignment, axes)))
         .map(Way)
         .collect();
-    let asked = Asked::draw(&study.landmarks, settings.seed);
-    let trials = holdout::run(&material, &ways, &open, &asked, settings.seed, watch)?;
+    let candidates = &study.candidates;
+    let asked = Asked::draw(&study.landmarks, candidates, settings.seed);
+    let trials = holdout::run(
+        &material,
+        &ways,
+        &open,
+        candidates,
+        &asked,
+        settings.seed,
+        watch,
+    )?;
     let evidence = match settings.evidence {
         EvidenceChoice::Auto => None,
         EvidenceChoice::Procrustes => Some(Alignment::Procrustes),
@@ -181,9 +190,13 @@ impl JointRanking {
             .expect("a checked study has landmarks enough");
         let mut dissimilarities = Array2::zeros((open.a.len(), open.b.len()));
         fitted.dissimilarities(&open.a, &open.b, &mut dissimilarities);
+        study
+            .candidates
+            .close(&open.a, &open.b, &mut dissimilarities);
         let best = |row: ArrayView1<'_, f64>| {
             let mut order = place::order(row);
-            order.truncate(study.settings.top.of(order.len()));
+            let candidates = row.iter().filter(|d| **d < f64::INFINITY).count();
+            order.truncate(study.settings.top.of(candidates));
             order
         };
         JointRanking {

@@ -27,6 +27,8 @@ fn species(matrix: &str) -> SpeciesFile {
         tracer: None,
         variable: None,
         label_variable: None,
+        parcels: None,
+        distances: None,
         weights: WeightKind::Counts,
         transform: None,
         likeness: None,

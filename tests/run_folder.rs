@@ -745,6 +745,7 @@ fn the_record_says_what_was_done() {
             "evidence": "auto",
             "ridge": 0.25,
             "resampling": "bayesian",
+            "hemispheres": "ignore",
             "top": "all",
         })
     );

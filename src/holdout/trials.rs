@@ -8,7 +8,7 @@ use crate::align::{Alignment, Params};
 use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{Landmark, Landmarks, Pair, Seed, Side};
 use crate::evidence::{Evidence, Fitted, JointDistance, Material};
-use crate::place;
+use crate::place::{self, Candidates};
 use crate::watch::{Interrupted, Watch};
 
 /// One way of ranking that left-out landmarks are to judge.
@@ -42,9 +42,12 @@ impl Way {
 pub struct Asked(Vec<Pair<usize>>);
 
 impl Asked {
-    /// Draws the members.
+    /// Draws the members, such that those of one landmark may be counterparts.
+    ///
+    /// # Panics
+    /// If a landmark has no such members, which a checked study rules out.
     #[must_use]
-    pub fn draw(landmarks: &Landmarks, seed: Seed) -> Asked {
+    pub fn draw(landmarks: &Landmarks, candidates: &Candidates, seed: Seed) -> Asked {
         Asked(
             landmarks
                 .list()
@@ -52,10 +55,15 @@ impl Asked {
                 .enumerate()
                 .map(|(at, landmark)| {
                     let mut chance = Stream::new(seed, Purpose::AskedMember, at as u64);
-                    Pair::from_fn(|side| {
-                        let members = &landmark.parcels[side];
+                    let Pair { a, b } = &landmark.parcels;
+                    let mut one_of = |members: &[usize], admissible: &dyn Fn(usize) -> bool| {
+                        let members: Vec<usize> =
+                            members.iter().copied().filter(|&m| admissible(m)).collect();
                         members[chance.gen_range(0..members.len())]
-                    })
+                    };
+                    let a = one_of(a, &|a| b.iter().any(|&b| candidates.admit(Side::A, a, b)));
+                    let b = one_of(b, &|b| candidates.admit(Side::A, a, b));
+                    Pair { a, b }
                 })
                 .collect(),
         )
@@ -73,7 +81,7 @@ impl Asked {
 pub struct Placed {
     /// Rank of the best member opposite, 1 being right.
     pub rank: usize,
-    /// Candidates: the other species' open parcels and the landmark's own.
+    /// Candidates: the other species' open parcels and the landmark's own, as far as admissible.
     pub candidates: usize,
 }
 
@@ -149,6 +157,7 @@ pub fn run(
     material: &Material<'_>,
     ways: &[Way],
     open: &Pair<Vec<usize>>,
+    candidates: &Candidates,
     asked: &Asked,
     seed: Seed,
     watch: &dyn Watch,
@@ -181,7 +190,10 @@ pub fn run(
                             .iter()
                             .enumerate()
                             .filter(|(_, l)| l.block == i || l.block == j)
-                            .map(|(at, l)| (at, place_one(&*fitted, l, asked.of(at), open)))
+                            .map(|(at, l)| {
+                                let asked = asked.of(at);
+                                (at, place_one(&*fitted, l, asked, open, candidates))
+                            })
                             .collect()
                     })
                     .collect()
@@ -232,10 +244,12 @@ fn place_one(
     landmark: &Landmark,
     asked: Pair<usize>,
     open: &Pair<Vec<usize>>,
+    admissible: &Candidates,
 ) -> Pair<Placed> {
     Pair::from_fn(|from| {
         let to = from.opposite();
         let mut candidates = [&open[to][..], &landmark.parcels[to][..]].concat();
+        candidates.retain(|&candidate| admissible.admit(from, asked[from], candidate));
         candidates.sort_unstable();
         let question = [asked[from]];
         let dissimilarities: Vec<f64> = match from {
@@ -256,7 +270,7 @@ fn place_one(
             .filter(|(_, candidate)| landmark.parcels[to].contains(candidate))
             .map(|(at, _)| place::rank(&dissimilarities, at))
             .min()
-            .expect("a landmark has at least one parcel on each side");
+            .expect("the members asked for may be counterparts");
         Placed {
             rank,
             candidates: candidates.len(),

@@ -146,6 +146,7 @@ fn one(
         .expect("every draw has two landmarks or more");
     let open = &ranking.open;
     fitted.dissimilarities(&open.a, &open.b, dissimilarities);
+    study.candidates.close(&open.a, &open.b, dissimilarities);
     let nearest = place::nearest(dissimilarities);
     for side in Side::BOTH {
         for (parcel, first) in nearest[side].iter().enumerate() {

@@ -6,7 +6,7 @@ use thiserror::Error;
 
 use super::{Axes, Conduct, EvidenceChoice, Settings, Top};
 use crate::bootstrap::Resampling;
-use crate::domain::{Choice, Seed};
+use crate::domain::{Choice, Hemispheres, Seed};
 use crate::embed;
 
 /// A setting that cannot be used.
@@ -104,6 +104,8 @@ request! {
     ridge: f64 = "ridge", |key, text| number(key, text, 0.0..=1e6, "a number of 0 or more");
     /// How landmark blocks are drawn.
     resampling: Resampling = "resampling", choice;
+    /// What hemispheres mean; match and fold need to know them.
+    hemispheres: Hemispheres = "hemispheres", choice;
     /// Counterparts listed for each parcel, or "all".
     top: Top = "top", |key, text| match text {
         "all" => Ok(Top::All),
@@ -168,6 +170,7 @@ impl Request {
             evidence: self.evidence.unwrap_or(EvidenceChoice::Auto),
             ridge: self.ridge.unwrap_or(RIDGE),
             resampling: self.resampling.unwrap_or(Resampling::Bayesian),
+            hemispheres: self.hemispheres.unwrap_or(Hemispheres::Ignore),
             top: self.top.unwrap_or(Top::Number(TOP)),
         };
         let conduct = Conduct {
@@ -254,6 +257,7 @@ mod tests {
             ("diffusion-time", "-1"),
             ("ridge", "NaN"),
             ("evidence", "guess"),
+            ("hemispheres", "mirror"),
             ("top", "0"),
             ("quiet", "yes"),
         ] {
