@@ -7,6 +7,6 @@ mod simplex;
 mod structure;
 
 pub use gromov::{Coupling, Fused, Marginals};
-pub use masses::{Masses, Share, UNIT};
+pub use masses::{Mass, Masses, UNIT};
 pub use simplex::{Flow, Transportation};
 pub use structure::{Structure, Structures};

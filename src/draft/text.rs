@@ -6,6 +6,7 @@ use crate::bootstrap::Resampling;
 use crate::domain::{Choice, Side, Transform, WeightKind};
 use crate::embed;
 use crate::settings::{EvidenceChoice, Request};
+use crate::transport::Mass;
 
 /// How a landmark table must look.
 const LANDMARK_TABLE: &str = "\
@@ -145,6 +146,7 @@ fn settings(lines: &mut Vec<String>) {
         match *key {
             "embedding" => choices::<embed::Method>(lines, |_| true),
             "evidence" => choices::<EvidenceChoice>(lines, |_| true),
+            "mass" => choices::<Mass>(lines, |_| true),
             "resampling" => choices::<Resampling>(lines, |_| true),
             _ => {}
         }

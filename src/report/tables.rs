@@ -2,6 +2,7 @@
 
 use crate::align::Alignment;
 use crate::domain::{Landmarks, Pair, Side};
+use crate::evidence::Kind;
 use crate::locate::Located;
 use crate::prepare::Study;
 
@@ -92,6 +93,8 @@ fn counterparts(study: &Study, located: &Located) -> Vec<u8> {
         "distance",
         "support",
         "mutual",
+        "kinds_agreeing",
+        "chance",
     ]);
     for side in Side::BOTH {
         let (own, other) = (
@@ -100,6 +103,7 @@ fn counterparts(study: &Study, located: &Located) -> Vec<u8> {
         );
         for placement in &located.placements[side] {
             for found in &placement.counterparts {
+                let kinds: Vec<String> = found.kinds_agreeing.iter().map(Kind::to_string).collect();
                 table.row([
                     own.species(),
                     &own.labels()[placement.parcel],
@@ -111,6 +115,8 @@ fn counterparts(study: &Study, located: &Located) -> Vec<u8> {
                     &found.distance.to_string(),
                     &found.support.to_string(),
                     &found.mutual.to_string(),
+                    &kinds.join(PARCEL_SEPARATOR),
+                    &found.chance.map_or_else(String::new, |x| x.to_string()),
                 ]);
             }
         }
@@ -167,7 +173,7 @@ fn landmarks(study: &Study, located: &Located) -> Vec<u8> {
             &found.distance.to_string(),
             &found.chosen.alignment.to_string(),
             &found.chosen.axes.to_string(),
-            &found.contradicted.to_string(),
+            &found.contradicted.is_some().to_string(),
         ]);
     }
     table.bytes()

@@ -1,13 +1,23 @@
 //! Masses in whole units, so that flows between them are exact.
 
-/// Units that every set of masses sums to.
+use crate::domain::choices;
+
+choices! {
+    /// What mass parcels have.
+    pub enum Mass {
+        /// The same for every parcel of a species.
+        Uniform = "uniform",
+        /// In proportion to the parcel's area.
+        Area = "area",
+        /// The same for every parcel that is asked; a candidate attracts as much as suits.
+        Free = "free",
+    }
+}
+
+/// Units that masses in proportion to given numbers sum to.
 pub const UNIT: i64 = 1 << 32;
 
-/// A share of the whole mass.
-pub type Share = f64;
-
-/// Masses of the two sides in whole units; both sides sum to [`UNIT`] times the least whole number
-/// that lets equal masses be equal.
+/// Masses of the two sides in whole units. Both sides have the same sum.
 #[derive(Debug, Clone, PartialEq, Eq)]
 pub struct Masses {
     sources: Vec<i64>,
@@ -58,7 +68,7 @@ impl Masses {
 
     /// Units as a share of the whole.
     #[must_use]
-    pub fn share(&self, units: i64) -> Share {
+    pub fn share(&self, units: i64) -> f64 {
         units as f64 / self.total as f64
     }
 }
