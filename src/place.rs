@@ -46,6 +46,34 @@ pub fn rank(dissimilarities: &[f64], candidate: usize) -> usize {
     1 + count_below(before, own).1 + count_below(after, own).0
 }
 
+/// For every pair the mean, over both directions, of ln(rank) / ln(candidates): 0 where each is the
+/// other's first, 1 where each is the other's last. Ties share no rank: the first label is ahead.
+#[must_use]
+pub fn log_ranks(dissimilarities: &Array2<f64>) -> Array2<f64> {
+    let (rows, columns) = dissimilarities.dim();
+    let logs = |candidates: usize| -> Vec<f64> {
+        let scale = if candidates > 1 {
+            0.5 / (candidates as f64).ln()
+        } else {
+            0.0
+        };
+        (1..=candidates).map(|r| (r as f64).ln() * scale).collect()
+    };
+    let (of_row, of_column) = (logs(columns), logs(rows));
+    let mut all = Array2::zeros((rows, columns));
+    for (row, mut out) in dissimilarities.rows().into_iter().zip(all.rows_mut()) {
+        for (place, candidate) in order(row).into_iter().enumerate() {
+            out[candidate] = of_row[place];
+        }
+    }
+    for (column, mut out) in dissimilarities.columns().into_iter().zip(all.columns_mut()) {
+        for (place, candidate) in order(column).into_iter().enumerate() {
+            out[candidate] += of_column[place];
+        }
+    }
+    all
+}
+
 /// The best candidate of every row (a's parcels) and of every column (b's parcels); `None` where
 /// there is no candidate. What is infinitely unlike is none (see [`Candidates::close`]).
 ///
@@ -80,6 +108,17 @@ pub fn nearest(dissimilarities: &Array2<f64>) -> Pair<Vec<Option<usize>>> {
 mod tests {
     use super::*;
     use ndarray::array;
+
+    #[test]
+    fn log_ranks_are_the_mean_of_both_directions() {
+        let d = array![[1.0, 2.0, 3.0], [2.0, 9.0, 1.0]];
+        let found = log_ranks(&d);
+        let log = |rank: f64, of: f64| rank.ln() / of.ln();
+        assert_eq!(found[(0, 0)], 0.0);
+        assert!((found[(1, 1)] - (log(3.0, 3.0) + log(2.0, 2.0)) / 2.0).abs() < 1e-15);
+        assert!((found[(0, 2)] - (log(3.0, 3.0) + log(2.0, 2.0)) / 2.0).abs() < 1e-15);
+        assert!((found[(1, 0)] - (log(2.0, 3.0) + log(2.0, 2.0)) / 2.0).abs() < 1e-15);
+    }
 
     #[test]
     fn ties_go_to_the_first_label() {

@@ -6,16 +6,19 @@ use std::path::Path;
 use serde::Serialize;
 
 use crate::affinity::{self, Profiles};
+use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{
     Attributes, Connectivity, Geometry, Hemispheres, Landmarks, Pair, Parcels, RowsAre, Side,
     Standing, Tracer, Transform, WeightKind,
 };
 use crate::embed::{self, DiffusionTime, Embedding};
+use crate::evidence::{Evidence, Fingerprint, Material, Transport};
 use crate::input::{self, InputError, InputFile, ParcelFault, Place, Problem, Source, SpeciesFile};
 use crate::place::Candidates;
-use crate::settings::{Axes, Conduct, Request, Settings};
+use crate::settings::{Axes, Conduct, EvidenceChoice, Request, Settings};
 use crate::species::Species;
 use crate::transform;
+use crate::transport::Mass;
 use crate::warning::Warning;
 
 mod arrange;
@@ -196,6 +199,8 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
             return Err(InputError::new(place, Problem::NoAxes { side }));
         }
     }
+    check_evidence(&species, &landmarks, &settings)
+        .map_err(|problem| InputError::new(Place::file(&inputs.study.path), problem))?;
     let available = Side::BOTH
         .into_iter()
         .map(|side| species[side].embedding.axes())
@@ -251,6 +256,43 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         settings,
         conduct,
         warnings,
+    })
+}
+
+/// Whether evidence that was asked for by name has what it needs. In a mixture a kind that lacks it
+/// just takes no part.
+fn check_evidence(
+    species: &Pair<Species>,
+    landmarks: &Landmarks,
+    settings: &Settings,
+) -> Result<(), Problem> {
+    let carries_mass = matches!(
+        settings.evidence,
+        EvidenceChoice::Mixture | EvidenceChoice::Transport
+    );
+    if carries_mass && settings.mass == Mass::Area {
+        if let Some(side) = Side::BOTH
+            .into_iter()
+            .find(|side| species[*side].areas.is_none())
+        {
+            return Err(Problem::NoAreas { side });
+        }
+    }
+    let material = Material::new(species.as_ref(), landmarks);
+    let found = match settings.evidence {
+        EvidenceChoice::Fingerprint => {
+            let weights = material.weights(|_| 1.0);
+            let mut chance = Stream::new(settings.seed, Purpose::Evidence, u64::MAX);
+            Fingerprint
+                .fit(&material, &weights, &mut chance)
+                .map(|_| ())
+        }
+        EvidenceChoice::Transport => Transport::size_allows(material.sizes()),
+        _ => Ok(()),
+    };
+    found.map_err(|unavailable| Problem::EvidenceUnavailable {
+        kind: unavailable.kind,
+        why: unavailable.why,
     })
 }
 
@@ -471,11 +513,14 @@ fn embed_species(
             })?
         }
     };
+    let areas = raw.attributes.iter().map(|a| a.extent?.area()).collect();
     Ok(Species {
+        areas,
         parcels: raw.parcels,
         attributes: raw.attributes,
         geometry: raw.geometry,
         network,
+        profiles: treatment.affinity,
         embedding,
     })
 }

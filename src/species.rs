@@ -1,5 +1,6 @@
 //! One species ready for comparison.
 
+use crate::affinity;
 use crate::domain::{Attributes, Connectivity, Geometry, Parcels};
 use crate::embed::Embedding;
 
@@ -15,6 +16,10 @@ pub struct Species {
     pub geometry: Geometry,
     /// Their connectivity, transformed.
     pub network: Connectivity,
+    /// How their affinities are made from it.
+    pub profiles: affinity::Params,
     /// Their coordinates.
     pub embedding: Embedding,
+    /// Their areas, all positive, where these are known.
+    pub areas: Option<Vec<f64>>,
 }

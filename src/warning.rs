@@ -231,6 +231,13 @@ pub enum Warning {
         /// Of how many.
         of: usize,
     },
+    /// A kind of evidence takes no part.
+    EvidenceUnavailable {
+        /// The kind.
+        kind: String,
+        /// The reason.
+        why: String,
+    },
     /// The embedding yields fewer axes than could be tried.
     FewAxes {
         /// The species.
@@ -442,7 +449,7 @@ impl fmt::Display for Warning {
                 from_b,
             } => write!(
                 f,
-                "landmark {landmark} is contradicted by the others: left out, its counterpart ranks {} of {} and {} of {}; check it, or run again without it",
+                "landmark {landmark} is contradicted by the others: left out, its counterpart ranks {} of {} and {} of {} in the joint space; check it, or run again without it",
                 from_a.0, from_a.1, from_b.0, from_b.1
             ),
             Warning::LeftOutUnderdetermined { axes, blocks } => write!(
@@ -460,6 +467,10 @@ impl fmt::Display for Warning {
             Warning::DegenerateReplicates { replicates, of } => write!(
                 f,
                 "{replicates} of {of} replicates drew fewer distinct landmark blocks than axes + 1; use --resampling bayesian"
+            ),
+            Warning::EvidenceUnavailable { kind, why } => write!(
+                f,
+                "evidence {kind} takes no part: {why}; the other kinds rank without it"
             ),
             Warning::FewAxes { species, axes } => write!(
                 f,

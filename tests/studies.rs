@@ -312,7 +312,7 @@ fn the_demo_gives_the_planted_answer() {
         .list()
         .iter()
         .zip(&located.left_out)
-        .filter(|(_, found)| found.contradicted)
+        .filter(|(_, found)| found.contradicted.is_some())
         .map(|(landmark, _)| landmark.name.as_str())
         .collect();
     assert_eq!(

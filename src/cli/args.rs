@@ -111,10 +111,23 @@ struct SettingOptions {
     #[arg(long, value_name = "T", value_parser = checked("diffusion-time"))]
     diffusion_time: Option<String>,
 
-    /// What ranks counterparts: distance in one of the joint spaces, or auto: canonical, unless
-    /// left-out landmarks say that procrustes is clearly better [default: auto]
-    #[arg(long, value_name = "auto|procrustes|canonical", value_parser = checked("evidence"))]
+    /// What ranks counterparts: one kind of evidence, or all of them weighed by left-out landmarks
+    /// [default: mixture]
+    #[arg(
+        long,
+        value_name = "mixture|procrustes|canonical|fingerprint|grown|transport",
+        value_parser = checked("evidence")
+    )]
     evidence: Option<String>,
+
+    /// Mass of parcels in transport: the same for all, in proportion to areas, or free on the side
+    /// of the candidates [default: uniform]
+    #[arg(long, value_name = "uniform|area|free", value_parser = checked("mass"))]
+    mass: Option<String>,
+
+    /// Replicates of transport to average; large species get fewer, down to 24 [default: 120]
+    #[arg(long, value_name = "N", value_parser = checked("transport-replicates"))]
+    transport_replicates: Option<String>,
 
     /// Ridge of the canonical correlation in units of the landmarks' mean variance; 0 is classical
     /// [default: 0.4]
@@ -182,6 +195,8 @@ impl SettingOptions {
             ("density-exponent", &given.density_exponent),
             ("diffusion-time", &given.diffusion_time),
             ("evidence", &given.evidence),
+            ("mass", &given.mass),
+            ("transport-replicates", &given.transport_replicates),
             ("ridge", &given.ridge),
             ("resampling", &given.resampling),
             ("hemispheres", &given.hemispheres),

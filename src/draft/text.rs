@@ -6,6 +6,7 @@ use crate::bootstrap::Resampling;
 use crate::domain::{Choice, Hemispheres, Side, Transform, WeightKind};
 use crate::embed;
 use crate::settings::{EvidenceChoice, Request};
+use crate::transport::Mass;
 
 /// How a landmark table must look.
 const LANDMARK_TABLE: &str = "\
@@ -166,6 +167,7 @@ fn settings(lines: &mut Vec<String>) {
         match *key {
             "embedding" => choices::<embed::Method>(lines, |_| true),
             "evidence" => choices::<EvidenceChoice>(lines, |_| true),
+            "mass" => choices::<Mass>(lines, |_| true),
             "resampling" => choices::<Resampling>(lines, |_| true),
             "hemispheres" => choices::<Hemispheres>(lines, |_| true),
             _ => {}

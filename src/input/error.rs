@@ -456,6 +456,20 @@ pub enum Problem {
         /// Axes it has.
         available: usize,
     },
+    /// Evidence that was asked for by name and has nothing to go by.
+    #[error("evidence {kind} was asked for alone, but is unavailable: {why}; ask for evidence = \"mixture\", which does without it")]
+    EvidenceUnavailable {
+        /// The kind.
+        kind: String,
+        /// The reason.
+        why: String,
+    },
+    /// Mass by area without areas.
+    #[error("mass = \"area\" needs the area of every parcel of both species, but those of species {} are not known; ask for mass = \"uniform\" or \"free\"", side.letter())]
+    NoAreas {
+        /// A species without areas.
+        side: Side,
+    },
     /// The multi-scale diffusion time on a disconnected affinity.
     #[error("diffusion-time 0 (all scales) needs a connected affinity, but that of species {} falls apart; set diffusion-time to 1 or more", side.letter())]
     Disconnected {

@@ -4,7 +4,7 @@ use serde::Serialize;
 
 use crate::domain::{Pair, Side};
 use crate::holdout::{Choice, Curve};
-use crate::locate::Located;
+use crate::locate::{Located, Rests};
 use crate::prepare::{Inputs, Study, Treatment};
 use crate::settings::Settings;
 use crate::warning::Warning;
@@ -78,6 +78,7 @@ pub struct Record<'s> {
     landmarks: usize,
     landmark_blocks: usize,
     choice: Choice,
+    evidence: &'s Rests,
     left_out_error: &'s [Curve],
     warnings: Vec<&'s Warning>,
     files: Vec<&'static str>,
@@ -107,6 +108,7 @@ impl<'s> Record<'s> {
             landmarks: study.landmarks.len(),
             landmark_blocks: study.landmarks.blocks(),
             choice: located.choice,
+            evidence: &located.evidence,
             left_out_error: &located.curves,
             warnings: study.warnings.iter().chain(&located.warnings).collect(),
             files: super::TABLES.to_vec(),

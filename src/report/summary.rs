@@ -2,8 +2,10 @@
 
 use std::fmt::{Result, Write};
 
+use crate::align::Alignment;
 use crate::domain::{Hemispheres, Pair, Side};
-use crate::holdout::Placed;
+use crate::evidence::Kind;
+use crate::holdout::{Member, Placed};
 use crate::locate::{Counterpart, Located, Placement};
 use crate::prepare::Study;
 
@@ -105,7 +107,7 @@ fn trust(text: &mut String, study: &Study, located: &Located) -> Result {
         .list()
         .iter()
         .zip(&located.left_out)
-        .filter(|(_, found)| found.contradicted)
+        .filter(|(_, found)| found.contradicted.is_some())
         .map(|(landmark, _)| landmark.name.as_str())
         .collect();
     if !contradicted.is_empty() {
@@ -115,10 +117,43 @@ fn trust(text: &mut String, study: &Study, located: &Located) -> Result {
             contradicted.join(", ")
         )?;
     }
-    let chosen = located.choice.evidence;
-    let name = chosen.in_words();
-    let axes = located.choice.axes[chosen];
-    writeln!(text, "  Ranked by {name} distance on {axes} axes.\n")
+    ranked_by(text, located)
+}
+
+/// What carried the ranking.
+fn ranked_by(text: &mut String, located: &Located) -> Result {
+    let rests = &located.evidence;
+    let in_words = |kind: Kind| match kind {
+        Kind::Procrustes => joint(located, Alignment::Procrustes),
+        Kind::Canonical => joint(located, Alignment::Canonical),
+        Kind::Fingerprint => "landmark fingerprints".to_owned(),
+        Kind::Grown => "canonical distance with grown anchors".to_owned(),
+        Kind::Transport => format!(
+            "transport averaged over {} replicates",
+            rests.transport_replicates
+        ),
+    };
+    if let [only] = &rests.kinds[..] {
+        return writeln!(text, "  Ranked by {}.\n", in_words(only.kind));
+    }
+    let mut kinds: Vec<&Member> = rests.kinds.iter().collect();
+    kinds.sort_by(|x, y| y.weight.total_cmp(&x.weight));
+    let named: Vec<String> = kinds
+        .iter()
+        .map(|member| format!("{} {:.2}", member.kind, member.weight))
+        .collect();
+    writeln!(
+        text,
+        "  Ranked by a mixture, weighed by left-out landmarks: {};\n  \
+         its support and rank intervals come from {} replicates.\n",
+        named.join(", "),
+        rests.ranking_replicates
+    )
+}
+
+fn joint(located: &Located, alignment: Alignment) -> String {
+    let axes = located.choice.axes[alignment];
+    format!("{} distance on {axes} axes", alignment.in_words())
 }
 
 /// The strongest and the weakest correspondences of a's parcels.

@@ -2,6 +2,7 @@
 
 use crate::align::Alignment;
 use crate::domain::{Attributes, Extent, Landmarks, Pair, Side};
+use crate::evidence::Kind;
 use crate::locate::Located;
 use crate::prepare::Study;
 
@@ -116,6 +117,8 @@ fn counterparts(study: &Study, located: &Located) -> Vec<u8> {
         "distance",
         "support",
         "mutual",
+        "kinds_agreeing",
+        "chance",
     ]
     .map(str::to_owned)
     .into();
@@ -128,6 +131,7 @@ fn counterparts(study: &Study, located: &Located) -> Vec<u8> {
         let [own, other] = species.map(|s| &s.parcels);
         for placement in &located.placements[side] {
             for found in &placement.counterparts {
+                let kinds: Vec<String> = found.kinds_agreeing.iter().map(Kind::to_string).collect();
                 let mut row = vec![
                     own.species().to_owned(),
                     own.labels()[placement.parcel].clone(),
@@ -139,6 +143,8 @@ fn counterparts(study: &Study, located: &Located) -> Vec<u8> {
                     found.distance.to_string(),
                     found.support.to_string(),
                     found.mutual.to_string(),
+                    kinds.join(PARCEL_SEPARATOR),
+                    found.chance.map_or_else(String::new, |x| x.to_string()),
                 ];
                 for (species, parcel) in species.into_iter().zip([placement.parcel, found.parcel]) {
                     row.extend(attributes(&species.attributes[parcel]));
@@ -199,7 +205,7 @@ fn landmarks(study: &Study, located: &Located) -> Vec<u8> {
             &found.distance.to_string(),
             &found.chosen.alignment.to_string(),
             &found.chosen.axes.to_string(),
-            &found.contradicted.to_string(),
+            &found.contradicted.is_some().to_string(),
         ]);
     }
     table.bytes()
