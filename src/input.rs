@@ -15,6 +15,7 @@ mod recognise;
 mod sides;
 mod source;
 mod study_file;
+mod subjects;
 
 pub use distances::{read as read_distances, Distances};
 pub use error::{InputError, Place, Problem};
@@ -28,3 +29,4 @@ pub use recognise::{recognise, LandmarkLooks, Looks, MatrixLooks, ParcelLooks};
 pub use sides::{differ_only_by_side, without_side, SideMark};
 pub use source::{InputFile, Source};
 pub use study_file::{read as read_study_file, SpeciesFile, StudyFile};
+pub use subjects::{read as read_subjects, Subject, SubjectFiles};

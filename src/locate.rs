@@ -7,7 +7,7 @@ mod ranking;
 mod replicates;
 mod span;
 
-pub use axes::{AxisEnds, Space};
+pub use axes::{AxisEnds, Space, StandardErrors, SubjectErrors};
 pub use left_out::LeftOut;
 pub use replicates::Tally;
 pub use span::beyond_landmarks;
@@ -61,6 +61,8 @@ pub struct Rests {
     pub transport_replicates: usize,
     /// Replicates that support and rank intervals come from.
     pub ranking_replicates: usize,
+    /// Replicates that drew subjects again; `None` where no subjects were given.
+    pub subject_replicates: Option<usize>,
 }
 
 /// A parcel that is no landmark, and its candidates, best first.
@@ -200,7 +202,6 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
     } else {
         Ranker::One(ways[way])
     };
-    let ranking_replicates = ranker.replicates(settings.replicates);
     let ranking = Ranking::new(&material, ranker, &open, study);
     let tally = replicates::run(study, &material, &spaces, &ranking, watch)?;
     for alignment in Alignment::BOTH {
@@ -242,6 +243,12 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             of: settings.replicates,
         });
     }
+    if tally.unusable > 0 {
+        warnings.push(Warning::SubjectsNotEmbedded {
+            replicates: tally.unusable,
+            of: settings.subject_replicates,
+        });
+    }
     Ok(Located {
         curves: Alignment::BOTH
             .into_iter()
@@ -253,7 +260,8 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             kinds: members,
             unavailable: unavailable.iter().map(ToString::to_string).collect(),
             transport_replicates,
-            ranking_replicates,
+            ranking_replicates: tally.ranking,
+            subject_replicates: tally.drawn.then_some(tally.drawn_again),
         },
         spaces,
         left_out,

@@ -72,6 +72,29 @@ pub enum Warning {
         /// Whether they were observed, so that they have no connection; else too little of them was.
         observed: bool,
     },
+    /// Individuals that cannot be used.
+    SubjectsSetAside {
+        /// The species.
+        species: String,
+        /// Their names, and why.
+        subjects: Vec<(String, String)>,
+        /// Individuals that are left.
+        kept: usize,
+    },
+    /// A group matrix that is not much like the mean of its individuals.
+    MatrixIsNotMean {
+        /// The species.
+        species: String,
+        /// Their correlation over all entries.
+        correlation: f64,
+    },
+    /// Draws of individuals that could not be embedded.
+    SubjectsNotEmbedded {
+        /// How many.
+        replicates: usize,
+        /// Of how many.
+        of: usize,
+    },
     /// Landmark parcels that cannot be placed, so that nothing can be anchored to them.
     LandmarksReduced {
         /// The parcels, in words.
@@ -307,6 +330,32 @@ impl fmt::Display for Warning {
                     "too little observed to compare them with others"
                 },
                 listed(parcels)
+            ),
+            Warning::SubjectsSetAside {
+                species,
+                subjects,
+                kept,
+            } => {
+                let named: Vec<String> = subjects
+                    .iter()
+                    .map(|(name, why)| format!("{name} ({why})"))
+                    .collect();
+                write!(
+                    f,
+                    "{species}: subjects set aside: {}; {kept} are left",
+                    listed(&named)
+                )
+            }
+            Warning::MatrixIsNotMean {
+                species,
+                correlation,
+            } => write!(
+                f,
+                "{species}: the matrix correlates with the mean of the subjects by only {correlation:.2}; replicates average subjects, so intervals may not surround what the matrix shows: check that both were processed alike, or leave out the matrix"
+            ),
+            Warning::SubjectsNotEmbedded { replicates, of } => write!(
+                f,
+                "{replicates} of {of} draws of subjects could not be used: too few landmarks kept their connections, or the affinity fell apart"
             ),
             Warning::LandmarksReduced { parcels, landmarks } => {
                 write!(

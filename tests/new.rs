@@ -68,7 +68,7 @@ fn drafts_agree_with_the_studies_that_come_along() {
         assert_eq!(file_name(&draft.landmarks), file_name(&real.landmarks));
         for side in kinmark::domain::Side::BOTH {
             let (draft, real) = (&draft.species[side], &real.species[side]);
-            assert_eq!(file_name(&draft.matrix), file_name(&real.matrix));
+            assert_eq!(file_name(draft.source()), file_name(real.source()));
             assert_eq!(draft.weights, real.weights);
             assert_eq!(draft.transform, real.transform);
             assert_eq!(draft.likeness, real.likeness);
@@ -199,7 +199,7 @@ fn one_matrix_leaves_a_gap_to_fill() {
     // The landmarks say that it is species b.
     let draft = drafted(folder.path());
     assert_eq!(draft.species.b.name, "Shrew");
-    assert_eq!(file_name(&draft.species.b.matrix), "shrew.csv");
+    assert_eq!(file_name(draft.species.b.source()), "shrew.csv");
     inspect(folder.path()).refused(&["species-a.csv", "no such file"]);
     // Filled, it runs.
     fs::write(
@@ -221,8 +221,11 @@ fn of_three_matrices_the_landmarks_choose() {
     fs::write(folder.path().join("aaa.csv"), csv(&third)).unwrap();
     let run = new(folder.path()).succeeded();
     let draft = drafted(folder.path());
-    assert_eq!(file_name(&draft.species.a.matrix), "zz vole.csv");
-    assert_eq!(file_name(&draft.species.b.matrix), "shrew-connectivity.csv");
+    assert_eq!(file_name(draft.species.a.source()), "zz vole.csv");
+    assert_eq!(
+        file_name(draft.species.b.source()),
+        "shrew-connectivity.csv"
+    );
     assert_eq!(draft.species.b.name, "Shrew");
     assert!(run
         .stdout
@@ -260,8 +263,8 @@ fn odd_names_are_spelled_as_toml_needs_them() {
     let run = new(folder.path()).succeeded();
     assert!(run.stdout.contains(r#""two\nlines.csv""#), "{}", run.stdout);
     let draft = drafted(folder.path());
-    assert_eq!(file_name(&draft.species.a.matrix), odd[0]);
-    assert_eq!(file_name(&draft.species.b.matrix), odd[1]);
+    assert_eq!(file_name(draft.species.a.source()), odd[0]);
+    assert_eq!(file_name(draft.species.b.source()), odd[1]);
     assert_eq!(file_name(&draft.landmarks), "über = 1.csv");
     inspect(folder.path()).succeeded();
 

@@ -84,6 +84,10 @@ struct SettingOptions {
     #[arg(long, value_name = "N", value_parser = checked("rank-replicates"))]
     rank_replicates: Option<String>,
 
+    /// How many of them also draw subjects again, where there are any [default: 200]
+    #[arg(long, value_name = "N", value_parser = checked("subject-replicates"))]
+    subject_replicates: Option<String>,
+
     /// Seed of every random draw; the same seed gives the same tables [default: 1]
     #[arg(long, value_name = "N", value_parser = checked("seed"))]
     seed: Option<String>,
@@ -188,6 +192,7 @@ impl SettingOptions {
         for (key, value) in [
             ("replicates", &given.replicates),
             ("rank-replicates", &given.rank_replicates),
+            ("subject-replicates", &given.subject_replicates),
             ("seed", &given.seed),
             ("threads", &given.threads),
             ("axes", &given.axes),

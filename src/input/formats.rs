@@ -18,6 +18,7 @@ mod mat_array;
 mod npy;
 mod npz;
 mod numbers;
+pub mod stack;
 mod text;
 
 pub use fault::Fault;

@@ -6,10 +6,11 @@ use super::chance::Support;
 use super::{Counterpart, Placement, Space, Tally};
 use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{Pair, Seed, Side};
-use crate::evidence::{Kind, Material};
+use crate::evidence::{Evidence, Expression, Kind, Material, Transport};
 use crate::holdout::{Blend, Member, OutOfBag, Way};
 use crate::place::{self, Candidates};
 use crate::prepare::Study;
+use crate::transport::Mass;
 
 /// What ranks.
 pub enum Ranker {
@@ -35,7 +36,9 @@ impl Ranker {
         }
     }
 
-    /// Fills `out` with how unlike open parcels are in a replicate with these landmark weights.
+    /// Fills `out` with how unlike open parcels are in a replicate with these landmark weights. Where
+    /// the material is not that of the full sample, transport is fitted `again` with parcels of such
+    /// mass; else its own replicates serve.
     ///
     /// # Panics
     /// If evidence cannot be fitted, which was tried on the full sample.
@@ -47,11 +50,12 @@ impl Ranker {
         open: &Pair<Vec<usize>>,
         candidates: &Candidates,
         seed: Seed,
+        again: Option<Mass>,
         out: &mut Array2<f64>,
     ) {
         let fill = |way: &Way, out: &mut Array2<f64>| {
             let mut chance = Stream::new(seed, Purpose::Evidence, replicate as u64);
-            fit(material, way, weights, &mut chance, open, out);
+            fit(material, &*cheap(way), weights, &mut chance, open, out);
         };
         match self {
             Ranker::One(way) => fill(way, out),
@@ -61,9 +65,22 @@ impl Ranker {
                 let mut blend = Blend::new(out.dim());
                 for (member, way) in members {
                     match (way, bagged) {
-                        (Way::Transport, Some(bagged)) => {
-                            out.zip_mut_with(&bagged.each[replicate], |x, y| *x = f64::from(*y));
-                        }
+                        (Way::Transport, Some(bagged)) => match again {
+                            None => {
+                                let own = &bagged.each[replicate];
+                                out.zip_mut_with(own, |x, y| *x = f64::from(*y));
+                            }
+                            Some(mass) => {
+                                let expressions = Expression::ALL;
+                                let transport = Transport {
+                                    expression: expressions[replicate % expressions.len()],
+                                    mass,
+                                };
+                                let index = replicate as u64;
+                                let mut chance = Stream::new(seed, Purpose::Evidence, index);
+                                fit(material, &transport, weights, &mut chance, open, out);
+                            }
+                        },
                         _ => fill(way, out),
                     }
                     candidates.close(&open.a, &open.b, out);
@@ -76,19 +93,26 @@ impl Ranker {
     }
 }
 
+/// The evidence of a way that is fitted wherever it is needed.
+fn cheap(way: &Way) -> Box<dyn Evidence> {
+    way.evidence()
+        .expect("costly kinds bring their own replicates")
+}
+
+/// Fills `out` by one kind of evidence. Where a draw of subjects leaves it nothing to go by, all are
+/// alike to it.
 fn fit(
     material: &Material<'_>,
-    way: &Way,
+    evidence: &dyn Evidence,
     weights: &[f64],
     chance: &mut Stream,
     open: &Pair<Vec<usize>>,
     out: &mut Array2<f64>,
 ) {
-    way.evidence()
-        .expect("costly kinds bring their own replicates")
-        .fit(material, weights, chance)
-        .expect("it was fitted before, and every draw has two landmarks or more")
-        .dissimilarities(&open.a, &open.b, out);
+    match evidence.fit(material, weights, chance) {
+        Ok(fitted) => fitted.dissimilarities(&open.a, &open.b, out),
+        Err(_) => out.fill(0.0),
+    }
 }
 
 /// The full-sample ranking of open parcels against open parcels, and which of it is listed.
@@ -118,7 +142,7 @@ impl Ranking {
         let full = |way: &Way, out: &mut Array2<f64>| {
             // The full sample comes before the first replicate, so it takes the last index.
             let mut chance = Stream::new(study.settings.seed, Purpose::Evidence, u64::MAX);
-            fit(material, way, &weights, &mut chance, open, out);
+            fit(material, &*cheap(way), &weights, &mut chance, open, out);
         };
         match &ranker {
             Ranker::One(way) => {
