@@ -3,6 +3,7 @@
 mod delimited;
 mod error;
 mod formats;
+mod gifti;
 mod grid;
 mod label_file;
 mod landmark_table;
@@ -15,6 +16,7 @@ mod study_file;
 
 pub use error::{InputError, Place, Problem};
 pub use formats::{Fault, Inflated};
+pub use gifti::{read as read_surface_labels, GiftiFault, SurfaceLabels};
 pub use landmark_table::read as read_landmarks;
 pub use matrix::{read as read_matrix, read_of as read_matrix_of, Matrix};
 pub use nearest::{nearest, nearest_few};

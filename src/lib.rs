@@ -29,6 +29,7 @@ pub mod input;
 pub mod inspect;
 pub mod linalg;
 pub mod locate;
+pub mod paint;
 pub mod pipeline;
 pub mod place;
 pub mod prepare;

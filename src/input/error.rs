@@ -4,6 +4,7 @@ use std::fmt;
 use std::path::{Path, PathBuf};
 
 use super::formats::Fault;
+use super::gifti::GiftiFault;
 use crate::domain::Side;
 
 /// A place in an input file, as exactly as it is known.
@@ -138,6 +139,9 @@ pub enum Problem {
     /// A fault of one format of matrices.
     #[error(transparent)]
     Format(#[from] Fault),
+    /// A fault of a file of labels of a surface.
+    #[error(transparent)]
+    Gifti(#[from] GiftiFault),
     /// No such file.
     #[error("there is no such file; check the path (in a study file it is relative to that file's folder)")]
     NotFound,

@@ -17,12 +17,12 @@ mod mat;
 mod mat_array;
 mod npy;
 mod npz;
-mod numbers;
+pub(super) mod numbers;
 mod text;
 
 pub use fault::Fault;
 pub use gzip::Inflated;
-use magic::Kind;
+pub use magic::Kind;
 pub use text::read as text;
 
 /// What a study says about a matrix, as far as a reader must know it.
@@ -58,15 +58,23 @@ impl Wanted<'_> {
 /// # Errors
 /// [`InputError`] where the file is damaged, of an unknown kind, or does not hold what is wanted.
 pub fn read(file: Bytes, wanted: &Wanted<'_>) -> Result<Grid, InputError> {
+    let (kind, file) = plain(file)?;
+    read_plain(kind, file, wanted)
+}
+
+/// The kind of a file, and its bytes without compression by gzip.
+///
+/// # Errors
+/// [`InputError`] where it cannot be inflated, or is compressed twice.
+pub fn plain(file: Bytes) -> Result<(Kind, Bytes), InputError> {
+    let kind = Kind::of(&file.bytes);
+    if kind != Kind::Gzip {
+        return Ok((kind, file));
+    }
+    let file = gzip::inflate(file)?;
     match Kind::of(&file.bytes) {
-        Kind::Gzip => {
-            let file = gzip::inflate(file)?;
-            match Kind::of(&file.bytes) {
-                Kind::Gzip => Err(refuse(&file, Fault::GzipTwice)),
-                kind => read_plain(kind, file, wanted),
-            }
-        }
-        kind => read_plain(kind, file, wanted),
+        Kind::Gzip => Err(refuse(&file, Fault::GzipTwice)),
+        kind => Ok((kind, file)),
     }
 }
 

@@ -7,6 +7,8 @@
 //! parcels without any counterpart, names that mislead and one wrong landmark, all of them listed
 //! in the files of the known answer. Nothing here is real.
 
+mod surface;
+
 use rand::seq::SliceRandom;
 use rand::{Rng, SeedableRng};
 use rand_distr::{Distribution, Poisson, StandardNormal};
@@ -249,6 +251,9 @@ pub fn files(seed: u64) -> Vec<(&'static str, String)> {
 
     let order_a = shuffled(counts.len(), rng);
     let order_b = shuffled(fractions.len(), rng);
+    // Drawn last, so that the brains themselves do not depend on their surfaces.
+    let surface_a = surface::label_file(&places(&parcels_a, rng), &labels.a);
+    let surface_b = surface::label_file(&places(&parcels_b, rng), &labels.b);
     vec![
         ("study.toml", STUDY.to_string()),
         ("a.csv", matrix(&counts, &labels.a, &order_a, count_cell)),
@@ -257,6 +262,8 @@ pub fn files(seed: u64) -> Vec<(&'static str, String)> {
             matrix(&fractions, &labels.b, &order_b, fraction_cell),
         ),
         ("landmarks.csv", landmark_table(&parts, &labels)),
+        ("a.label.gii", surface_a),
+        ("b.label.gii", surface_b),
         ("truth.csv", truth_table(&labels, &order_a)),
         ("displaced.csv", displaced_table(&parts, &labels)),
         (
@@ -483,6 +490,14 @@ fn with_lone_parcels(weights: &Weights, rng: &mut Draws) -> Weights {
         }
     }
     grown
+}
+
+/// Where the parcels of a species lie; those that fit nowhere lie anywhere.
+fn places(parcels: &[Parcel], rng: &mut Draws) -> Vec<Place> {
+    let inherited = parcels.iter().map(|parcel| parcel.place);
+    let mut places: Vec<Place> = inherited.collect();
+    places.extend((0..LONE).map(|_| near(&ORIGIN, CENTRE_SPREAD + SYSTEM_SPREAD, rng)));
+    places
 }
 
 /// Sets all but the strongest connections to zero, so that the given percentage of pairs is left.
