@@ -20,6 +20,6 @@ pub use gifti::{read as read_surface_labels, GiftiFault, SurfaceLabels};
 pub use landmark_table::read as read_landmarks;
 pub use matrix::{read as read_matrix, read_of as read_matrix_of, Matrix};
 pub use nearest::{nearest, nearest_few};
-pub use recognise::{recognise, LandmarkLooks, Looks, MatrixLooks};
+pub use recognise::{is_binary, recognise, Form, LandmarkLooks, Looks, MatrixLooks, Pick};
 pub use source::{InputFile, Source};
 pub use study_file::{read as read_study_file, SpeciesFile, StudyFile};

@@ -12,7 +12,7 @@ mod table;
 use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
 
-pub use fault::PaintError;
+pub use fault::{OtherParcellation, PaintError};
 pub use request::PaintRequest;
 
 use crate::domain::Side;
@@ -162,7 +162,7 @@ fn no_parcel(path: &Path, names: &[String], run: &Run, side: Side) -> PaintError
         near.first().map(|near| (name.clone(), (*near).to_owned()))
     });
     let other = &run.species[side.opposite()];
-    PaintError::NoParcel {
+    PaintError::NoParcel(Box::new(OtherParcellation {
         file: path.to_owned(),
         species: species.name.clone(),
         labels: names.to_vec(),
@@ -172,7 +172,7 @@ fn no_parcel(path: &Path, names: &[String], run: &Run, side: Side) -> PaintError
             .iter()
             .any(|name| other.parcels.contains(name))
             .then(|| other.name.clone()),
-    }
+    }))
 }
 
 /// Parcels that none of the surfaces shows: a hemisphere was forgotten, or labels differ.

@@ -18,17 +18,7 @@ fn data(name: &str) -> PathBuf {
 
 /// A species whose matrix is a file beside the script that made it.
 fn species(matrix: &str) -> SpeciesFile {
-    SpeciesFile {
-        name: "Vole".to_owned(),
-        matrix: data(matrix),
-        labels: None,
-        variable: None,
-        label_variable: None,
-        weights: WeightKind::Counts,
-        transform: None,
-        likeness: None,
-        strongest: None,
-    }
+    SpeciesFile::new("Vole", &data(matrix), WeightKind::Counts)
 }
 
 fn read(species: &SpeciesFile) -> Connectivity {

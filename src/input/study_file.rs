@@ -35,6 +35,24 @@ pub struct SpeciesFile {
     pub strongest: Option<Share>,
 }
 
+impl SpeciesFile {
+    /// A species of which nothing is said but what must be.
+    #[must_use]
+    pub fn new(name: &str, matrix: &Path, weights: WeightKind) -> SpeciesFile {
+        SpeciesFile {
+            name: name.to_owned(),
+            matrix: matrix.to_path_buf(),
+            labels: None,
+            variable: None,
+            label_variable: None,
+            weights,
+            transform: None,
+            likeness: None,
+            strongest: None,
+        }
+    }
+}
+
 /// A study as its file describes it; paths are resolved, nothing else has been read.
 #[derive(Debug, Clone, PartialEq)]
 pub struct StudyFile {

@@ -99,21 +99,8 @@ pub enum PaintError {
         species: String,
     },
     /// A surface of another parcellation.
-    #[error("{}: none of its labels is a parcel of {species} in the run. It has {}; the run has {}{}", file.display(), listed(.labels), listed(.parcels), clue(.near, .of_other))]
-    NoParcel {
-        /// The label file.
-        file: PathBuf,
-        /// The species.
-        species: String,
-        /// Labels of the file.
-        labels: Vec<String>,
-        /// Labels of the run.
-        parcels: Vec<String>,
-        /// A label of the file and a near one of the run.
-        near: Option<(String, String)>,
-        /// The other species, where the labels are its parcels.
-        of_other: Option<String>,
-    },
+    #[error(transparent)]
+    NoParcel(Box<OtherParcellation>),
     /// Two label files whose maps would have the same names.
     #[error("{} and {} would give maps of the same names; rename one, or paint them one after the other into folders of their own (--out)", first.display(), second.display())]
     SameName {
@@ -122,6 +109,24 @@ pub enum PaintError {
         /// The other.
         second: PathBuf,
     },
+}
+
+/// A label file whose labels are no parcels of a species.
+#[derive(Debug, Error)]
+#[error("{}: none of its labels is a parcel of {species} in the run. It has {}; the run has {}{}", file.display(), listed(.labels), listed(.parcels), clue(.near, .of_other))]
+pub struct OtherParcellation {
+    /// The label file.
+    pub file: PathBuf,
+    /// The species.
+    pub species: String,
+    /// Labels of the file.
+    pub labels: Vec<String>,
+    /// Labels of the run.
+    pub parcels: Vec<String>,
+    /// A label of the file and a near one of the run.
+    pub near: Option<(String, String)>,
+    /// The other species, where the labels are its parcels.
+    pub of_other: Option<String>,
 }
 
 /// Near spellings in words, with a blank before; empty where there are none.
