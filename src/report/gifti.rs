@@ -102,3 +102,31 @@ fn packed(values: &[f32]) -> String {
     let bytes = encoder.finish().expect("writing to memory does not fail");
     STANDARD.encode(bytes)
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn no_text_breaks_the_xml() {
+        assert_eq!(text("a < b & \"c\""), "a &lt; b &amp; &quot;c&quot;");
+        assert_eq!(text("tab\tbell\u{7}\u{ffff}"), "tab\tbell\u{fffd}\u{fffd}");
+        let map = SurfaceMap {
+            name: "]]></Name>".to_owned(),
+            meaning: "\u{0}".to_owned(),
+            values: vec![1.5, f32::NAN],
+        };
+        let bytes = gifti(&[("Run", "<!-- a -->")], &[map]);
+        let xml = std::str::from_utf8(&bytes).unwrap();
+        let mut reader = quick_xml::Reader::from_str(xml);
+        let mut names = 0;
+        loop {
+            match reader.read_event().unwrap() {
+                quick_xml::events::Event::Eof => break,
+                quick_xml::events::Event::Start(tag) if tag.name().as_ref() == "Name" => names += 1,
+                _ => {}
+            }
+        }
+        assert_eq!(names, 3);
+    }
+}
