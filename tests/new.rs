@@ -587,6 +587,32 @@ fn other_files_are_told_or_passed_over() {
     runs(folder.path());
 }
 
+/// A label with a comma does not make a table of the list.
+#[test]
+fn labels_may_hold_separators() {
+    let folder = formats(&[("f8.npy", "vole.npy"), ("labelled.csv", "shrew.csv")]);
+    let labels = read(&path("tests/data/formats/labels.txt"));
+    let mut lines: Vec<&str> = labels.lines().collect();
+    lines.rotate_right(1);
+    assert!(lines[0].contains(','));
+    fs::write(folder.path().join("vole.txt"), lines.join("\n")).unwrap();
+    // A table with a row too short stays one.
+    fs::write(
+        folder.path().join("places.csv"),
+        "V1,1,2\nA1,3\nM1,2,2\nS1,1,1\nS2,2,1\n",
+    )
+    .unwrap();
+    let run = new(folder.path()).succeeded();
+    assert!(run.stdout.contains("labels vole.txt"), "{}", run.stdout);
+    assert!(
+        run.stdout
+            .contains("not used   places.csv: expected 3 cells"),
+        "{}",
+        run.stdout
+    );
+    runs(folder.path());
+}
+
 #[test]
 fn a_damaged_matrix_of_connections_is_told() {
     let folder = formats(&[("edges.csv", "vole.csv"), ("labelled.csv", "shrew.csv")]);

@@ -256,7 +256,13 @@ fn text(source: &Source) -> Looks {
     let table = match delimited::parse(source) {
         Ok(table) => table,
         Err(fault) if *fault.problem == Problem::OneColumn => return label_list(source),
-        Err(fault) => return Looks::Neither(fault.problem.to_string()),
+        // Labels may hold the separators of tables, and then not all as many.
+        Err(fault) => {
+            return match label_list(source) {
+                Looks::Labels(labels) if are_words(&labels) => Looks::Labels(labels),
+                _ => Looks::Neither(fault.problem.to_string()),
+            }
+        }
     };
     if let Some(landmarks) = landmark_table(&table) {
         return Looks::Landmarks(landmarks);
@@ -344,6 +350,15 @@ fn label_list(source: &Source) -> Looks {
         return Looks::Neither("neither a table nor different labels, one a line".to_owned());
     }
     Looks::Labels(labels.into_iter().map(|l| l.text).collect())
+}
+
+/// Whether no part of any label is a number, as the cells of a table would be.
+fn are_words(labels: &[String]) -> bool {
+    let is_number = |cell: &str| cell.trim().parse::<f64>().is_ok();
+    let mut cells = labels
+        .iter()
+        .flat_map(|label| label.split([',', ';', '\t']));
+    !cells.any(is_number)
 }
 
 /// The columns landmark, a and b, in any spelling: the reader will say if it is the wrong one.
