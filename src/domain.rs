@@ -3,6 +3,7 @@
 mod choice;
 mod connectivity;
 mod landmarks;
+mod orientation;
 mod parcels;
 mod scalars;
 mod side;
@@ -12,7 +13,8 @@ pub(crate) use choice::choices;
 pub use choice::{Choice, UnknownChoice};
 pub use connectivity::{Connectivity, ShapeError};
 pub use landmarks::{Basis, Landmark, LandmarkError, Landmarks};
-pub use parcels::Parcels;
+pub use orientation::{RowsAre, Tracer};
+pub use parcels::{Parcels, Standing};
 pub use scalars::{ScalarError, Seed, Share};
 pub use side::{Pair, Side};
 pub use weights::{Transform, WeightKind};

@@ -5,7 +5,9 @@ use std::path::Path;
 use serde::Serialize;
 
 use crate::affinity::{self, Profiles};
-use crate::domain::{Connectivity, Landmarks, Pair, Parcels, Side, Transform, WeightKind};
+use crate::domain::{
+    Connectivity, Landmarks, Pair, Parcels, RowsAre, Side, Standing, Tracer, Transform, WeightKind,
+};
 use crate::embed::{self, DiffusionTime, Embedding};
 use crate::input::{self, InputError, InputFile, Place, Problem, Source, SpeciesFile};
 use crate::settings::{Axes, Conduct, Request, Settings};
@@ -13,15 +15,19 @@ use crate::species::Species;
 use crate::transform;
 use crate::warning::Warning;
 
+mod arrange;
 mod parts;
 mod raw_facts;
 mod suspicion;
 
+use arrange::Arranged;
 pub use parts::Parts;
 pub use raw_facts::{Filled, RawFacts, SumsToOne};
 
 /// Fewest parcels that make an embedding.
 const FEWEST_PARCELS: usize = 4;
+/// Fewest entries of a profile by which parcels can be compared.
+const FEWEST_COLUMNS: usize = 3;
 /// Most axes that are tried when left-out landmarks choose.
 const MOST_AXES: usize = 12;
 
@@ -30,6 +36,13 @@ const MOST_AXES: usize = 12;
 pub struct Treatment {
     /// What the weights measure.
     pub weights: WeightKind,
+    /// What the parcels are where the matrix holds links from them to other areas, or to some of
+    /// them, only.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub parcels_are: Option<RowsAre>,
+    /// How injected areas were traced.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub tracer: Option<Tracer>,
     /// How they were transformed.
     pub transform: Transform,
     /// How profiles were compared.
@@ -47,11 +60,11 @@ pub struct Inputs {
     pub matrix: Pair<InputFile>,
     /// Files of labels, where matrices have them.
     #[serde(skip_serializing_if = "none")]
-    pub labels: Pair<Option<InputFile>>,
+    pub labels: Pair<Vec<InputFile>>,
 }
 
-fn none(files: &Pair<Option<InputFile>>) -> bool {
-    files.a.is_none() && files.b.is_none()
+fn none(files: &Pair<Vec<InputFile>>) -> bool {
+    files.a.is_empty() && files.b.is_empty()
 }
 
 /// A study that has passed every check, embedded.
@@ -82,7 +95,7 @@ pub struct Study {
 /// One species' matrix as read, with what its parcels are.
 struct Raw {
     file: InputFile,
-    labels: Option<InputFile>,
+    labels: Vec<InputFile>,
     warnings: Vec<Warning>,
     network: Connectivity,
     parcels: Parcels,
@@ -95,11 +108,17 @@ struct Raw {
 /// [`InputError`] for the first fault found.
 pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
     let description = input::read_study_file(study)?;
-    let (settings, conduct) = asked.or(description.request.clone()).settle();
+    let request = asked.or(description.request.clone());
+    let embedding = request.embedding;
+    let (mut settings, conduct) = request.settle();
     let raw = description
         .species
         .as_ref()
         .try_map_at_once(conduct.threads, |_, described| read_species(described))?;
+    let rectangular = |raw: &Raw| raw.facts.rectangular.is_some();
+    if embedding.is_none() && (rectangular(&raw.a) || rectangular(&raw.b)) {
+        settings.embedding = embed::Method::OF_RECTANGULAR;
+    }
     let mut warnings = [&raw.a.warnings[..], &raw.b.warnings[..]].concat();
 
     let table = Source::read(&description.landmarks)?;
@@ -111,7 +130,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
     warnings.extend(more);
     let most = most_axes(settings.axes, &landmarks, &table)?;
 
-    let treatment = Pair::from_fn(|side| treatment(&description.species[side], &raw[side].network));
+    let treatment = Pair::from_fn(|side| treatment(&description.species[side], &raw[side]));
     let inputs = Inputs {
         study: description.file,
         landmarks: table.file,
@@ -188,83 +207,84 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
 /// Reads and checks one matrix, and finds its parcels.
 fn read_species(described: &SpeciesFile) -> Result<Raw, InputError> {
     let matrix = input::read_matrix_of(described)?;
-    let mut network = matrix.network;
     let mut warnings = matrix.warnings;
-    suspicion::look_over(&network, described, &mut warnings);
-    let filled = raw_facts::filled(&network);
-    if described.weights == WeightKind::Correlations {
-        symmetrise(&mut network);
+    suspicion::look_over(&matrix.network, described, &mut warnings);
+    let filled = raw_facts::filled(&matrix.network);
+    let arranged = Arranged::of(matrix.network, matrix.rows_are, described.weights);
+    let fail = |problem| Err(InputError::new(Place::file(&described.matrix), problem));
+    if arranged.standing.iter().all(|s| *s == Standing::Uncovered) {
+        return fail(Problem::AllMissing);
     }
-    let connected = connected(&network, described.weights);
-    let place = || Place::file(&described.matrix);
-    if !connected.contains(&true) {
-        return Err(InputError::new(place(), Problem::AllZero));
+    if !arranged.standing.contains(&Standing::Placed) {
+        return fail(Problem::AllZero);
     }
-    let parcels = Parcels::new(&described.name, network.row_labels(), &connected);
+    let network = arranged.network;
+    let parcels = Parcels::new(&described.name, network.row_labels(), &arranged.standing);
     if parcels.len() < FEWEST_PARCELS {
-        return Err(InputError::new(
-            place(),
-            Problem::TooFewParcels {
-                found: parcels.len(),
-                needed: FEWEST_PARCELS,
-            },
-        ));
-    }
-    if !parcels.isolated().is_empty() {
-        warnings.push(Warning::SetAside {
-            species: described.name.clone(),
-            parcels: parcels.isolated().to_vec(),
+        return fail(Problem::TooFewParcels {
+            found: parcels.len(),
+            needed: FEWEST_PARCELS,
         });
     }
-    let order: Vec<usize> = {
-        let mut order: Vec<usize> = (0..connected.len()).filter(|&i| connected[i]).collect();
-        let labels = network.row_labels();
-        order.sort_by(|&i, &j| labels[i].as_bytes().cmp(labels[j].as_bytes()));
-        order
-    };
-    let network = network.select(&order, &order);
+    let network = parcels_in_order(network, &arranged.standing);
+    if network.column_labels().len() < FEWEST_COLUMNS {
+        return fail(Problem::TooFewColumns {
+            found: network.column_labels().len(),
+            needed: FEWEST_COLUMNS,
+        });
+    }
+    if arranged.missing > 0 {
+        warnings.push(Warning::MissingEntries {
+            species: described.name.clone(),
+            entries: arranged.missing,
+            mirrored: arranged.mirrored,
+            columns: arranged.unobserved_columns,
+        });
+    }
+    for (parcels, observed) in [(parcels.isolated(), true), (parcels.uncovered(), false)] {
+        if !parcels.is_empty() {
+            warnings.push(Warning::SetAside {
+                species: described.name.clone(),
+                parcels: parcels.to_vec(),
+                observed,
+            });
+        }
+    }
     Ok(Raw {
         file: matrix.file,
         labels: matrix.labels,
         warnings,
-        facts: RawFacts::of(&network, described.weights, filled),
+        facts: RawFacts::of(&network, arranged.rows_are, described.weights, filled),
         network,
         parcels,
     })
 }
 
-/// Which parcels have a connection in either direction.
-fn connected(network: &Connectivity, weights: WeightKind) -> Vec<bool> {
-    let mut connected = vec![false; network.row_labels().len()];
-    for ((i, j), &w) in network.weights().indexed_iter() {
-        // Every finite logarithm stands for a connection.
-        if i != j && (w != 0.0 || weights == WeightKind::Log10) {
-            connected[i] = true;
-            connected[j] = true;
-        }
-    }
-    connected
+/// The rows that take part, in bytewise order of their labels, and the columns likewise, without
+/// those of parcels that do not take part. Takes the network, since a large one is dear to keep twice.
+fn parcels_in_order(network: Connectivity, standing: &[Standing]) -> Connectivity {
+    let in_order = |labels: &[String], kept: &dyn Fn(usize) -> bool| -> Vec<usize> {
+        let mut order: Vec<usize> = (0..labels.len()).filter(|&at| kept(at)).collect();
+        order.sort_by(|&i, &j| labels[i].as_bytes().cmp(labels[j].as_bytes()));
+        order
+    };
+    let takes_part = |row: usize| standing[row] == Standing::Placed;
+    let rows = in_order(network.row_labels(), &takes_part);
+    let columns = in_order(network.column_labels(), &|column| {
+        network.row_of_column(column).is_none_or(takes_part)
+    });
+    network.select(&rows, &columns)
 }
 
-/// The mean of both halves: a correlation has no direction.
-fn symmetrise(network: &mut Connectivity) {
-    let mut weights = network.weights_mut();
-    for i in 0..weights.nrows() {
-        for j in 0..i {
-            let mean = (weights[(i, j)] + weights[(j, i)]) / 2.0;
-            weights[(i, j)] = mean;
-            weights[(j, i)] = mean;
-        }
-    }
-}
-
-fn treatment(described: &SpeciesFile, network: &Connectivity) -> Treatment {
+fn treatment(described: &SpeciesFile, raw: &Raw) -> Treatment {
     let default = affinity::Params::default_for(described.weights);
     Treatment {
         weights: described.weights,
+        parcels_are: raw.facts.rectangular,
+        tracer: described.tracer,
         transform: described
             .transform
-            .unwrap_or_else(|| transform::default_for(network, described.weights)),
+            .unwrap_or_else(|| transform::default_for(&raw.network, described.weights)),
         affinity: affinity::Params {
             likeness: described.likeness.unwrap_or(default.likeness),
             strongest: described.strongest.unwrap_or(default.strongest),

@@ -4,6 +4,8 @@ use std::fmt;
 
 use serde::{Serialize, Serializer};
 
+use crate::domain::{RowsAre, Tracer};
+
 /// Parcels named in a warning before the rest is only counted.
 const NAMED: usize = 6;
 
@@ -61,12 +63,56 @@ pub enum Warning {
         /// Parcels outside the largest.
         outside: Vec<String>,
     },
-    /// Parcels without any connection.
+    /// Parcels that cannot be placed.
     SetAside {
         /// The species.
         species: String,
         /// Their labels.
         parcels: Vec<String>,
+        /// Whether they were observed, so that they have no connection; else too little of them was.
+        observed: bool,
+    },
+    /// Landmark parcels that cannot be placed, so that nothing can be anchored to them.
+    LandmarksReduced {
+        /// The parcels, in words.
+        parcels: Vec<String>,
+        /// Landmarks that have no parcel left on one side.
+        landmarks: Vec<String>,
+    },
+    /// A matrix from parcels to other areas, or to some of them.
+    Rectangular {
+        /// The species.
+        species: String,
+        /// Parcels.
+        parcels: usize,
+        /// What they are.
+        parcels_are: RowsAre,
+        /// Entries of each.
+        entries: usize,
+        /// Of these, how many are no parcels.
+        elsewhere: usize,
+        /// Whether the study file says so.
+        stated: bool,
+    },
+    /// Injected areas on the side on which the tracer does not put them.
+    TracerAgainstShape {
+        /// The species.
+        species: String,
+        /// The tracer.
+        tracer: Tracer,
+        /// What injected areas are by it.
+        injected: RowsAre,
+    },
+    /// Entries that were never observed.
+    MissingEntries {
+        /// The species.
+        species: String,
+        /// How many, off the diagonal.
+        entries: usize,
+        /// Of these, how many were taken from the other side of the diagonal.
+        mirrored: usize,
+        /// Lines without any observed entry.
+        columns: usize,
     },
     /// Labels of a surface that the run does not know.
     SurfaceUnknown {
@@ -216,11 +262,89 @@ impl fmt::Display for Warning {
                 "{species}: the network falls into {components} parts; outside the largest: {}",
                 listed(outside)
             ),
-            Warning::SetAside { species, parcels } => write!(
+            Warning::SetAside {
+                species,
+                parcels,
+                observed,
+            } => write!(
                 f,
-                "{species}: set aside, no connection at all: {}",
+                "{species}: set aside, {}: {}",
+                if *observed {
+                    "no connection at all"
+                } else {
+                    "too little observed to compare them with others"
+                },
                 listed(parcels)
             ),
+            Warning::LandmarksReduced { parcels, landmarks } => {
+                write!(
+                    f,
+                    "nothing can be anchored to landmark parcels that were set aside: {}",
+                    listed(parcels)
+                )?;
+                if !landmarks.is_empty() {
+                    write!(f, "; landmarks not used: {}", listed(landmarks))?;
+                }
+                Ok(())
+            }
+            Warning::Rectangular {
+                species,
+                parcels,
+                parcels_are,
+                entries,
+                elsewhere,
+                stated,
+            } => {
+                let others = match elsewhere {
+                    0 => "all of them parcels too".to_owned(),
+                    n => format!("{n} of them no parcels"),
+                };
+                write!(
+                    f,
+                    "{species}: read as rectangular, {parcels} parcels as {parcels_are} by {entries} {} ({others}); links that the table does not hold are unknown, not absent",
+                    parcels_are.opposite()
+                )?;
+                if !stated {
+                    write!(
+                        f,
+                        ". If it should be square, a row or a column got lost; if not, add rows = \"sources\" or rows = \"targets\" to the study file"
+                    )?;
+                }
+                Ok(())
+            }
+            Warning::TracerAgainstShape {
+                species,
+                tracer,
+                injected,
+            } => write!(
+                f,
+                "{species}: by a tracer that is {tracer} the injected areas are {injected}, but here {injected} are the longer side; check rows and tracer"
+            ),
+            Warning::MissingEntries {
+                species,
+                entries,
+                mirrored,
+                columns,
+            } => {
+                write!(
+                    f,
+                    "{species}: {} missing, which is not zero; parcels are compared where both were observed",
+                    counted(*entries, "entry", "entries")
+                )?;
+                if *mirrored > 0 {
+                    write!(
+                        f,
+                        "; {mirrored} were taken from the other side of the diagonal, since links have no direction"
+                    )?;
+                }
+                if *columns > 0 {
+                    write!(
+                        f,
+                        "; {columns} lines without any entry are taken for areas that were not injected"
+                    )?;
+                }
+                Ok(())
+            }
             Warning::SidesNotBlocked { first, second } => write!(
                 f,
                 "landmarks {first} and {second} look like the two sides of one area; give both the same block, or left-out figures will flatter"

@@ -276,7 +276,7 @@ fn odd_names_are_spelled_as_toml_needs_them() {
 #[test]
 fn a_matrix_with_a_fault_is_taken_and_the_fault_told() {
     let folder = small(&[("a.csv", "a.csv"), ("landmarks.csv", "landmarks.csv")]);
-    let study = Study::with(|s| s.set("b.csv", 3, 2, "NA"));
+    let study = Study::with(|s| s.set("b.csv", 3, 2, "inf"));
     fs::write(folder.path().join("b.csv"), study.text("b.csv")).unwrap();
     let run = new(folder.path()).succeeded();
     assert!(

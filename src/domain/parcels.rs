@@ -1,5 +1,16 @@
 //! The parcels of one species that take part, and those that cannot.
 
+/// Whether a parcel takes part, and if not, why.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub enum Standing {
+    /// It has connections and was observed well enough.
+    Placed,
+    /// It has no connection at all.
+    Isolated,
+    /// Too little of its connections was observed to compare it with others.
+    Uncovered,
+}
+
 /// One species' parcels. Those with connections stand in bytewise order of their labels, so that no
 /// result depends on the order of the input and ties go to the first.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -8,14 +19,21 @@ pub struct Parcels {
     labels: Vec<String>,
     as_listed: Vec<usize>,
     isolated: Vec<String>,
+    uncovered: Vec<String>,
 }
 
 impl Parcels {
     /// Takes the species' name, the labels in the order of its file, and for each whether the parcel
-    /// has any connection.
+    /// takes part.
     #[must_use]
-    pub fn new(species: &str, listed: &[String], connected: &[bool]) -> Self {
-        let mut kept: Vec<usize> = (0..listed.len()).filter(|&i| connected[i]).collect();
+    pub fn new(species: &str, listed: &[String], standing: &[Standing]) -> Self {
+        let with = |wanted: Standing| -> Vec<usize> {
+            (0..listed.len())
+                .filter(|&i| standing[i] == wanted)
+                .collect()
+        };
+        let names = |at: Vec<usize>| at.into_iter().map(|i| listed[i].clone()).collect();
+        let mut kept = with(Standing::Placed);
         let in_file = kept.clone();
         kept.sort_by(|&i, &j| listed[i].as_bytes().cmp(listed[j].as_bytes()));
         let mut place = vec![usize::MAX; listed.len()];
@@ -26,10 +44,8 @@ impl Parcels {
             species: species.to_owned(),
             labels: kept.iter().map(|&i| listed[i].clone()).collect(),
             as_listed: in_file.into_iter().map(|i| place[i]).collect(),
-            isolated: (0..listed.len())
-                .filter(|&i| !connected[i])
-                .map(|i| listed[i].clone())
-                .collect(),
+            isolated: names(with(Standing::Isolated)),
+            uncovered: names(with(Standing::Uncovered)),
         }
     }
 
@@ -69,7 +85,13 @@ impl Parcels {
         &self.isolated
     }
 
-    /// Index of a parcel with connections.
+    /// Labels of parcels of which too little was observed, in the order of the input file.
+    #[must_use]
+    pub fn uncovered(&self) -> &[String] {
+        &self.uncovered
+    }
+
+    /// Index of a parcel that takes part.
     #[must_use]
     pub fn find(&self, label: &str) -> Option<usize> {
         self.labels
@@ -84,11 +106,14 @@ mod tests {
 
     #[test]
     fn labels_are_text_in_bytewise_order() {
-        let listed = ["2", "10", "a", "lone", "B"].map(str::to_owned);
-        let parcels = Parcels::new("x", &listed, &[true, true, true, false, true]);
+        use Standing::{Isolated, Placed, Uncovered};
+        let listed = ["2", "10", "a", "lone", "dark", "B"].map(str::to_owned);
+        let standing = [Placed, Placed, Placed, Isolated, Uncovered, Placed];
+        let parcels = Parcels::new("x", &listed, &standing);
         assert_eq!(parcels.labels(), ["10", "2", "B", "a"]);
         assert_eq!(parcels.as_listed(), [1, 0, 3, 2]);
         assert_eq!(parcels.isolated(), ["lone"]);
+        assert_eq!(parcels.uncovered(), ["dark"]);
         assert_eq!(parcels.find("2"), Some(1));
         assert_eq!(parcels.find("lone"), None);
     }

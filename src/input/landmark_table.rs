@@ -18,7 +18,7 @@ const COLUMNS: [&str; 6] = ["landmark", "a", "b", "weight", "block", "basis"];
 /// Reads the landmarks and finds their parcels.
 ///
 /// # Errors
-/// [`InputError`] for a missing column, an empty cell, an unknown, repeated or unconnected parcel, a
+/// [`InputError`] for a missing column, an empty cell, an unknown or repeated parcel, a
 /// repeated landmark, a weight outside (0, 1] or fewer than three landmarks.
 pub fn read(
     source: &Source,
@@ -32,6 +32,7 @@ pub fn read(
     let mut blocks: Vec<String> = Vec::new();
     let mut names: BTreeMap<String, u64> = BTreeMap::new();
     let mut used: Pair<BTreeMap<usize, (String, u64)>> = Pair::default();
+    let mut without = Without::default();
     for row in &table.rows {
         let at = |column: usize| Place::line(source.path(), row.line).column(column + 1);
         let name = row.cells.get(columns.landmark).unwrap_or("").to_owned();
@@ -72,6 +73,15 @@ pub fn read(
                     )
                 })?,
         };
+        for side in Side::BOTH {
+            for label in &members[side].unplaced {
+                without.note(&name, label, parcels[side].species());
+            }
+        }
+        if members.a.placed.is_empty() || members.b.placed.is_empty() {
+            without.landmarks.push(name);
+            continue;
+        }
         let block = match cell(row, columns.block) {
             // A block of its own, told from named ones by a spelling no cell can have.
             None => {
@@ -88,7 +98,7 @@ pub fn read(
             .map(|_| Basis(cell(row, columns.basis).unwrap_or("").to_owned()));
         list.push(Landmark {
             name,
-            parcels: members,
+            parcels: members.map(|m| m.placed),
             weight,
             block,
             basis,
@@ -98,6 +108,7 @@ pub fn read(
         .into_iter()
         .map(|b| b.trim_start().to_owned())
         .collect();
+    warnings.extend(without.warning());
     warnings.extend(suspicions(&list, parcels));
     let landmarks = Landmarks::new(list, blocks).map_err(|e| match e {
         LandmarkError::TooFew { found, needed } => InputError::new(
@@ -182,6 +193,35 @@ fn cell(row: &Row, column: Option<usize>) -> Option<&str> {
 }
 
 /// The parcels one cell names.
+struct Members {
+    /// Those that take part.
+    placed: Vec<usize>,
+    /// Labels of those that were set aside.
+    unplaced: Vec<String>,
+}
+
+/// Landmark parcels that were set aside, and landmarks that have none left.
+#[derive(Default)]
+struct Without {
+    parcels: Vec<String>,
+    landmarks: Vec<String>,
+}
+
+impl Without {
+    fn note(&mut self, landmark: &str, parcel: &str, species: &str) {
+        self.parcels
+            .push(format!("{parcel} of {species} ({landmark})"));
+    }
+
+    fn warning(self) -> Option<Warning> {
+        (!self.parcels.is_empty()).then_some(Warning::LandmarksReduced {
+            parcels: self.parcels,
+            landmarks: self.landmarks,
+        })
+    }
+}
+
+/// Reads the parcels one cell names.
 fn members(
     row: &Row,
     column: usize,
@@ -189,24 +229,23 @@ fn members(
     side: Side,
     used: &mut BTreeMap<usize, (String, u64)>,
     landmark: &str,
-) -> Result<Vec<usize>, Problem> {
+) -> Result<Members, Problem> {
     let cell = row.cells.get(column).unwrap_or("");
     // A label may itself contain the separator: then it is the label that counts.
     let labels: Vec<&str> = match parcels.find(cell) {
         Some(_) => vec![cell],
         None => cell.split(PARCEL_SEPARATOR).map(str::trim).collect(),
     };
-    let mut members = Vec::new();
+    let (mut members, mut unplaced) = (Vec::new(), Vec::new());
     for label in labels {
         if label.is_empty() {
             return Err(Problem::EmptyCell("a parcel"));
         }
         let Some(parcel) = parcels.find(label) else {
-            if parcels.isolated().iter().any(|known| known == label) {
-                return Err(Problem::LandmarkIsolated {
-                    side,
-                    parcel: label.to_owned(),
-                });
+            let aside = [parcels.isolated(), parcels.uncovered()].concat();
+            if aside.iter().any(|known| known == label) {
+                unplaced.push(label.to_owned());
+                continue;
             }
             return Err(Problem::UnknownParcel {
                 side,
@@ -228,7 +267,10 @@ fn members(
         }
         members.push(parcel);
     }
-    Ok(members)
+    Ok(Members {
+        placed: members,
+        unplaced,
+    })
 }
 
 /// What is legal but should be known.

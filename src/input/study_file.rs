@@ -9,7 +9,7 @@ use super::formats::Fault;
 use super::nearest::nearest;
 use super::source::{InputFile, Source};
 use crate::affinity::Likeness;
-use crate::domain::{Choice, Pair, Share, Side, Transform, WeightKind};
+use crate::domain::{Choice, Pair, RowsAre, Share, Side, Tracer, Transform, WeightKind};
 use crate::settings::{BadSetting, Request};
 
 /// One species as its study file describes it.
@@ -21,6 +21,12 @@ pub struct SpeciesFile {
     pub matrix: PathBuf,
     /// Its parcels' labels, where a file of their own holds them.
     pub labels: Option<PathBuf>,
+    /// Labels of the columns, where these differ and a file of their own holds them.
+    pub column_labels: Option<PathBuf>,
+    /// What the rows are.
+    pub rows: Option<RowsAre>,
+    /// How injected areas were traced.
+    pub tracer: Option<Tracer>,
     /// Array that is the matrix, in a file of several.
     pub variable: Option<String>,
     /// Array that holds the labels, in a file of several.
@@ -43,6 +49,9 @@ impl SpeciesFile {
             name: name.to_owned(),
             matrix: matrix.to_path_buf(),
             labels: None,
+            column_labels: None,
+            rows: None,
+            tracer: None,
             variable: None,
             label_variable: None,
             weights,
@@ -77,6 +86,9 @@ const SPECIES_KEYS: &[&str] = &[
     "affinity",
     "strongest",
     "labels",
+    "column-labels",
+    "rows",
+    "tracer",
     "variable",
     "label-variable",
 ];
@@ -181,6 +193,11 @@ fn species_file(table: &Table<'_>, folder: &Path) -> Result<SpeciesFile, InputEr
     Ok(SpeciesFile {
         name,
         labels: labels.map(|path| folder.join(path)),
+        column_labels: table
+            .optional_text("column-labels")?
+            .map(|path| folder.join(path)),
+        rows: table.choice("rows")?,
+        tracer: table.choice("tracer")?,
         variable: table.optional_text("variable")?,
         label_variable,
         matrix: folder.join(table.text("matrix", "matrix = \"matrix.csv\"")?),

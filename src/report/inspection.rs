@@ -6,7 +6,7 @@ use serde::Serialize;
 
 use super::record::{json, Identity};
 use super::summary::short;
-use crate::domain::{Pair, Side, WeightKind};
+use crate::domain::{Pair, RowsAre, Side, WeightKind};
 use crate::inspect::{Inspection, SpeciesFacts, TransformReason};
 use crate::prepare::{Filled, Study, SumsToOne};
 use crate::transform::WIDE_SPAN;
@@ -95,6 +95,7 @@ fn matrices(text: &mut String, study: &Study, found: &Inspection) -> Result {
             }),
         ),
         ("parcels", of(&|_, s| s.parcels.to_string())),
+        ("  by", of(&|_, s| columns(s))),
         ("weights", of(&|_, s| s.weights.to_string())),
         ("  from - to", of(&|_, s| range(s))),
         ("  positive ones span", of(&|_, s| span(s))),
@@ -113,10 +114,12 @@ fn matrices(text: &mut String, study: &Study, found: &Inspection) -> Result {
                 n => format!("{}; {n} parcels outside", s.parts),
             }),
         ),
+        ("never observed", of(&|_, s| never_observed(s))),
         (
             "set aside, no links",
             of(&|_, s| s.set_aside.len().to_string()),
         ),
+        ("  not covered", of(&|_, s| s.not_covered.len().to_string())),
         ("profiles compared by", of(&|_, s| affinity(s))),
         ("axes above chance", of(&|_, s| axes_worth(s))),
         ("  first five carry", of(&|_, s| first_five(s))),
@@ -145,7 +148,8 @@ fn matrices(text: &mut String, study: &Study, found: &Inspection) -> Result {
         wrapped(text, "", &format!("{name} hubs: {}", hubs.join(", ")))?;
         for (what, parcels) in [
             ("outside the largest part", &species.outside_largest_part),
-            ("set aside", &species.set_aside),
+            ("set aside, no links", &species.set_aside),
+            ("not covered by the data", &species.not_covered),
         ] {
             if !parcels.is_empty() {
                 wrapped(text, "", &format!("{name} {what}: {}", names(parcels)))?;
@@ -304,6 +308,12 @@ fn span(species: &SpeciesFacts) -> String {
 
 fn sums(species: &SpeciesFacts) -> &'static str {
     match species.sums_to_one {
+        SumsToOne::Rows if species.rectangular == Some(RowsAre::Targets) => {
+            "each target (shares of what it receives)"
+        }
+        SumsToOne::Columns if species.rectangular == Some(RowsAre::Targets) => {
+            "each source (shares of what it sends)"
+        }
         SumsToOne::Rows => "each row (shares of a source)",
         SumsToOne::Columns => "each column (shares of a target)",
         SumsToOne::Both => "each row and each column",
@@ -320,7 +330,38 @@ fn because(species: &SpeciesFacts) -> String {
     }
 }
 
+/// What the entries of a profile stand for.
+fn columns(species: &SpeciesFacts) -> String {
+    let Some(parcels_are) = species.rectangular else {
+        return "each other".to_owned();
+    };
+    let traced = species
+        .tracer
+        .map_or_else(String::new, |tracer| format!(", {tracer}"));
+    let others = parcels_are.opposite();
+    match species.columns - species.columns_within {
+        0 => format!("{} of them as {others}{traced}", species.columns),
+        n => format!("{} {others}{traced}, {n} elsewhere", species.columns),
+    }
+}
+
+fn never_observed(species: &SpeciesFacts) -> String {
+    let entries = species.parcels * species.columns;
+    match species.missing {
+        0 => "none".to_owned(),
+        n => format!(
+            "{n} entries ({:.1} %)",
+            100.0 * n as f64 / entries.max(1) as f64
+        ),
+    }
+}
+
 fn direction(species: &SpeciesFacts) -> &'static str {
+    match species.rectangular {
+        Some(RowsAre::Sources) => return "rectangular, parcels are sources",
+        Some(RowsAre::Targets) => return "rectangular, parcels are targets",
+        None => {}
+    }
     match (species.weights, species.directed, species.filled) {
         (WeightKind::Correlations, ..) => "none (mean of both halves)",
         (_, false, _) => "none (symmetric)",

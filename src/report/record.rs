@@ -56,6 +56,7 @@ struct SpeciesCounts<'s> {
     name: &'s str,
     parcels: usize,
     set_aside: &'s [String],
+    not_covered: &'s [String],
     eigenvalues: Vec<f64>,
 }
 
@@ -91,6 +92,7 @@ impl<'s> Record<'s> {
                     name: species.parcels.species(),
                     parcels: species.parcels.len(),
                     set_aside: species.parcels.isolated(),
+                    not_covered: species.parcels.uncovered(),
                     eigenvalues: species.embedding.eigenvalues.to_vec(),
                 }
             }),

@@ -181,10 +181,15 @@ fn outsiders(text: &mut String, study: &Study, located: &Located) -> Result {
             .take(LISTED)
             .map(|(parcel, d)| format!("{} {d:.2}", short(&parcels.labels()[*parcel])))
             .collect();
-        let aside = match parcels.isolated().len() {
-            0 => String::new(),
-            n => format!("; set aside without connections: {n}"),
-        };
+        let mut aside = String::new();
+        for (why, set_aside) in [
+            ("set aside without connections", parcels.isolated()),
+            ("not covered by the data", parcels.uncovered()),
+        ] {
+            if !set_aside.is_empty() {
+                aside += &format!("; {why}: {}", set_aside.len());
+            }
+        }
         let species = short(parcels.species());
         writeln!(text, "  {species}: {}{aside}", named.join(", "))?;
     }

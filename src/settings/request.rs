@@ -162,7 +162,7 @@ impl Request {
                 .min(replicates),
             seed: Seed(self.seed.unwrap_or(SEED)),
             axes: self.axes.unwrap_or(Axes::Auto),
-            embedding: self.embedding.unwrap_or(embed::Method::Diffusion),
+            embedding: self.embedding.unwrap_or(embed::Method::OF_SQUARE),
             density_exponent: self.density_exponent.unwrap_or(DENSITY_EXPONENT),
             diffusion_time: self.diffusion_time.unwrap_or(DIFFUSION_TIME),
             evidence: self.evidence.unwrap_or(EvidenceChoice::Auto),
