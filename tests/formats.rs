@@ -745,7 +745,7 @@ fn counterparts(rewrite: impl Fn(&[String], &[Vec<f64>], &str) -> Vec<u8>, keys:
         .args(["--replicates", "20", "--quiet"]);
     Run::of(&mut command).succeeded();
     let inputs = &common::record(&out)["inputs"];
-    let recorded = inputs["labels"]["b"]["path"].as_str();
+    let recorded = inputs["labels"]["b"][0]["path"].as_str();
     assert_eq!(recorded.is_some(), keys.contains("labels"), "{inputs}");
     common::read(&out.join("counterparts.csv"))
 }
