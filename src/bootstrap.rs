@@ -8,6 +8,6 @@ mod stream;
 
 pub use blocks::{accumulate, BLOCK};
 pub use interval::{interval, LEVEL};
-pub use resample::Resampling;
+pub use resample::{steady, Resampling};
 pub use spread::Spread;
 pub use stream::{Purpose, Stream};

@@ -1,9 +1,21 @@
 //! Kinds of evidence for homology, behind one trait: from two species and their landmarks to how
 //! unlike any two parcels are.
 
+mod fingerprint;
+mod grown;
 mod joint_distance;
+mod kind;
+mod links;
+mod transport;
 
+pub use fingerprint::Fingerprint;
+pub use grown::Grown;
 pub use joint_distance::JointDistance;
+pub use kind::Kind;
+pub use links::{Expression, Links};
+pub use transport::{Transport, MOST_PAIRS};
+
+use std::sync::OnceLock;
 
 use ndarray::{Array2, Axis};
 use thiserror::Error;
@@ -11,6 +23,7 @@ use thiserror::Error;
 use crate::bootstrap::Stream;
 use crate::domain::{Landmarks, Pair};
 use crate::species::Species;
+use crate::transport::Structures;
 
 /// What every kind of evidence may use.
 #[derive(Debug, Clone)]
@@ -22,6 +35,10 @@ pub struct Material<'m> {
     /// Coordinates of the landmarks in each embedding `(landmarks, axes)`; a landmark of several
     /// parcels stands at their centroid.
     pub anchors: Pair<Array2<f64>>,
+    /// Links and affinities, made when a kind first asks for them.
+    links: OnceLock<Pair<Links>>,
+    /// What transport compares, under each expression.
+    structures: [OnceLock<Structures>; Expression::ALL.len()],
 }
 
 impl<'m> Material<'m> {
@@ -45,7 +62,36 @@ impl<'m> Material<'m> {
             species,
             landmarks,
             anchors,
+            links: OnceLock::new(),
+            structures: std::array::from_fn(|_| OnceLock::new()),
         }
+    }
+
+    /// Links and affinities of both species.
+    #[must_use]
+    pub fn links(&self) -> &Pair<Links> {
+        self.links
+            .get_or_init(|| self.species.map(|species| Links::of(species)))
+    }
+
+    /// What transport compares under an expression. Where one network is not square both are compared
+    /// by their affinities.
+    #[must_use]
+    pub fn structures(&self, expression: Expression) -> &Structures {
+        self.structures[expression as usize].get_or_init(|| {
+            let links = self.links();
+            let by_affinity = !(links.a.is_square && links.b.is_square);
+            let structure = links
+                .as_ref()
+                .map(|links| links.structure(expression, by_affinity));
+            Structures::new(&structure.a, &structure.b)
+        })
+    }
+
+    /// Number of parcels of both species.
+    #[must_use]
+    pub fn sizes(&self) -> Pair<usize> {
+        self.species.map(|species| species.parcels.len())
     }
 
     /// Coordinates of both species' parcels, `(parcels, axes)` each.
@@ -100,4 +146,10 @@ pub trait Fitted: Send + Sync {
     /// Fills `out[(i, j)]` with how unlike parcel `a[i]` of species a and parcel `b[j]` of species b
     /// are. Only the order within one fit means anything: less is more alike.
     fn dissimilarities(&self, a: &[usize], b: &[usize], out: &mut Array2<f64>);
+
+    /// Of evidence that carries mass: where the mass of each parcel goes `(parcels of a, parcels of
+    /// b)`, as a share of what the parcel of a has, and of what the parcel of b has.
+    fn shares(&self) -> Option<Pair<&Array2<f64>>> {
+        None
+    }
 }

@@ -7,6 +7,7 @@ mod axes;
 mod coverage;
 mod hubs;
 mod landmarks;
+mod space;
 mod suggestion;
 mod systems;
 
@@ -14,6 +15,7 @@ pub use axes::{AxesAllowed, AxesWorth};
 pub use coverage::{Beyond, Coverage, Far, System};
 pub use hubs::Hub;
 pub use landmarks::{BasisCount, LandmarkFacts};
+pub use space::{AttributeFacts, DistanceFacts};
 pub use suggestion::Suggestion;
 pub use systems::systems;
 
@@ -99,6 +101,10 @@ pub struct SpeciesFacts {
     pub affinity_parts: usize,
     /// The parcels with the largest strength.
     pub hubs: Vec<Hub>,
+    /// What is known of its parcels besides.
+    pub attributes: AttributeFacts,
+    /// Distances between them, where known.
+    pub distances: Option<DistanceFacts>,
     /// What the leading axes of its embedding carry.
     pub axes: AxesWorth,
     /// What of its connectivity the landmarks speak for.
@@ -176,6 +182,8 @@ fn species_facts(study: &Study, side: Side, beyond: &[f64]) -> SpeciesFacts {
         outside_largest_part: raw.outside.iter().map(|&i| labels[i].clone()).collect(),
         affinity_parts: parts.sizes.len(),
         hubs: hubs::hubs(study, side),
+        attributes: AttributeFacts::of(species),
+        distances: DistanceFacts::of(study, side),
         axes: AxesWorth::of(&species.embedding),
         coverage: Coverage::of(study, side, &affinity, beyond),
     }

@@ -38,5 +38,6 @@ pub mod report;
 pub mod settings;
 pub mod species;
 pub mod transform;
+pub mod transport;
 pub mod warning;
 pub mod watch;

@@ -1,7 +1,9 @@
 //! The main job: where every parcel of either species falls in the other's space.
 
 mod axes;
+mod chance;
 mod left_out;
+mod ranking;
 mod replicates;
 mod span;
 
@@ -10,13 +12,16 @@ pub use left_out::LeftOut;
 pub use replicates::Tally;
 pub use span::beyond_landmarks;
 
-use ndarray::{Array2, ArrayView1};
+use chance::Support;
+use ranking::{Ranker, Ranking};
+
+use serde::Serialize;
 
 use crate::align::{Alignment, Params, PerAlignment};
 use crate::bootstrap::{interval, Purpose, Stream};
-use crate::domain::{Pair, Side};
-use crate::evidence::{Evidence, Material};
-use crate::holdout::{self, Asked, Choice, Curve, Way};
+use crate::domain::Pair;
+use crate::evidence::{Evidence, Expression, Grown, Kind, Material, Transport, Unavailable};
+use crate::holdout::{self, Asked, Choice, Curve, Member, OutOfBag, Trials, Way};
 use crate::place;
 use crate::prepare::Study;
 use crate::settings::EvidenceChoice;
@@ -24,7 +29,7 @@ use crate::warning::Warning;
 use crate::watch::{Interrupted, Watch};
 
 /// One candidate for the counterpart of a parcel.
-#[derive(Debug, Clone, Copy, PartialEq)]
+#[derive(Debug, Clone, PartialEq)]
 pub struct Counterpart {
     /// The candidate, a parcel of the other species.
     pub parcel: usize,
@@ -38,6 +43,24 @@ pub struct Counterpart {
     pub support: f64,
     /// Whether each is the other's first.
     pub mutual: bool,
+    /// The kinds of evidence that put it first by themselves.
+    pub kinds_agreeing: Vec<Kind>,
+    /// Of first candidates, the estimated chance of being right.
+    pub chance: Option<f64>,
+}
+
+/// What the ranking rests on.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub struct Rests {
+    /// Each kind with its weight and left-out error.
+    pub kinds: Vec<Member>,
+    /// Kinds that have nothing to say about this study, with the reason.
+    pub unavailable: Vec<String>,
+    /// Replicates of transport that were averaged; 0 where it takes no part.
+    pub transport_replicates: usize,
+    /// Replicates that support and rank intervals come from.
+    pub ranking_replicates: usize,
 }
 
 /// A parcel that is no landmark, and its candidates, best first.
@@ -56,6 +79,8 @@ pub struct Located {
     pub curves: Vec<Curve>,
     /// What was settled on.
     pub choice: Choice,
+    /// What ranks, and how much each kind of evidence counts.
+    pub evidence: Rests,
     /// Both joint spaces.
     pub spaces: PerAlignment<Space>,
     /// Every landmark, left out.
@@ -88,40 +113,116 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         ridge: settings.ridge,
     };
 
-    let ways: Vec<Way> = Alignment::BOTH
+    let mut ways: Vec<Way> = Alignment::BOTH
         .into_iter()
         .flat_map(|alignment| study.axes.iter().map(move |&axes| params(alignment, axes)))
-        .map(Way)
+        .map(Way::Joint)
         .collect();
-    let asked = Asked::draw(&study.landmarks, settings.seed);
-    let trials = holdout::run(&material, &ways, &open, &asked, settings.seed, watch)?;
-    let evidence = match settings.evidence {
-        EvidenceChoice::Auto => None,
+    let mut unavailable = Vec::new();
+    for way in further_ways(study) {
+        match can_be_fitted(&way, &material, study) {
+            Ok(()) => ways.push(way),
+            Err(why) => unavailable.push(why),
+        }
+    }
+    let candidates = &study.candidates;
+    let asked = Asked::draw(&study.landmarks, candidates, settings.seed);
+    let mut trials = holdout::run(
+        &material,
+        &ways,
+        &open,
+        candidates,
+        &asked,
+        settings.seed,
+        watch,
+    )?;
+    let bagged = match transport(study, &material, &open, &asked, watch)? {
+        Some(Ok(bagged)) => {
+            let placed = holdout::placed_out_of_bag(&material, &bagged, &open, candidates, &asked);
+            ways.push(Way::Transport);
+            trials.add(placed);
+            Some(bagged)
+        }
+        Some(Err(why)) => {
+            unavailable.push(why);
+            None
+        }
+        None => None,
+    };
+    let alignment = match settings.evidence {
         EvidenceChoice::Procrustes => Some(Alignment::Procrustes),
         EvidenceChoice::Canonical => Some(Alignment::Canonical),
+        _ => None,
     };
-    let choice = holdout::choose(&ways, &trials, evidence, None);
+    let choice = holdout::choose(&ways, &trials, alignment, None);
     let settled = PerAlignment::from_fn(|alignment| params(alignment, choice.axes[alignment]));
 
-    let left_out = left_out::summarise(&material, &ways, &trials, &choice, evidence, &asked);
+    let members = members(settings.evidence, &ways, &trials, &choice);
+    let mixes = matches!(
+        settings.evidence,
+        EvidenceChoice::Mixture | EvidenceChoice::Transport
+    );
+    let mixture = mixes.then(|| {
+        holdout::leave_out(
+            &material,
+            &ways,
+            &trials,
+            &members,
+            bagged.as_ref(),
+            &open,
+            candidates,
+            &asked,
+            settings.seed,
+        )
+    });
+    let way = match &mixture {
+        // To those who judge landmarks the mixture is a way of ranking like any other.
+        Some(found) => trials.add(found.iter().map(|found| found.placed).collect()),
+        None => members[0].way,
+    };
+    let left_out = left_out::summarise(&material, &ways, &trials, way, &choice, alignment, &asked);
+    let support = Support::new(match mixture {
+        Some(found) => found.into_iter().map(|found| found.first).collect(),
+        None => left_out::firsts(&left_out),
+    });
     let mut spaces =
         PerAlignment::from_fn(|alignment| Space::fit(&material, settled[alignment], &asked));
 
-    let ranking = JointRanking::new(&material, ways[choice.way], &open, study);
+    let transport_replicates = bagged.as_ref().map_or(0, |bagged| bagged.each.len());
+    let ranker = if mixes {
+        Ranker::Mixture {
+            members: members.iter().map(|m| (*m, ways[m.way])).collect(),
+            replicates: bagged
+                .as_ref()
+                .map_or(settings.rank_replicates, |bagged| bagged.each.len()),
+            bagged,
+        }
+    } else {
+        Ranker::One(ways[way])
+    };
+    let ranking_replicates = ranker.replicates(settings.replicates);
+    let ranking = Ranking::new(&material, ranker, &open, study);
     let tally = replicates::run(study, &material, &spaces, &ranking, watch)?;
     for alignment in Alignment::BOTH {
         spaces[alignment].standard_errors = tally.standard_errors(alignment);
     }
 
-    let placements =
-        Pair::from_fn(|side| ranking.placements(side, study, &tally, &spaces[choice.evidence]));
+    let placements = Pair::from_fn(|side| {
+        ranking.placements(side, study, &tally, &spaces[choice.evidence], &support)
+    });
     let mut warnings = Vec::new();
+    for why in &unavailable {
+        warnings.push(Warning::EvidenceUnavailable {
+            kind: why.kind.clone(),
+            why: why.why.clone(),
+        });
+    }
     for (landmark, found) in study.landmarks.list().iter().zip(&left_out) {
-        if found.contradicted {
+        if let Some(placed) = found.contradicted {
             warnings.push(Warning::Contradicted {
                 landmark: landmark.name.clone(),
-                from_a: (found.placed.a.rank, found.placed.a.candidates),
-                from_b: (found.placed.b.rank, found.placed.b.candidates),
+                from_a: (placed.a.rank, placed.a.candidates),
+                from_b: (placed.b.rank, placed.b.candidates),
             });
         }
     }
@@ -148,6 +249,12 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             .collect(),
         beyond: beyond_landmarks(&material, settled[choice.evidence].axes),
         choice,
+        evidence: Rests {
+            kinds: members,
+            unavailable: unavailable.iter().map(ToString::to_string).collect(),
+            transport_replicates,
+            ranking_replicates,
+        },
         spaces,
         left_out,
         placements,
@@ -155,82 +262,112 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
     })
 }
 
-/// The full-sample ranking of open parcels against open parcels, and which of it is listed.
-pub struct JointRanking {
-    /// What ranks.
-    way: Way,
-    /// Parcels that are no landmark.
-    open: Pair<Vec<usize>>,
-    /// For each open parcel its listed candidates, as places in `open` of the other side.
-    listed: Pair<Vec<Vec<usize>>>,
+/// Cheap ways of ranking beside distances in the joint spaces that the settings ask for.
+fn further_ways(study: &Study) -> Vec<Way> {
+    let grown = Way::Grown(Grown {
+        axes: study.axes.iter().copied().max().unwrap_or(1),
+        ridge: study.settings.ridge,
+    });
+    match study.settings.evidence {
+        EvidenceChoice::Mixture => vec![Way::Fingerprint, grown],
+        EvidenceChoice::Fingerprint => vec![Way::Fingerprint],
+        EvidenceChoice::Grown => vec![grown],
+        _ => Vec::new(),
+    }
 }
 
-impl JointRanking {
-    fn new(
-        material: &Material<'_>,
-        way: Way,
-        open: &Pair<Vec<usize>>,
-        study: &Study,
-    ) -> JointRanking {
-        let weights = material.weights(|_| 1.0);
-        // The full sample comes before the first replicate, so it takes the last index.
-        let mut chance = Stream::new(study.settings.seed, Purpose::Evidence, u64::MAX);
-        let fitted = way
-            .evidence()
-            .fit(material, &weights, &mut chance)
-            .expect("a checked study has landmarks enough");
-        let mut dissimilarities = Array2::zeros((open.a.len(), open.b.len()));
-        fitted.dissimilarities(&open.a, &open.b, &mut dissimilarities);
-        let best = |row: ArrayView1<'_, f64>| {
-            let mut order = place::order(row);
-            order.truncate(study.settings.top.of(order.len()));
-            order
-        };
-        JointRanking {
-            way,
-            open: open.clone(),
-            listed: Pair {
-                a: dissimilarities.rows().into_iter().map(best).collect(),
-                b: dissimilarities.columns().into_iter().map(best).collect(),
-            },
-        }
+/// Whether a study has what a way of ranking needs.
+fn can_be_fitted(way: &Way, material: &Material<'_>, study: &Study) -> Result<(), Unavailable> {
+    let weights = material.weights(|_| 1.0);
+    let mut chance = Stream::new(study.settings.seed, Purpose::Evidence, u64::MAX);
+    match way.evidence() {
+        Some(evidence) => evidence.fit(material, &weights, &mut chance).map(|_| ()),
+        None => Ok(()),
     }
+}
 
-    fn placements(
-        &self,
-        side: Side,
-        study: &Study,
-        tally: &Tally,
-        space: &Space,
-    ) -> Vec<Placement> {
-        let other = side.opposite();
-        let mut rank_intervals = tally.rank_intervals(side);
-        let mut placements: Vec<Option<Placement>> = vec![None; study.species[side].parcels.len()];
-        for (at, listed) in self.listed[side].iter().enumerate() {
-            let parcel = self.open[side][at];
-            let counterparts = listed
-                .iter()
-                .enumerate()
-                .map(|(place, &candidate)| Counterpart {
-                    parcel: self.open[other][candidate],
-                    rank: place + 1,
-                    rank_interval: rank_intervals.next().expect("one for each listed pair"),
-                    distance: space.distance(side, parcel, self.open[other][candidate]),
-                    support: tally.support(side, at, candidate),
-                    mutual: place == 0 && self.listed[other][candidate].first() == Some(&at),
-                })
-                .collect();
-            placements[parcel] = Some(Placement {
-                parcel,
-                counterparts,
-            });
-        }
-        let as_listed = study.species[side].parcels.as_listed();
-        as_listed
-            .iter()
-            .filter_map(|&parcel| placements[parcel].take())
-            .collect()
+/// Replicates of transport, where the settings ask for it.
+fn transport(
+    study: &Study,
+    material: &Material<'_>,
+    open: &Pair<Vec<usize>>,
+    asked: &Asked,
+    watch: &dyn Watch,
+) -> Result<Option<Result<OutOfBag, Unavailable>>, Interrupted> {
+    let settings = &study.settings;
+    if !matches!(
+        settings.evidence,
+        EvidenceChoice::Mixture | EvidenceChoice::Transport
+    ) {
+        return Ok(None);
     }
+    let members = Expression::ALL.map(|expression| Transport {
+        expression,
+        mass: settings.mass,
+    });
+    let members: Vec<&dyn Evidence> = members.iter().map(|m| m as &dyn Evidence).collect();
+    let parcels = study.species.as_ref().map(|s| s.parcels.len());
+    let replicates = Transport::replicates(settings.transport_replicates, parcels);
+    holdout::out_of_bag(
+        material,
+        &members,
+        replicates,
+        open,
+        asked,
+        settings.seed,
+        watch,
+    )
+    .map(Some)
+}
+
+/// Whether a kind takes part under a setting.
+fn takes(evidence: EvidenceChoice, kind: Kind) -> bool {
+    let only = match evidence {
+        EvidenceChoice::Mixture => return true,
+        EvidenceChoice::Procrustes => Kind::Procrustes,
+        EvidenceChoice::Canonical => Kind::Canonical,
+        EvidenceChoice::Fingerprint => Kind::Fingerprint,
+        EvidenceChoice::Grown => Kind::Grown,
+        EvidenceChoice::Transport => Kind::Transport,
+    };
+    kind == only
+}
+
+/// The kinds that rank, with their weights.
+fn members(
+    evidence: EvidenceChoice,
+    ways: &[Way],
+    trials: &Trials,
+    choice: &Choice,
+) -> Vec<Member> {
+    let found: Vec<(Kind, usize)> = Kind::ALL
+        .into_iter()
+        .filter(|kind| takes(evidence, *kind))
+        .filter_map(|kind| {
+            let way = match kind {
+                Kind::Procrustes => Some(choice.ways.procrustes),
+                Kind::Canonical => Some(choice.ways.canonical),
+                _ => ways.iter().position(|way| way.kind() == kind),
+            };
+            Some((kind, way?))
+        })
+        .collect();
+    let kinds: Vec<Kind> = found.iter().map(|(kind, _)| *kind).collect();
+    let errors: Vec<Vec<f64>> = found
+        .iter()
+        .map(|(_, way)| trials.errors(*way, None))
+        .collect();
+    holdout::weigh(&kinds, &errors)
+        .into_iter()
+        .zip(found)
+        .zip(errors)
+        .map(|((weight, (kind, way)), errors)| Member {
+            kind,
+            weight,
+            error: errors.iter().sum::<f64>() / errors.len() as f64,
+            way,
+        })
+        .collect()
 }
 
 /// Intervals of ranks, one for each listed pair in order.

@@ -33,7 +33,7 @@ pub struct Painted {
     /// Whose axes were painted, where the run has any.
     pub alignment: Option<String>,
     /// What gave the distances, as the run names it.
-    pub ranked_by: String,
+    pub distances_from: String,
     /// Parcels of the species that take part in the run.
     pub parcels: usize,
     /// The surfaces, one for each label file.
@@ -97,7 +97,7 @@ pub fn paint(request: &PaintRequest) -> Result<Painted, PaintError> {
             ("Run", run.title.as_str()),
             ("Species", own.as_str()),
             ("ComparedWith", other.as_str()),
-            ("RankedBy", run.ranked_by.as_str()),
+            ("DistancesFrom", run.distances_from.as_str()),
             ("Caution", caution.as_str()),
         ];
         if let Some(structure) = &labels.structure {
@@ -127,7 +127,7 @@ pub fn paint(request: &PaintRequest) -> Result<Painted, PaintError> {
         species: own.clone(),
         other: other.clone(),
         alignment: maps.alignment,
-        ranked_by: run.ranked_by.clone(),
+        distances_from: run.distances_from.clone(),
         parcels: run.species[side].parcels.len(),
         surfaces: painted,
         warnings,

@@ -1,4 +1,8 @@
-//! Where a parcel falls among the other species' parcels: order, rank, nearest.
+//! Where a parcel falls among the other species' parcels: candidates, order, rank, nearest.
+
+mod candidates;
+
+pub use candidates::Candidates;
 
 use ndarray::{Array2, ArrayView1};
 
@@ -42,14 +46,42 @@ pub fn rank(dissimilarities: &[f64], candidate: usize) -> usize {
     1 + count_below(before, own).1 + count_below(after, own).0
 }
 
+/// For every pair the mean, over both directions, of ln(rank) / ln(candidates): 0 where each is the
+/// other's first, 1 where each is the other's last. Ties share no rank: the first label is ahead.
+#[must_use]
+pub fn log_ranks(dissimilarities: &Array2<f64>) -> Array2<f64> {
+    let (rows, columns) = dissimilarities.dim();
+    let logs = |candidates: usize| -> Vec<f64> {
+        let scale = if candidates > 1 {
+            0.5 / (candidates as f64).ln()
+        } else {
+            0.0
+        };
+        (1..=candidates).map(|r| (r as f64).ln() * scale).collect()
+    };
+    let (of_row, of_column) = (logs(columns), logs(rows));
+    let mut all = Array2::zeros((rows, columns));
+    for (row, mut out) in dissimilarities.rows().into_iter().zip(all.rows_mut()) {
+        for (place, candidate) in order(row).into_iter().enumerate() {
+            out[candidate] = of_row[place];
+        }
+    }
+    for (column, mut out) in dissimilarities.columns().into_iter().zip(all.columns_mut()) {
+        for (place, candidate) in order(column).into_iter().enumerate() {
+            out[candidate] += of_column[place];
+        }
+    }
+    all
+}
+
 /// The best candidate of every row (a's parcels) and of every column (b's parcels); `None` where
-/// there is no candidate.
+/// there is no candidate. What is infinitely unlike is none (see [`Candidates::close`]).
 ///
 /// # Panics
 /// If the rows of the matrix are not contiguous.
 #[must_use]
 pub fn nearest(dissimilarities: &Array2<f64>) -> Pair<Vec<Option<usize>>> {
-    let (rows, columns) = dissimilarities.dim();
+    let columns = dissimilarities.ncols();
     let mut least = vec![f64::INFINITY; columns];
     let mut first_row = vec![0; columns];
     let by_row = dissimilarities
@@ -66,7 +98,8 @@ pub fn nearest(dissimilarities: &Array2<f64>) -> Pair<Vec<Option<usize>>> {
         a: by_row,
         b: first_row
             .into_iter()
-            .map(|row| (rows > 0).then_some(row as usize))
+            .zip(least)
+            .map(|(row, least)| (least < f64::INFINITY).then_some(row as usize))
             .collect(),
     }
 }
@@ -75,6 +108,17 @@ pub fn nearest(dissimilarities: &Array2<f64>) -> Pair<Vec<Option<usize>>> {
 mod tests {
     use super::*;
     use ndarray::array;
+
+    #[test]
+    fn log_ranks_are_the_mean_of_both_directions() {
+        let d = array![[1.0, 2.0, 3.0], [2.0, 9.0, 1.0]];
+        let found = log_ranks(&d);
+        let log = |rank: f64, of: f64| rank.ln() / of.ln();
+        assert_eq!(found[(0, 0)], 0.0);
+        assert!((found[(1, 1)] - (log(3.0, 3.0) + log(2.0, 2.0)) / 2.0).abs() < 1e-15);
+        assert!((found[(0, 2)] - (log(3.0, 3.0) + log(2.0, 2.0)) / 2.0).abs() < 1e-15);
+        assert!((found[(1, 0)] - (log(2.0, 3.0) + log(2.0, 2.0)) / 2.0).abs() < 1e-15);
+    }
 
     #[test]
     fn ties_go_to_the_first_label() {
@@ -86,5 +130,13 @@ mod tests {
         let nearest = nearest(&d);
         assert_eq!(nearest.a, [Some(1), Some(0)]);
         assert_eq!(nearest.b, [Some(1), Some(0), Some(0)]);
+    }
+
+    #[test]
+    fn what_is_no_candidate_is_nobody_s_nearest() {
+        let no = f64::INFINITY;
+        let found = nearest(&array![[no, 1.0], [no, no]]);
+        assert_eq!(found.a, [Some(1), None]);
+        assert_eq!(found.b, [None, Some(0)]);
     }
 }

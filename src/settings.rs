@@ -7,18 +7,25 @@ pub use request::{BadSetting, Request};
 use serde::{Serialize, Serializer};
 
 use crate::bootstrap::Resampling;
-use crate::domain::{choices, Seed};
+use crate::domain::{choices, Hemispheres, Seed};
 use crate::embed;
+use crate::transport::Mass;
 
 choices! {
-    /// Which dissimilarities rank the counterparts.
+    /// What ranks the counterparts.
     pub enum EvidenceChoice {
-        /// Canonical, unless left-out landmarks say that Procrustes is clearly better.
-        Auto = "auto",
+        /// All kinds, weighed by left-out landmarks.
+        Mixture = "mixture",
         /// Distance after weighted Procrustes alignment.
         Procrustes = "procrustes",
         /// Distance between canonical variates.
         Canonical = "canonical",
+        /// Connections with the landmarks.
+        Fingerprint = "fingerprint",
+        /// Canonical distance with anchors grown step by step.
+        Grown = "grown",
+        /// Transport between the networks, averaged over replicates.
+        Transport = "transport",
     }
 }
 
@@ -89,10 +96,16 @@ pub struct Settings {
     pub diffusion_time: f64,
     /// What ranks the counterparts.
     pub evidence: EvidenceChoice,
+    /// Mass of parcels in transport.
+    pub mass: Mass,
+    /// Replicates of transport that are averaged.
+    pub transport_replicates: usize,
     /// Ridge of the canonical correlation, in units of the landmarks' mean variance.
     pub ridge: f64,
     /// How landmark blocks are drawn in a replicate.
     pub resampling: Resampling,
+    /// What hemispheres mean.
+    pub hemispheres: Hemispheres,
     /// Counterparts listed for each parcel.
     pub top: Top,
 }

@@ -174,6 +174,74 @@ pub enum Warning {
         /// Its name.
         column: String,
     },
+    /// A column of a table of parcels that means nothing here.
+    AttributeIgnored {
+        /// The species.
+        species: String,
+        /// Its name.
+        column: String,
+        /// A known column it may be a slip for.
+        near: Option<String>,
+    },
+    /// Rows of a table of parcels that the matrix knows nothing of.
+    ParcelsUnknown {
+        /// The species.
+        species: String,
+        /// Their labels.
+        parcels: Vec<String>,
+    },
+    /// Parcels of the matrix without a row in the table of parcels.
+    ParcelsUndescribed {
+        /// The species.
+        species: String,
+        /// Their labels.
+        parcels: Vec<String>,
+    },
+    /// Distances that depend on the direction.
+    DistancesAsymmetric {
+        /// The species.
+        species: String,
+        /// Largest difference.
+        largest: f64,
+    },
+    /// Distances in one half of the matrix only.
+    DistancesOneHalf {
+        /// The species.
+        species: String,
+    },
+    /// Different parcels at the distance 0.
+    DistancesZero {
+        /// The species.
+        species: String,
+        /// Pairs of them.
+        pairs: usize,
+    },
+    /// Sides are matched, but these parcels have none.
+    SideUnknown {
+        /// The species.
+        species: String,
+        /// The parcels.
+        parcels: Vec<String>,
+    },
+    /// Open parcels without any candidate on their side.
+    NoCandidate {
+        /// The species.
+        species: String,
+        /// The parcels.
+        parcels: Vec<String>,
+    },
+    /// Brains are folded, but these parcels of one side have no copy on the other.
+    NoCopy {
+        /// The species.
+        species: String,
+        /// The parcels.
+        parcels: Vec<String>,
+    },
+    /// Landmarks that became the same pair of parcels when brains were folded.
+    LandmarksMerged {
+        /// The landmark that stays and the one that went into it.
+        pairs: Vec<(String, String)>,
+    },
     /// A landmark that the others contradict.
     Contradicted {
         /// Its name.
@@ -205,6 +273,13 @@ pub enum Warning {
         replicates: usize,
         /// Of how many.
         of: usize,
+    },
+    /// A kind of evidence takes no part.
+    EvidenceUnavailable {
+        /// The kind.
+        kind: String,
+        /// The reason.
+        why: String,
     },
     /// The embedding yields fewer axes than could be tried.
     FewAxes {
@@ -357,13 +432,67 @@ impl fmt::Display for Warning {
             Warning::ColumnIgnored { column } => {
                 write!(f, "landmark table: column {column:?} is not used")
             }
+            Warning::AttributeIgnored {
+                species,
+                column,
+                near,
+            } => {
+                write!(f, "{species}, table of parcels: column {column:?} is not used")?;
+                match near {
+                    Some(near) => write!(f, "; did you mean {near:?}?"),
+                    None => Ok(()),
+                }
+            }
+            Warning::ParcelsUnknown { species, parcels } => write!(
+                f,
+                "{species}, table of parcels: not in the matrix and not used: {}",
+                listed(parcels)
+            ),
+            Warning::ParcelsUndescribed { species, parcels } => write!(
+                f,
+                "{species}, table of parcels: no row for {}; their attributes stay empty",
+                listed(parcels)
+            ),
+            Warning::DistancesAsymmetric { species, largest } => write!(
+                f,
+                "{species}: the distances are not symmetric (largest difference {largest:.3}); the mean of both halves is used"
+            ),
+            Warning::DistancesOneHalf { species } => write!(
+                f,
+                "{species}: only one half of the matrix of distances is filled; it is used for both directions"
+            ),
+            Warning::DistancesZero { species, pairs } => write!(
+                f,
+                "{species}: {} of different parcels at the distance 0; in a list of connections a pair that is absent has it, so check that all are there",
+                if *pairs == 1 { "1 pair".to_owned() } else { format!("{pairs} pairs") }
+            ),
+            Warning::SideUnknown { species, parcels } => write!(
+                f,
+                "{species}: no hemisphere is known of {}; their counterparts are sought on both sides",
+                listed(parcels)
+            ),
+            Warning::NoCandidate { species, parcels } => write!(
+                f,
+                "{species}: no open parcel of the other species lies on the side of {}; they get no counterpart. Where one map has one hemisphere only, hemispheres = \"fold\" may be what you want",
+                listed(parcels)
+            ),
+            Warning::NoCopy { species, parcels } => write!(
+                f,
+                "{species}: no copy on the other side was found for {}; they are kept as they are",
+                listed(parcels)
+            ),
+            Warning::LandmarksMerged { pairs } => write!(
+                f,
+                "landmarks that are one when the brains are folded; the first of each counts: {}",
+                listed(&pairs.iter().map(|(first, second)| format!("{first} and {second}")).collect::<Vec<_>>())
+            ),
             Warning::Contradicted {
                 landmark,
                 from_a,
                 from_b,
             } => write!(
                 f,
-                "landmark {landmark} is contradicted by the others: left out, its counterpart ranks {} of {} and {} of {}; check it, or run again without it",
+                "landmark {landmark} is contradicted by the others: left out, its counterpart ranks {} of {} and {} of {} in the joint space; check it, or run again without it",
                 from_a.0, from_a.1, from_b.0, from_b.1
             ),
             Warning::SurfaceUnknown {
@@ -437,6 +566,10 @@ impl fmt::Display for Warning {
             Warning::DegenerateReplicates { replicates, of } => write!(
                 f,
                 "{replicates} of {of} replicates drew fewer distinct landmark blocks than axes + 1; use --resampling bayesian"
+            ),
+            Warning::EvidenceUnavailable { kind, why } => write!(
+                f,
+                "evidence {kind} takes no part: {why}; the other kinds rank without it"
             ),
             Warning::FewAxes { species, axes } => write!(
                 f,

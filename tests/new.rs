@@ -74,6 +74,8 @@ fn drafts_agree_with_the_studies_that_come_along() {
             assert_eq!(draft.transform, real.transform);
             assert_eq!(draft.likeness, real.likeness);
             assert_eq!(draft.strongest, real.strongest);
+            let name = |path: &Option<PathBuf>| path.as_deref().map(file_name).map(str::to_owned);
+            assert_eq!(name(&draft.parcels), name(&real.parcels));
         }
         assert_eq!(draft.request, real.request);
 

@@ -742,9 +742,12 @@ fn the_record_says_what_was_done() {
             "embedding": "diffusion",
             "density-exponent": 0.5,
             "diffusion-time": 1.0,
-            "evidence": "auto",
+            "evidence": "mixture",
+            "mass": "uniform",
+            "transport-replicates": 120,
             "ridge": 0.25,
             "resampling": "bayesian",
+            "hemispheres": "ignore",
             "top": "all",
         })
     );

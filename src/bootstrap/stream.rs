@@ -18,6 +18,12 @@ pub enum Purpose {
     Evidence,
     /// Chance inside a kind of evidence, with landmarks left out.
     EvidenceLeftOut,
+    /// Which blocks of landmarks costly evidence does without, in three replicates.
+    OutOfBag,
+    /// Weights of the blocks it keeps, in a replicate.
+    OutOfBagWeights,
+    /// Chance inside it, in a replicate.
+    OutOfBagFit,
 }
 
 impl Purpose {
@@ -27,6 +33,9 @@ impl Purpose {
             Purpose::AskedMember => "asked member",
             Purpose::Evidence => "evidence",
             Purpose::EvidenceLeftOut => "evidence left out",
+            Purpose::OutOfBag => "out of bag",
+            Purpose::OutOfBagWeights => "out of bag weights",
+            Purpose::OutOfBagFit => "out of bag fit",
         }
     }
 }

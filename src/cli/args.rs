@@ -80,7 +80,7 @@ pub struct Paint {
     #[arg(long, value_name = "LABEL")]
     parcel: Vec<String>,
 
-    /// Alignment whose axes are painted [default: the one whose distances rank in the run]
+    /// Alignment whose axes are painted [default: the one whose distances the run shows]
     #[arg(long, value_name = "procrustes|canonical")]
     alignment: Option<String>,
 
@@ -161,10 +161,23 @@ struct SettingOptions {
     #[arg(long, value_name = "T", value_parser = checked("diffusion-time"))]
     diffusion_time: Option<String>,
 
-    /// What ranks counterparts: distance in one of the joint spaces, or auto: canonical, unless
-    /// left-out landmarks say that procrustes is clearly better [default: auto]
-    #[arg(long, value_name = "auto|procrustes|canonical", value_parser = checked("evidence"))]
+    /// What ranks counterparts: one kind of evidence, or all of them weighed by left-out landmarks
+    /// [default: mixture]
+    #[arg(
+        long,
+        value_name = "mixture|procrustes|canonical|fingerprint|grown|transport",
+        value_parser = checked("evidence")
+    )]
     evidence: Option<String>,
+
+    /// Mass of parcels in transport: the same for all, in proportion to areas, or free on the side
+    /// of the candidates [default: uniform]
+    #[arg(long, value_name = "uniform|area|free", value_parser = checked("mass"))]
+    mass: Option<String>,
+
+    /// Replicates of transport to average; large species get fewer, down to 24 [default: 120]
+    #[arg(long, value_name = "N", value_parser = checked("transport-replicates"))]
+    transport_replicates: Option<String>,
 
     /// Ridge of the canonical correlation in units of the landmarks' mean variance; 0 is classical
     /// [default: 0.4]
@@ -175,6 +188,11 @@ struct SettingOptions {
     /// [default: bayesian]
     #[arg(long, value_name = "bayesian|ordinary", value_parser = checked("resampling"))]
     resampling: Option<String>,
+
+    /// What hemispheres mean: match allows only counterparts on the same side, fold makes one parcel
+    /// of the left and the right copy of an area [default: ignore]
+    #[arg(long, value_name = "ignore|match|fold", value_parser = checked("hemispheres"))]
+    hemispheres: Option<String>,
 
     /// Counterparts listed for each parcel [default: 10]
     #[arg(long, value_name = "N|all", value_parser = checked("top"))]
@@ -227,8 +245,11 @@ impl SettingOptions {
             ("density-exponent", &given.density_exponent),
             ("diffusion-time", &given.diffusion_time),
             ("evidence", &given.evidence),
+            ("mass", &given.mass),
+            ("transport-replicates", &given.transport_replicates),
             ("ridge", &given.ridge),
             ("resampling", &given.resampling),
+            ("hemispheres", &given.hemispheres),
             ("top", &given.top),
             ("quiet", &quiet),
             ("replace", &replace),

@@ -1,5 +1,7 @@
 //! The parcels of one species that take part, and those that cannot.
 
+use std::collections::BTreeMap;
+
 /// Whether a parcel takes part, and if not, why.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub enum Standing {
@@ -20,6 +22,7 @@ pub struct Parcels {
     as_listed: Vec<usize>,
     isolated: Vec<String>,
     uncovered: Vec<String>,
+    copies: BTreeMap<String, String>,
 }
 
 impl Parcels {
@@ -46,7 +49,27 @@ impl Parcels {
             as_listed: in_file.into_iter().map(|i| place[i]).collect(),
             isolated: names(with(Standing::Isolated)),
             uncovered: names(with(Standing::Uncovered)),
+            copies: BTreeMap::new(),
         }
+    }
+
+    /// The same parcels, of which some were made of copies: each copy's label and that of the parcel
+    /// it went into.
+    #[must_use]
+    pub fn made_of(self, copies: BTreeMap<String, String>) -> Self {
+        Parcels { copies, ..self }
+    }
+
+    /// The label of the parcel that a label stands for: that of a copy for the parcel it went into.
+    #[must_use]
+    pub fn resolve<'l>(&'l self, label: &'l str) -> &'l str {
+        self.copies.get(label).map_or(label, String::as_str)
+    }
+
+    /// How many parcels, isolated ones included, are made of a left and a right copy.
+    #[must_use]
+    pub fn folded(&self) -> usize {
+        self.copies.len() / 2
     }
 
     /// The species' name.
@@ -91,9 +114,10 @@ impl Parcels {
         &self.uncovered
     }
 
-    /// Index of a parcel that takes part.
+    /// Index of a parcel that takes part, by its label or by that of a copy.
     #[must_use]
     pub fn find(&self, label: &str) -> Option<usize> {
+        let label = self.resolve(label);
         self.labels
             .binary_search_by(|known| known.as_bytes().cmp(label.as_bytes()))
             .ok()

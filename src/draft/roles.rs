@@ -1,4 +1,4 @@
-//! Which file of a folder is which: two matrices and a landmark table.
+//! Which file of a folder is which: two matrices, a landmark table, tables of parcels.
 
 use std::collections::HashSet;
 use std::path::Path;
@@ -6,10 +6,13 @@ use std::path::Path;
 use super::guess::guess;
 use super::labels;
 use super::names::names;
-use super::{Draft, DraftError, DraftSpecies, FoundLabels, FoundLandmarks, FoundMatrix};
+use super::{
+    Draft, DraftError, DraftSpecies, FoundLabels, FoundLandmarks, FoundMatrix, FoundParcels,
+};
 use crate::domain::{Pair, Side};
 use crate::input::{
-    is_binary, read_matrix_of, recognise, LandmarkLooks, Looks, MatrixLooks, SpeciesFile,
+    is_binary, read_matrix_of, recognise, LandmarkLooks, Looks, MatrixLooks, ParcelLooks,
+    SpeciesFile,
 };
 use crate::transform;
 
@@ -23,12 +26,14 @@ pub fn assign(folder: &Path) -> Result<Draft, DraftError> {
     let mut matrices = Vec::new();
     let mut tables = Vec::new();
     let mut lists = Vec::new();
+    let mut described = Vec::new();
     let mut unused = Vec::new();
     for name in files(folder)? {
         match recognise(&folder.join(&name)) {
             Looks::Matrix(looks) => matrices.push((name, *looks)),
             Looks::Landmarks(looks) => tables.push((name, looks)),
             Looks::Labels(labels) => lists.push((name, labels)),
+            Looks::Parcels(looks) => described.push((name, looks)),
             Looks::Neither(why) => unused.push((name, why)),
         }
     }
@@ -65,6 +70,13 @@ pub fn assign(folder: &Path) -> Result<Draft, DraftError> {
     for matrix in matrices.into_iter().flatten() {
         unused.push((matrix.file, "two other matrices were taken".to_owned()));
     }
+    let parcels = parcel_tables(&mut described, &chosen);
+    for (name, _) in described {
+        unused.push((
+            name,
+            "it describes parcels, but another table describes more of a matrix".to_owned(),
+        ));
+    }
     unused.sort();
     let names = names(&chosen.as_ref().map(|m| m.as_ref().map(|m| m.file.clone())));
     let landmarks = landmarks.map(|(file, looks)| FoundLandmarks {
@@ -82,10 +94,12 @@ pub fn assign(folder: &Path) -> Result<Draft, DraftError> {
             a: DraftSpecies {
                 name: a,
                 matrix: chosen.a,
+                parcels: parcels.a,
             },
             b: DraftSpecies {
                 name: b,
                 matrix: chosen.b,
+                parcels: parcels.b,
             },
         },
         landmarks,
@@ -178,6 +192,34 @@ fn likeliest_table(tables: &mut Vec<(String, LandmarkLooks)>) -> Option<(String,
         (looks.rows, named, std::cmp::Reverse(at))
     })?;
     Some(tables.remove(best))
+}
+
+/// Takes out, for each matrix, the table that describes most of its parcels, at least half of its own
+/// rows; of equals the first by name.
+fn parcel_tables(
+    tables: &mut Vec<(String, ParcelLooks)>,
+    matrices: &Pair<Option<FoundMatrix>>,
+) -> Pair<Option<FoundParcels>> {
+    let chosen = matrices.as_ref().map(|matrix| {
+        let matrix = matrix.as_ref()?;
+        tables
+            .iter()
+            .map(|(file, looks)| FoundParcels {
+                file: file.clone(),
+                known: (hits(&looks.labels, matrix), looks.labels.len()),
+            })
+            .filter(|table| 2 * table.known.0 >= table.known.1.max(1))
+            .min_by_key(|table| std::cmp::Reverse(table.known.0))
+    });
+    tables.retain(|(file, _)| {
+        let takes = |side| {
+            chosen[side]
+                .as_ref()
+                .is_some_and(|t: &FoundParcels| t.file == *file)
+        };
+        !Side::BOTH.into_iter().any(takes)
+    });
+    chosen
 }
 
 /// The matrices that the landmarks name; as far as these leave it open those without a fault, then

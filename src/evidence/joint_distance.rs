@@ -5,6 +5,7 @@ use ndarray::Array2;
 use super::{Evidence, Fitted, Material, Unavailable};
 use crate::align::{self, Params};
 use crate::bootstrap::Stream;
+use crate::domain::Pair;
 use crate::linalg::squared_distances;
 
 /// Squared distance between positions in a joint space.
@@ -27,8 +28,23 @@ impl Evidence for JointDistance {
                 kind: self.name(),
                 why: e.to_string(),
             })?;
-        let positions = map.positions(material.embedded());
-        Ok(Box::new(Positions {
+        Ok(Box::new(Positions::new(map.positions(material.embedded()))))
+    }
+}
+
+/// Positions of both species; those of b axis by axis, so that one parcel of a is compared with many
+/// of b in step.
+pub(super) struct Positions {
+    a: Array2<f64>,
+    b_by_axis: Array2<f64>,
+    /// Squared lengths of b's positions.
+    b_norms: Vec<f64>,
+}
+
+impl Positions {
+    /// Takes positions `(parcels, axes)` of both species.
+    pub(super) fn new(positions: Pair<Array2<f64>>) -> Positions {
+        Positions {
             a: positions.a,
             b_norms: positions.b.rows().into_iter().map(|y| y.dot(&y)).collect(),
             b_by_axis: positions
@@ -36,17 +52,8 @@ impl Evidence for JointDistance {
                 .reversed_axes()
                 .as_standard_layout()
                 .into_owned(),
-        }))
+        }
     }
-}
-
-/// Positions of both species; those of b axis by axis, so that one parcel of a is compared with many
-/// of b in step.
-struct Positions {
-    a: Array2<f64>,
-    b_by_axis: Array2<f64>,
-    /// Squared lengths of b's positions.
-    b_norms: Vec<f64>,
 }
 
 impl Fitted for Positions {

@@ -36,6 +36,9 @@ pub struct Choice {
     /// Index of the way of ranking that this amounts to.
     #[serde(skip)]
     pub way: usize,
+    /// Indices of the ways that rank by either alignment on its axes.
+    #[serde(skip)]
+    pub ways: PerAlignment<usize>,
 }
 
 /// Chooses by left-out landmarks, `without` one block altogether where asked.
@@ -56,11 +59,12 @@ pub fn choose(
     evidence: Option<Alignment>,
     without: Option<usize>,
 ) -> Choice {
+    let axes = |at: usize| ways[at].joint().map_or(0, |params| params.axes);
     let best = PerAlignment::from_fn(|alignment| {
         let tried: Vec<(usize, Vec<f64>)> = ways
             .iter()
             .enumerate()
-            .filter(|(_, way)| way.alignment() == alignment)
+            .filter(|(_, way)| way.joint().is_some_and(|p| p.alignment == alignment))
             .map(|(at, _)| (at, trials.errors(at, without)))
             .collect();
         let (_, least) = tried
@@ -70,7 +74,7 @@ pub fn choose(
         let (at, errors) = tried
             .iter()
             .filter(|(_, errors)| !clearly_less(least, errors))
-            .max_by_key(|(at, _)| ways[*at].axes())
+            .max_by_key(|(at, _)| axes(*at))
             .expect("the least itself qualifies");
         (*at, errors.clone())
     });
@@ -82,9 +86,10 @@ pub fn choose(
         }
     });
     Choice {
-        axes: PerAlignment::from_fn(|alignment| ways[best[alignment].0].axes()),
+        axes: PerAlignment::from_fn(|alignment| axes(best[alignment].0)),
         evidence,
         way: best[evidence].0,
+        ways: PerAlignment::from_fn(|alignment| best[alignment].0),
     }
 }
 
@@ -103,11 +108,12 @@ impl Curve {
             points: ways
                 .iter()
                 .enumerate()
-                .filter(|(_, way)| way.alignment() == alignment)
-                .map(|(at, way)| {
+                .filter_map(|(at, way)| Some((at, way.joint()?)))
+                .filter(|(_, params)| params.alignment == alignment)
+                .map(|(at, params)| {
                     let errors = trials.errors(at, None);
                     Point {
-                        axes: way.axes(),
+                        axes: params.axes,
                         error: mean(&errors),
                         standard_error: standard_error(&errors),
                     }

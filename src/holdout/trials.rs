@@ -7,31 +7,62 @@ use rayon::prelude::*;
 use crate::align::{Alignment, Params};
 use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{Landmark, Landmarks, Pair, Seed, Side};
-use crate::evidence::{Evidence, Fitted, JointDistance, Material};
-use crate::place;
+use crate::evidence::{Evidence, Fingerprint, Fitted, Grown, JointDistance, Kind, Material};
+use crate::place::{self, Candidates};
 use crate::watch::{Interrupted, Watch};
 
 /// One way of ranking that left-out landmarks are to judge.
 #[derive(Debug, Clone, Copy, PartialEq)]
-pub struct Way(pub Params);
+pub enum Way {
+    /// Distance in a joint space.
+    Joint(Params),
+    /// Connections with the landmarks.
+    Fingerprint,
+    /// Distance in a joint space with anchors grown.
+    Grown(Grown),
+    /// Transport averaged over replicates, which judge it themselves.
+    Transport,
+}
 
 impl Way {
-    /// The alignment whose distances rank.
+    /// The kind of evidence.
     #[must_use]
-    pub fn alignment(&self) -> Alignment {
-        self.0.alignment
+    pub fn kind(&self) -> Kind {
+        match self {
+            Way::Joint(params) => match params.alignment {
+                Alignment::Procrustes => Kind::Procrustes,
+                Alignment::Canonical => Kind::Canonical,
+            },
+            Way::Fingerprint => Kind::Fingerprint,
+            Way::Grown(_) => Kind::Grown,
+            Way::Transport => Kind::Transport,
+        }
     }
 
-    /// Axes of its joint space.
+    /// The joint space whose distances rank, if any do.
     #[must_use]
-    pub fn axes(&self) -> usize {
-        self.0.axes
+    pub fn joint(&self) -> Option<Params> {
+        match self {
+            Way::Joint(params) => Some(*params),
+            _ => None,
+        }
     }
 
-    /// The evidence itself.
+    /// The evidence itself; `None` where fitting it again without every landmark is too dear.
     #[must_use]
-    pub fn evidence(&self) -> JointDistance {
-        JointDistance(self.0)
+    pub fn evidence(&self) -> Option<Box<dyn Evidence>> {
+        match self {
+            Way::Joint(params) => Some(Box::new(JointDistance(*params))),
+            Way::Fingerprint => Some(Box::new(Fingerprint)),
+            Way::Grown(grown) => Some(Box::new(*grown)),
+            Way::Transport => None,
+        }
+    }
+
+    /// Whether it is fitted without each pair of blocks too. Only the joint spaces need that: among
+    /// them a choice is made.
+    fn is_nested(&self) -> bool {
+        matches!(self, Way::Joint(_))
     }
 }
 
@@ -42,9 +73,12 @@ impl Way {
 pub struct Asked(Vec<Pair<usize>>);
 
 impl Asked {
-    /// Draws the members.
+    /// Draws the members, such that those of one landmark may be counterparts.
+    ///
+    /// # Panics
+    /// If a landmark has no such members, which a checked study rules out.
     #[must_use]
-    pub fn draw(landmarks: &Landmarks, seed: Seed) -> Asked {
+    pub fn draw(landmarks: &Landmarks, candidates: &Candidates, seed: Seed) -> Asked {
         Asked(
             landmarks
                 .list()
@@ -52,10 +86,15 @@ impl Asked {
                 .enumerate()
                 .map(|(at, landmark)| {
                     let mut chance = Stream::new(seed, Purpose::AskedMember, at as u64);
-                    Pair::from_fn(|side| {
-                        let members = &landmark.parcels[side];
+                    let Pair { a, b } = &landmark.parcels;
+                    let mut one_of = |members: &[usize], admissible: &dyn Fn(usize) -> bool| {
+                        let members: Vec<usize> =
+                            members.iter().copied().filter(|&m| admissible(m)).collect();
                         members[chance.gen_range(0..members.len())]
-                    })
+                    };
+                    let a = one_of(a, &|a| b.iter().any(|&b| candidates.admit(Side::A, a, b)));
+                    let b = one_of(b, &|b| candidates.admit(Side::A, a, b));
+                    Pair { a, b }
                 })
                 .collect(),
         )
@@ -73,7 +112,7 @@ impl Asked {
 pub struct Placed {
     /// Rank of the best member opposite, 1 being right.
     pub rank: usize,
-    /// Candidates: the other species' open parcels and the landmark's own.
+    /// Candidates: the other species' open parcels and the landmark's own, as far as admissible.
     pub candidates: usize,
 }
 
@@ -86,6 +125,25 @@ impl Placed {
             return 0.0;
         }
         (self.rank as f64).ln() / (self.candidates as f64).ln()
+    }
+
+    /// Where the best of `members` comes among candidates; `dissimilarities` has one number for each,
+    /// infinite where a parcel may not be a counterpart.
+    ///
+    /// # Panics
+    /// If no member is among the candidates.
+    #[must_use]
+    pub fn of(dissimilarities: &[f64], candidates: &[usize], members: &[usize]) -> Placed {
+        Placed {
+            rank: candidates
+                .iter()
+                .enumerate()
+                .filter(|(_, candidate)| members.contains(candidate))
+                .map(|(at, _)| place::rank(dissimilarities, at))
+                .min()
+                .expect("a landmark has at least one parcel on each side"),
+            candidates: dissimilarities.iter().filter(|d| d.is_finite()).count(),
+        }
     }
 
     /// Share of the candidates that are no better placed than the counterpart, in (0, 1].
@@ -116,6 +174,15 @@ pub struct Trials {
 }
 
 impl Trials {
+    /// Adds a way that was judged elsewhere, and returns its index. What is said of a landmark then
+    /// holds whatever else is left out.
+    pub fn add(&mut self, placed: Vec<Pair<Placed>>) -> usize {
+        let blocks = self.blocks.iter().max().map_or(0, |b| b + 1);
+        self.nested.push(vec![placed.clone(); blocks]);
+        self.single.push(placed);
+        self.single.len() - 1
+    }
+
     /// Mean error of each block under a way of ranking, `without` one block altogether where asked.
     #[must_use]
     pub fn errors(&self, way: usize, without: Option<usize>) -> Vec<f64> {
@@ -143,12 +210,11 @@ impl Trials {
 /// # Errors
 /// [`Interrupted`] where the watch says so.
 ///
-/// # Panics
-/// If a way cannot be fitted, which the checks on landmarks rule out.
 pub fn run(
     material: &Material<'_>,
     ways: &[Way],
     open: &Pair<Vec<usize>>,
+    candidates: &Candidates,
     asked: &Asked,
     seed: Seed,
     watch: &dyn Watch,
@@ -170,18 +236,26 @@ pub fn run(
                 let weights = material.weights(|b| if b == i || b == j { 0.0 } else { 1.0 });
                 ways.iter()
                     .map(|way| {
+                        let evidence = way.evidence();
+                        let Some(evidence) = evidence.filter(|_| i == j || way.is_nested()) else {
+                            return Found::new();
+                        };
                         let index = (i * blocks + j) as u64;
                         let mut chance = Stream::new(seed, Purpose::EvidenceLeftOut, index);
-                        let fitted = way
-                            .evidence()
-                            .fit(material, &weights, &mut chance)
-                            .expect("three landmarks or more remain, with checked weights");
+                        let fitted = evidence.fit(material, &weights, &mut chance);
                         landmarks
                             .list()
                             .iter()
                             .enumerate()
                             .filter(|(_, l)| l.block == i || l.block == j)
-                            .map(|(at, l)| (at, place_one(&*fitted, l, asked.of(at), open)))
+                            .map(|(at, l)| match &fitted {
+                                Ok(fitted) => {
+                                    let asked = asked.of(at);
+                                    (at, place_one(&**fitted, l, asked, open, candidates))
+                                }
+                                // Without the landmark there is nothing to go by.
+                                Err(_) => (at, last_of_all(l, asked.of(at), open, candidates)),
+                            })
                             .collect()
                     })
                     .collect()
@@ -213,9 +287,9 @@ pub fn run(
             }
         }
     }
-    if !needs_nesting {
-        // With three blocks no second one can be spared, so the choice is judged as it was made.
-        for (by_outer, single) in nested.iter_mut().zip(&single) {
+    // With three blocks no second one can be spared, so the choice is judged as it was made.
+    for ((way, by_outer), single) in ways.iter().zip(&mut nested).zip(&single) {
+        if !needs_nesting || !way.is_nested() {
             by_outer.fill(single.clone());
         }
     }
@@ -227,15 +301,17 @@ pub fn run(
 }
 
 /// Rank of a left-out landmark's counterpart, both ways.
-fn place_one(
+pub(super) fn place_one(
     fitted: &dyn Fitted,
     landmark: &Landmark,
     asked: Pair<usize>,
     open: &Pair<Vec<usize>>,
+    admissible: &Candidates,
 ) -> Pair<Placed> {
     Pair::from_fn(|from| {
         let to = from.opposite();
         let mut candidates = [&open[to][..], &landmark.parcels[to][..]].concat();
+        candidates.retain(|&candidate| admissible.admit(from, asked[from], candidate));
         candidates.sort_unstable();
         let question = [asked[from]];
         let dissimilarities: Vec<f64> = match from {
@@ -250,16 +326,29 @@ fn place_one(
                 out.into_iter().collect()
             }
         };
-        let rank = candidates
-            .iter()
-            .enumerate()
-            .filter(|(_, candidate)| landmark.parcels[to].contains(candidate))
-            .map(|(at, _)| place::rank(&dissimilarities, at))
-            .min()
-            .expect("a landmark has at least one parcel on each side");
+        Placed::of(&dissimilarities, &candidates, &landmark.parcels[to])
+    })
+}
+
+/// The worst rank that a landmark's counterpart can have.
+fn last_of_all(
+    landmark: &Landmark,
+    asked: Pair<usize>,
+    open: &Pair<Vec<usize>>,
+    admissible: &Candidates,
+) -> Pair<Placed> {
+    Pair::from_fn(|from| {
+        let to = from.opposite();
+        let admitted = |parcels: &[usize]| {
+            parcels
+                .iter()
+                .filter(|&&candidate| admissible.admit(from, asked[from], candidate))
+                .count()
+        };
+        let (others, own) = (admitted(&open[to]), admitted(&landmark.parcels[to]));
         Placed {
-            rank,
-            candidates: candidates.len(),
+            rank: others + 1,
+            candidates: others + own,
         }
     })
 }

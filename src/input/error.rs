@@ -5,6 +5,7 @@ use std::path::{Path, PathBuf};
 
 use super::formats::Fault;
 use super::gifti::GiftiFault;
+use super::parcel_fault::ParcelFault;
 use crate::domain::Side;
 
 /// A place in an input file, as exactly as it is known.
@@ -142,6 +143,9 @@ pub enum Problem {
     /// A fault of a file of labels of a surface.
     #[error(transparent)]
     Gifti(#[from] GiftiFault),
+    /// A fault in what is said of parcels.
+    #[error(transparent)]
+    Parcels(#[from] ParcelFault),
     /// No such file.
     #[error("there is no such file; check the path (in a study file it is relative to that file's folder)")]
     NotFound,
@@ -455,6 +459,20 @@ pub enum Problem {
         axes: usize,
         /// Axes it has.
         available: usize,
+    },
+    /// Evidence that was asked for by name and has nothing to go by.
+    #[error("evidence {kind} was asked for alone, but is unavailable: {why}; ask for evidence = \"mixture\", which does without it")]
+    EvidenceUnavailable {
+        /// The kind.
+        kind: String,
+        /// The reason.
+        why: String,
+    },
+    /// Mass by area without areas.
+    #[error("mass = \"area\" needs the area of every parcel of both species, but those of species {} are not known; ask for mass = \"uniform\" or \"free\"", side.letter())]
+    NoAreas {
+        /// A species without areas.
+        side: Side,
     },
     /// The multi-scale diffusion time on a disconnected affinity.
     #[error("diffusion-time 0 (all scales) needs a connected affinity, but that of species {} falls apart; set diffusion-time to 1 or more", side.letter())]

@@ -1,6 +1,6 @@
 //! The table of landmarks: `landmark,a,b` and optionally `weight`, `block`, `basis`.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 use super::delimited::{self, Row, Table};
 use super::error::{InputError, Place, Problem};
@@ -33,6 +33,7 @@ pub fn read(
     let mut names: BTreeMap<String, u64> = BTreeMap::new();
     let mut used: Pair<BTreeMap<usize, (String, u64)>> = Pair::default();
     let mut without = Without::default();
+    let mut merged = Vec::new();
     for row in &table.rows {
         let at = |column: usize| Place::line(source.path(), row.line).column(column + 1);
         let name = row.cells.get(columns.landmark).unwrap_or("").to_owned();
@@ -49,17 +50,28 @@ pub fn read(
             ));
         }
         names.insert(name.clone(), row.line);
+        let fault = |side: Side| {
+            let place = at(columns.parcels[side]).parcel(&name);
+            |problem| InputError::new(place, problem)
+        };
         let members = Pair::try_from_fn(|side| {
-            members(
-                row,
-                columns.parcels[side],
+            members(row, columns.parcels[side], parcels[side], side).map_err(fault(side))
+        })?;
+        if let Some(first) = same_when_folded(&list, &members, parcels) {
+            merged.push((first.name.clone(), name));
+            continue;
+        }
+        for side in Side::BOTH {
+            claim(
+                &members[side].placed,
                 parcels[side],
                 side,
                 &mut used[side],
                 &name,
+                row.line,
             )
-            .map_err(|problem| InputError::new(at(columns.parcels[side]).parcel(&name), problem))
-        })?;
+            .map_err(fault(side))?;
+        }
         let weight = match cell(row, columns.weight) {
             None => Share::ALL,
             Some(text) => text
@@ -109,6 +121,9 @@ pub fn read(
         .map(|b| b.trim_start().to_owned())
         .collect();
     warnings.extend(without.warning());
+    if !merged.is_empty() {
+        warnings.push(Warning::LandmarksMerged { pairs: merged });
+    }
     warnings.extend(suspicions(&list, parcels));
     let landmarks = Landmarks::new(list, blocks).map_err(|e| match e {
         LandmarkError::TooFew { found, needed } => InputError::new(
@@ -222,14 +237,7 @@ impl Without {
 }
 
 /// Reads the parcels one cell names.
-fn members(
-    row: &Row,
-    column: usize,
-    parcels: &Parcels,
-    side: Side,
-    used: &mut BTreeMap<usize, (String, u64)>,
-    landmark: &str,
-) -> Result<Members, Problem> {
+fn members(row: &Row, column: usize, parcels: &Parcels, side: Side) -> Result<Members, Problem> {
     let cell = row.cells.get(column).unwrap_or("");
     // A label may itself contain the separator: then it is the label that counts.
     let labels: Vec<&str> = match parcels.find(cell) {
@@ -243,7 +251,8 @@ fn members(
         }
         let Some(parcel) = parcels.find(label) else {
             let aside = [parcels.isolated(), parcels.uncovered()].concat();
-            if aside.iter().any(|known| known == label) {
+            let resolved = parcels.resolve(label);
+            if aside.iter().any(|known| known == resolved) {
                 unplaced.push(label.to_owned());
                 continue;
             }
@@ -257,19 +266,56 @@ fn members(
                     .collect(),
             });
         };
-        if let Some((landmark, line)) = used.insert(parcel, (landmark.to_owned(), row.line)) {
-            return Err(Problem::ParcelTwice {
-                side,
-                parcel: label.to_owned(),
-                landmark,
-                line,
-            });
+        // Both copies of a folded parcel may be named; together they are one.
+        if parcels.folded() == 0 || !members.contains(&parcel) {
+            members.push(parcel);
         }
-        members.push(parcel);
     }
     Ok(Members {
         placed: members,
         unplaced,
+    })
+}
+
+/// Sees that no landmark has these parcels yet.
+fn claim(
+    members: &[usize],
+    parcels: &Parcels,
+    side: Side,
+    used: &mut BTreeMap<usize, (String, u64)>,
+    landmark: &str,
+    line: u64,
+) -> Result<(), Problem> {
+    for &parcel in members {
+        if let Some((landmark, line)) = used.insert(parcel, (landmark.to_owned(), line)) {
+            return Err(Problem::ParcelTwice {
+                side,
+                parcel: parcels.labels()[parcel].clone(),
+                landmark,
+                line,
+            });
+        }
+    }
+    Ok(())
+}
+
+/// An earlier landmark of the very same parcels, where brains are folded: then the left and the right
+/// copy of one landmark are one, and nothing is gained by counting it twice.
+fn same_when_folded<'l>(
+    list: &'l [Landmark],
+    members: &Pair<Members>,
+    parcels: Pair<&Parcels>,
+) -> Option<&'l Landmark> {
+    if Side::BOTH
+        .into_iter()
+        .all(|side| parcels[side].folded() == 0)
+    {
+        return None;
+    }
+    let set = |parcels: &[usize]| -> BTreeSet<usize> { parcels.iter().copied().collect() };
+    list.iter().find(|landmark| {
+        let same = |side| set(&landmark.parcels[side]) == set(&members[side].placed);
+        Side::BOTH.into_iter().all(same)
     })
 }
 

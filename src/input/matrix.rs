@@ -7,7 +7,7 @@ use ndarray::Array2;
 use super::error::{InputError, Place, Problem};
 use super::formats::{self, Fault, Wanted};
 use super::grid::{Grid, Origin};
-use super::label_file;
+use super::label_file::{self, LabelFile};
 use super::source::{Bytes, InputFile, Source};
 use super::study_file::SpeciesFile;
 use crate::domain::{Connectivity, RowsAre, Tracer, WeightKind};
@@ -105,6 +105,30 @@ pub fn read(
     let grid = formats::text(source, &wanted)?;
     let (network, _, warnings) = settle(grid, Given::default(), &stated)?;
     Ok((network, warnings))
+}
+
+/// Reads a grid whose rows and columns are the same parcels and whose numbers are of any kind, such as
+/// distances; `None` where they are not the same.
+///
+/// # Errors
+/// [`InputError`] with the place for labels and entries that are none.
+pub(super) fn square(
+    grid: Grid,
+    labels: Option<&LabelFile>,
+    species: &str,
+) -> Result<Option<Connectivity>, InputError> {
+    let given = Given {
+        labels,
+        ..Given::default()
+    };
+    let stated = Stated {
+        species,
+        weights: WeightKind::Other,
+        rows: None,
+        tracer: None,
+    };
+    let (network, _, _) = settle(grid, given, &stated)?;
+    Ok(Some(network).filter(Connectivity::is_square))
 }
 
 /// Checks labels and entries, brings the columns of a square matrix into the order of the rows, and

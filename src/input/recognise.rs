@@ -1,5 +1,5 @@
-//! What a file is by what it holds: a matrix in any format, a landmark table, a list of labels or
-//! none of these. For guesses only; the readers judge.
+//! What a file is by what it holds: a matrix in any format, a landmark table, a table of
+//! parcels, a list of labels or none of these. For guesses only; the readers judge.
 
 use std::collections::{HashMap, HashSet};
 use std::path::Path;
@@ -8,6 +8,7 @@ use super::delimited::{self, Table};
 use super::error::Problem;
 use super::formats::{self, edges, Content, Kind, Listed, Wanted};
 use super::grid::{Grid, Label};
+use super::parcel_table;
 use super::source::{Bytes, Source};
 use crate::domain::{Side, WeightKind};
 
@@ -36,6 +37,8 @@ pub enum Looks {
     Matrix(Box<MatrixLooks>),
     /// A landmark table.
     Landmarks(LandmarkLooks),
+    /// A table of parcels.
+    Parcels(ParcelLooks),
     /// Labels, one a line.
     Labels(Vec<String>),
     /// None of these; the reason in words.
@@ -96,6 +99,13 @@ pub struct LandmarkLooks {
     pub a: Vec<String>,
     /// What the column of species b names.
     pub b: Vec<String>,
+}
+
+/// A table that looks like a table of parcels.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct ParcelLooks {
+    /// The labels it describes.
+    pub labels: Vec<String>,
 }
 
 impl LandmarkLooks {
@@ -272,6 +282,10 @@ fn text(source: &Source) -> Looks {
     }
     if let Some(looks) = labelled(&table) {
         return Looks::Matrix(Box::new(looks));
+    }
+    // Only what is no matrix: parcels may be called x, y and z.
+    if let Some(labels) = parcel_table::looks(&table) {
+        return Looks::Parcels(ParcelLooks { labels });
     }
     let not_both = "its rows and columns do not name the same parcels";
     match formats::text(source, &NOTHING) {

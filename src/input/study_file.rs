@@ -31,6 +31,10 @@ pub struct SpeciesFile {
     pub variable: Option<String>,
     /// Array that holds the labels, in a file of several.
     pub label_variable: Option<String>,
+    /// What is known of its parcels besides.
+    pub parcels: Option<PathBuf>,
+    /// Distances between its parcels.
+    pub distances: Option<PathBuf>,
     /// What the weights measure.
     pub weights: WeightKind,
     /// Transform asked for.
@@ -54,6 +58,8 @@ impl SpeciesFile {
             tracer: None,
             variable: None,
             label_variable: None,
+            parcels: None,
+            distances: None,
             weights,
             transform: None,
             likeness: None,
@@ -91,6 +97,8 @@ const SPECIES_KEYS: &[&str] = &[
     "tracer",
     "variable",
     "label-variable",
+    "parcels",
+    "distances",
 ];
 
 /// Reads and checks a study file.
@@ -182,7 +190,8 @@ fn species_file(table: &Table<'_>, folder: &Path) -> Result<SpeciesFile, InputEr
     if name.trim().is_empty() {
         return Err(table.bad_value("name", "more than blanks"));
     }
-    let labels = table.optional_text("labels")?;
+    let file = |key| Ok(table.optional_text(key)?.map(|path| folder.join(path)));
+    let labels = file("labels")?;
     let label_variable = table.optional_text("label-variable")?;
     if labels.is_some() && label_variable.is_some() {
         return Err(InputError::new(
@@ -192,14 +201,14 @@ fn species_file(table: &Table<'_>, folder: &Path) -> Result<SpeciesFile, InputEr
     }
     Ok(SpeciesFile {
         name,
-        labels: labels.map(|path| folder.join(path)),
-        column_labels: table
-            .optional_text("column-labels")?
-            .map(|path| folder.join(path)),
+        labels,
+        column_labels: file("column-labels")?,
         rows: table.choice("rows")?,
         tracer: table.choice("tracer")?,
         variable: table.optional_text("variable")?,
         label_variable,
+        parcels: file("parcels")?,
+        distances: file("distances")?,
         matrix: folder.join(table.text("matrix", "matrix = \"matrix.csv\"")?),
         weights,
         transform,

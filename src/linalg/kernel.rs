@@ -44,6 +44,49 @@ pub fn count_below(values: &[f64], bound: f64) -> (usize, usize) {
     Arch::new().dispatch(CountBelow { values, bound })
 }
 
+/// The least of `values[i] - others[i]` and the first index that has it; infinity and 0 where there
+/// are no values.
+#[must_use]
+pub fn least_difference(values: &[f64], others: &[f64]) -> (f64, usize) {
+    Arch::new().dispatch(LeastDifference { values, others })
+}
+
+struct LeastDifference<'s> {
+    values: &'s [f64],
+    others: &'s [f64],
+}
+
+impl WithSimd for LeastDifference<'_> {
+    type Output = (f64, usize);
+
+    #[inline(always)]
+    fn with_simd<S: Simd>(self, _simd: S) -> (f64, usize) {
+        let LeastDifference { values, others } = self;
+        let others = &others[..values.len()];
+        let mut least = [f64::INFINITY; LANES];
+        let chunks = values.chunks_exact(LANES).zip(others.chunks_exact(LANES));
+        for (values, others) in chunks {
+            for lane in 0..LANES {
+                let difference = values[lane] - others[lane];
+                least[lane] = if difference < least[lane] {
+                    difference
+                } else {
+                    least[lane]
+                };
+            }
+        }
+        let whole = values.len() - values.len() % LANES;
+        let rest = (whole..values.len()).map(|at| values[at] - others[at]);
+        let least = least
+            .into_iter()
+            .chain(rest)
+            .fold(f64::INFINITY, |least, x| if x < least { x } else { least });
+        // Subtracting again gives the same bits, so the value can be looked for.
+        let at = (0..values.len()).find(|&at| values[at] - others[at] == least);
+        (least, at.unwrap_or(0))
+    }
+}
+
 struct SquaredDistances<'s> {
     point: &'s [f64],
     others: &'s [f64],
@@ -230,6 +273,20 @@ mod tests {
                 )
             );
         }
+    }
+
+    #[test]
+    fn the_least_difference_is_that_of_the_plain_loop() {
+        for count in [1, 15, 16, 50] {
+            let wave = |i: usize| (i as f64 * 2.1).sin();
+            let values: Vec<f64> = (0..count).map(wave).collect();
+            let others: Vec<f64> = (0..count).map(|i| wave(3 * i + 1)).collect();
+            let plain = (0..count)
+                .map(|i| (values[i] - others[i], i))
+                .min_by(|x, y| x.0.total_cmp(&y.0));
+            assert_eq!(Some(least_difference(&values, &others)), plain);
+        }
+        assert_eq!(least_difference(&[2.0, 1.0, 1.0], &[0.0; 3]), (1.0, 1));
     }
 
     #[test]

@@ -3,7 +3,7 @@
 use crate::align::{self, Alignment, JointMap, Params};
 use crate::domain::Pair;
 use crate::evidence::Material;
-use crate::holdout::{choose, contradicted, Asked, Choice, Placed, Trials, Way};
+use crate::holdout::{choose, contradicted, Asked, Choice, FirstOf, Placed, Trials, Way};
 
 /// One landmark, left out together with its block.
 #[derive(Debug, Clone, PartialEq)]
@@ -17,44 +17,54 @@ pub struct LeftOut {
     pub chosen: Params,
     /// Distance between the members asked for; 1 is that of random pairs.
     pub distance: f64,
-    /// Whether the other landmarks contradict it.
-    pub contradicted: bool,
+    /// Where the joint space puts its counterpart, if the other landmarks contradict it there.
+    pub contradicted: Option<Pair<Placed>>,
 }
 
-/// Collects what the trials say about each landmark.
+/// Collects what the trials say about each landmark: placed by `way`, or where an alignment was asked
+/// for by its distances on the axes that are chosen without the landmark. Whether a landmark is out of
+/// line is judged in the joint space `choice` settled on.
 pub fn summarise(
     material: &Material<'_>,
     ways: &[Way],
     trials: &Trials,
+    way: usize,
     choice: &Choice,
-    evidence: Option<Alignment>,
+    alignment: Option<Alignment>,
     asked: &Asked,
 ) -> Vec<LeftOut> {
-    let landmarks = material.landmarks;
-    let by_block: Vec<Choice> = (0..landmarks.blocks())
-        .map(|block| choose(ways, trials, evidence, Some(block)))
-        .collect();
-    let nested: Vec<(usize, f64)> = landmarks
+    // One and the same space for all, and the one for which the limits were simulated.
+    let flags = contradicted(trials, choice.way);
+    material
+        .landmarks
         .list()
         .iter()
         .enumerate()
         .map(|(at, landmark)| {
-            let way = by_block[landmark.block].way;
-            let distance = distance_without(material, ways[way].0, landmark.block, asked.of(at));
-            (way, distance)
+            let without = choose(ways, trials, alignment, Some(landmark.block));
+            let chosen = ways[without.way]
+                .joint()
+                .expect("a choice is a joint space");
+            LeftOut {
+                asked: asked.of(at),
+                placed: trials.single[alignment.map_or(way, |_| without.way)][at],
+                chosen,
+                distance: distance_without(material, chosen, landmark.block, asked.of(at)),
+                contradicted: flags[at].then_some(trials.single[choice.way][at]),
+            }
         })
-        .collect();
-    // Whether a landmark is out of line is judged in one and the same space for all.
-    let flags = contradicted(trials, choice.way);
-    nested
-        .into_iter()
-        .enumerate()
-        .map(|(at, (way, distance))| LeftOut {
-            asked: asked.of(at),
-            placed: trials.single[way][at],
-            chosen: ways[way].0,
-            distance,
-            contradicted: flags[at],
+        .collect()
+}
+
+/// Which left-out landmarks had their counterpart first under one kind of evidence.
+pub fn firsts(left_out: &[LeftOut]) -> Vec<Pair<FirstOf>> {
+    left_out
+        .iter()
+        .map(|found| {
+            found.placed.map(|placed| FirstOf {
+                share: None,
+                right: placed.rank == 1,
+            })
         })
         .collect()
 }

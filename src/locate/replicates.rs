@@ -2,11 +2,12 @@
 
 use ndarray::{Array2, ArrayView2};
 
-use super::{intervals, JointRanking, Space};
+use super::ranking::{Ranker, Ranking};
+use super::{intervals, Space};
 use crate::align::{self, Alignment, PerAlignment};
 use crate::bootstrap::{accumulate, Purpose, Spread, Stream};
 use crate::domain::{Pair, Side};
-use crate::evidence::{Evidence, Material};
+use crate::evidence::Material;
 use crate::place;
 use crate::prepare::Study;
 use crate::watch::{Interrupted, Watch};
@@ -22,7 +23,8 @@ pub struct Tally {
     ranks: Pair<Vec<Vec<u32>>>,
     /// Replicates with too few distinct landmarks.
     pub(super) degenerate: usize,
-    replicates: usize,
+    /// Replicates that found nearest candidates.
+    ranking: usize,
 }
 
 impl Tally {
@@ -41,7 +43,7 @@ impl Tally {
             }),
             ranks: Pair::default(),
             degenerate: 0,
-            replicates: 0,
+            ranking: 0,
         }
     }
 
@@ -54,12 +56,12 @@ impl Tally {
             }
         }
         self.degenerate += block.degenerate;
-        self.replicates += block.replicates;
+        self.ranking += block.ranking;
     }
 
     /// Share of replicates in which a candidate came first, both as places among the open parcels.
     pub(super) fn support(&self, side: Side, parcel: usize, candidate: usize) -> f64 {
-        f64::from(self.firsts[side][(parcel, candidate)]) / self.replicates as f64
+        f64::from(self.firsts[side][(parcel, candidate)]) / self.ranking as f64
     }
 
     /// Standard errors of positions in one joint space.
@@ -81,7 +83,7 @@ pub fn run(
     study: &Study,
     material: &Material<'_>,
     spaces: &PerAlignment<Space>,
-    ranking: &JointRanking,
+    ranking: &Ranking,
     watch: &dyn Watch,
 ) -> Result<Tally, Interrupted> {
     let settings = &study.settings;
@@ -115,7 +117,7 @@ fn one(
     study: &Study,
     material: &Material<'_>,
     spaces: &PerAlignment<Space>,
-    ranking: &JointRanking,
+    ranking: &Ranking,
 ) {
     let settings = &study.settings;
     let index = replicate as u64;
@@ -123,10 +125,17 @@ fn one(
     let blocks = material.landmarks.blocks();
     let by_block = settings.resampling.draw(blocks, &mut chance);
     let weights = material.weights(|block| by_block[block]);
-    tally.replicates += 1;
 
     let distinct = by_block.iter().filter(|w| **w > 0.0).count();
-    if distinct <= spaces[ranking.way.alignment()].params.axes {
+    let axes = match &ranking.ranker {
+        Ranker::One(way) => way.joint().map_or(0, |params| params.axes),
+        Ranker::Mixture { .. } => spaces
+            .procrustes
+            .params
+            .axes
+            .max(spaces.canonical.params.axes),
+    };
+    if distinct <= axes {
         tally.degenerate += 1;
     }
     for alignment in Alignment::BOTH {
@@ -138,14 +147,20 @@ fn one(
         );
     }
 
-    let mut chance = Stream::new(settings.seed, Purpose::Evidence, index);
-    let fitted = ranking
-        .way
-        .evidence()
-        .fit(material, &weights, &mut chance)
-        .expect("every draw has two landmarks or more");
+    if replicate >= ranking.ranker.replicates(settings.replicates) {
+        return;
+    }
     let open = &ranking.open;
-    fitted.dissimilarities(&open.a, &open.b, dissimilarities);
+    ranking.ranker.replicate(
+        material,
+        &weights,
+        replicate,
+        open,
+        &study.candidates,
+        settings.seed,
+        dissimilarities,
+    );
+    tally.ranking += 1;
     let nearest = place::nearest(dissimilarities);
     for side in Side::BOTH {
         for (parcel, first) in nearest[side].iter().enumerate() {

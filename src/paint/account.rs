@@ -8,7 +8,7 @@ impl Painted {
     pub fn account(&self) -> String {
         let mut lines = vec![format!(
             "Painted {}, compared with {} (distances: {}). {} parcels take part in the run.",
-            self.species, self.other, self.ranked_by, self.parcels
+            self.species, self.other, self.distances_from, self.parcels
         )];
         for surface in &self.surfaces {
             let structure = surface

@@ -93,10 +93,10 @@ fn axes(
                 known,
             })
         }
-        // What ranked need not be an alignment; then any joint space will do.
+        // Distances need not come from an alignment; then any joint space will do.
         None => known
             .iter()
-            .find(|k| **k == run.ranked_by)
+            .find(|k| **k == run.distances_from)
             .or(known.last())
             .cloned(),
     };
@@ -188,7 +188,7 @@ fn counterparts(run: &Run, side: Side, parcel: &str) -> Result<Vec<ParcelMap>, P
         },
         ParcelMap {
             name: format!("rank {asked}"),
-            meaning: format!("Rank by distance among all candidates {asked}; 1 is nearest. {listed}."),
+            meaning: format!("Rank among all candidates {asked}; 1 is first. {listed}."),
             values: column("rank")?,
         },
         ParcelMap {

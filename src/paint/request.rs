@@ -15,7 +15,7 @@ pub struct PaintRequest {
     pub labels: Vec<PathBuf>,
     /// Parcels of the other species whose counterparts are painted.
     pub parcels: Vec<String>,
-    /// Alignment whose axes are painted; that which ranked where none is named.
+    /// Alignment whose axes are painted; that of the distances where none is named.
     pub alignment: Option<String>,
     /// Folder for the maps; that of the run with `-maps` behind its name where none is named.
     pub out: Option<PathBuf>,

@@ -16,7 +16,7 @@ pub struct Run {
     /// Title of the study.
     pub title: String,
     /// What gave the distances, as the record names it.
-    pub ranked_by: String,
+    pub distances_from: String,
     /// Both species.
     pub species: Pair<Species>,
     /// `positions.csv`.
@@ -73,7 +73,7 @@ impl Run {
         })?;
         Ok(Run {
             title: text(&record["title"], "its title")?,
-            ranked_by: text(&record["choice"]["evidence"], "what gave its distances")?,
+            distances_from: text(&record["choice"]["evidence"], "what gave its distances")?,
             species,
             positions,
             counterparts,

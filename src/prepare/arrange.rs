@@ -1,5 +1,5 @@
 //! From a matrix as read to the network that is compared: missing entries filled in where a link has
-//! no direction, lines that were never observed taken out, and for every parcel whether it can be
+//! no direction, lines that were never observed taken out; and for every parcel whether it can be
 //! placed.
 
 use crate::affinity;
@@ -12,8 +12,6 @@ pub struct Arranged {
     pub network: Connectivity,
     /// What its rows are; sources where it is square.
     pub rows_are: RowsAre,
-    /// For each row whether it takes part.
-    pub standing: Vec<Standing>,
     /// Entries that were missing as read, off the diagonal.
     pub missing: usize,
     /// Of these, entries taken from the other side of the diagonal.
@@ -38,7 +36,6 @@ impl Arranged {
         }
         let (network, rows_are, unobserved_columns) = without_unobserved(network, rows_are);
         Arranged {
-            standing: standing(&network, weights, missing > 0),
             network,
             rows_are,
             missing,
@@ -139,11 +136,12 @@ fn without_unobserved(network: Connectivity, rows_are: RowsAre) -> (Connectivity
     (network.select(&all, &kept), rows_are, out)
 }
 
-/// Which parcels have a connection, and enough entries to be compared by.
-fn standing(network: &Connectivity, weights: WeightKind, any_missing: bool) -> Vec<Standing> {
+/// Which parcels have a connection, and, where any entry was missing, enough entries to be compared by.
+#[must_use]
+pub fn standing(network: &Connectivity, weights: WeightKind, any_missing: bool) -> Vec<Standing> {
     let (rows, columns) = network.weights().dim();
     let mut connected = vec![false; rows];
-    let (mut seen, mut possible) = (vec![0_usize; rows], vec![0_usize; rows]);
+    let (mut seen, mut possible) = (vec![0_usize; rows], vec![columns; rows]);
     for ((i, j), &w) in network.weights().indexed_iter() {
         if !network.is_data(i, j) {
             continue;
@@ -154,9 +152,6 @@ fn standing(network: &Connectivity, weights: WeightKind, any_missing: bool) -> V
             connected[parcel] |= link;
             seen[parcel] += 1;
         }
-    }
-    for entries in &mut possible {
-        *entries = columns;
     }
     for j in 0..columns {
         if let Some(parcel) = network.row_of_column(j) {
@@ -239,7 +234,8 @@ mod tests {
             assert_eq!(arranged.network.column_labels(), ["p0", "p1"]);
             assert_eq!(arranged.network.weights()[(3, 0)], 5.0);
             assert_eq!(arranged.unobserved_columns, 3);
-            assert_eq!(arranged.standing[4], Standing::Uncovered);
+            let standing = standing(&arranged.network, WeightKind::Counts, true);
+            assert_eq!(standing[4], Standing::Uncovered);
             let rows_are = if turned {
                 RowsAre::Targets
             } else {

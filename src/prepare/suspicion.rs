@@ -78,13 +78,14 @@ pub fn look_over(network: &Connectivity, described: &SpeciesFile, warnings: &mut
         }
         WeightKind::Counts | WeightKind::Ordinal | WeightKind::Other => {}
     }
-    if described.weights != WeightKind::Log10 {
-        components(network, &species(), warnings);
-    }
 }
 
-/// Parts between which there is no connection; parcels without any are reported elsewhere.
-fn components(network: &Connectivity, species: &str, warnings: &mut Vec<Warning>) {
+/// Adds a warning where there are parts between which there is no connection; parcels without any are
+/// reported elsewhere.
+pub fn components(network: &Connectivity, described: &SpeciesFile, warnings: &mut Vec<Warning>) {
+    if described.weights == WeightKind::Log10 {
+        return;
+    }
     let labels = network.row_labels();
     let weights = network.weights();
     let mut ends = labels.len();
@@ -103,7 +104,7 @@ fn components(network: &Connectivity, species: &str, warnings: &mut Vec<Warning>
     let parts = Parts::of(ends, links);
     if parts.real() > 1 {
         warnings.push(Warning::Components {
-            species: species.to_owned(),
+            species: described.name.clone(),
             components: parts.real(),
             outside: parts
                 .outside()

@@ -6,8 +6,8 @@ use serde::Serialize;
 
 use super::record::{json, Identity};
 use super::summary::short;
-use crate::domain::{Pair, RowsAre, Side, WeightKind};
-use crate::inspect::{Inspection, SpeciesFacts, TransformReason};
+use crate::domain::{DistanceSource, Pair, RowsAre, Side, WeightKind};
+use crate::inspect::{AttributeFacts, Inspection, SpeciesFacts, TransformReason};
 use crate::prepare::{Filled, Study, SumsToOne};
 use crate::transform::WIDE_SPAN;
 
@@ -15,6 +15,10 @@ use crate::transform::WIDE_SPAN;
 const LISTED: usize = 6;
 /// Communities shown.
 const SYSTEMS: usize = 8;
+/// What is shown of what nobody said.
+const UNKNOWN: &str = "not known";
+/// Rank correlations below this size are not worth a verb: common practice, no source.
+const SLIGHT: f64 = 0.1;
 /// Width of a line of text.
 const WIDTH: usize = 96;
 
@@ -120,11 +124,18 @@ fn matrices(text: &mut String, study: &Study, found: &Inspection) -> Result {
             of(&|_, s| s.set_aside.len().to_string()),
         ),
         ("  not covered", of(&|_, s| s.not_covered.len().to_string())),
+        ("hemispheres", of(&|_, s| hemispheres(&s.attributes))),
+        ("also known", of(&|_, s| also_known(&s.attributes))),
+        ("distances", of(&|_, s| distances(s))),
+        ("  with strength", of(&|_, s| over_distance(s))),
         ("profiles compared by", of(&|_, s| affinity(s))),
         ("axes above chance", of(&|_, s| axes_worth(s))),
         ("  first five carry", of(&|_, s| first_five(s))),
     ];
     for (name, cells) in rows {
+        if cells.a == UNKNOWN && cells.b == UNKNOWN {
+            continue;
+        }
         writeln!(
             text,
             "{}",
@@ -368,6 +379,68 @@ fn direction(species: &SpeciesFacts) -> &'static str {
         (_, true, Filled::BothHalves) => "directed, row to column",
         (_, true, Filled::Above) => "directed (upper half only)",
         (_, true, Filled::Below) => "directed (lower half only)",
+    }
+}
+
+fn hemispheres(known: &AttributeFacts) -> String {
+    let sides = [
+        ("left", known.left),
+        ("right", known.right),
+        ("midline", known.midline - known.folded.min(known.midline)),
+        ("folded", known.folded),
+        (UNKNOWN, known.side_unknown),
+    ];
+    let there = sides.iter().filter(|(_, n)| *n > 0);
+    if known.side_unknown > 0 && there.clone().count() == 1 {
+        return UNKNOWN.to_owned();
+    }
+    let said: Vec<String> = there.map(|(side, n)| format!("{n} {side}")).collect();
+    said.join(", ")
+}
+
+fn also_known(known: &AttributeFacts) -> String {
+    let said: Vec<String> = [
+        ("groups", known.groups.len()),
+        ("places", known.coordinates),
+        ("areas", known.areas),
+        ("volumes", known.volumes),
+        ("long names", known.long_names),
+    ]
+    .iter()
+    .filter(|(_, n)| *n > 0)
+    .map(|(what, n)| format!("{n} {what}"))
+    .collect();
+    if said.is_empty() {
+        UNKNOWN.to_owned()
+    } else {
+        said.join(", ")
+    }
+}
+
+fn distances(species: &SpeciesFacts) -> String {
+    species.distances.as_ref().map_or_else(
+        || UNKNOWN.to_owned(),
+        |d| {
+            let from = match d.from {
+                DistanceSource::File => "file",
+                DistanceSource::Coordinates => "straight lines",
+            };
+            format!("{} to {} ({from})", number(d.smallest), number(d.largest))
+        },
+    )
+}
+
+/// Whether connections weaken with distance.
+fn over_distance(species: &SpeciesFacts) -> String {
+    let rho = species
+        .distances
+        .as_ref()
+        .and_then(|d| d.strength_with_distance);
+    match rho {
+        None => UNKNOWN.to_owned(),
+        Some(rho) if rho <= -SLIGHT => format!("falls (Spearman {rho:.2})"),
+        Some(rho) if rho >= SLIGHT => format!("rises (Spearman {rho:.2})"),
+        Some(rho) => format!("hardly changes (Spearman {rho:.2})"),
     }
 }
 

@@ -4,7 +4,7 @@ use serde::Serialize;
 
 use crate::domain::{Pair, Side};
 use crate::holdout::{Choice, Curve};
-use crate::locate::Located;
+use crate::locate::{Located, Rests};
 use crate::prepare::{Inputs, Study, Treatment};
 use crate::settings::Settings;
 use crate::warning::Warning;
@@ -55,9 +55,16 @@ pub struct Wall {
 struct SpeciesCounts<'s> {
     name: &'s str,
     parcels: usize,
+    #[serde(skip_serializing_if = "is_zero")]
+    folded: usize,
     set_aside: &'s [String],
     not_covered: &'s [String],
     eigenvalues: Vec<f64>,
+}
+
+/// Nothing is said of folding where nothing was folded.
+fn is_zero(n: &usize) -> bool {
+    *n == 0
 }
 
 /// Everything in `run.json`.
@@ -71,6 +78,7 @@ pub struct Record<'s> {
     landmarks: usize,
     landmark_blocks: usize,
     choice: Choice,
+    evidence: &'s Rests,
     left_out_error: &'s [Curve],
     warnings: Vec<&'s Warning>,
     files: Vec<&'static str>,
@@ -91,6 +99,7 @@ impl<'s> Record<'s> {
                 SpeciesCounts {
                     name: species.parcels.species(),
                     parcels: species.parcels.len(),
+                    folded: species.parcels.folded(),
                     set_aside: species.parcels.isolated(),
                     not_covered: species.parcels.uncovered(),
                     eigenvalues: species.embedding.eigenvalues.to_vec(),
@@ -99,6 +108,7 @@ impl<'s> Record<'s> {
             landmarks: study.landmarks.len(),
             landmark_blocks: study.landmarks.blocks(),
             choice: located.choice,
+            evidence: &located.evidence,
             left_out_error: &located.curves,
             warnings: study.warnings.iter().chain(&located.warnings).collect(),
             files: super::TABLES.to_vec(),

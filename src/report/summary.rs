@@ -2,8 +2,10 @@
 
 use std::fmt::{Result, Write};
 
-use crate::domain::{Pair, Side};
-use crate::holdout::Placed;
+use crate::align::Alignment;
+use crate::domain::{Hemispheres, Pair, Side};
+use crate::evidence::Kind;
+use crate::holdout::{Member, Placed};
 use crate::locate::{Counterpart, Located, Placement};
 use crate::prepare::Study;
 
@@ -16,6 +18,8 @@ or dosing defer to histology, local protocols, ethics boards and licensed practi
 const LISTED: usize = 4;
 /// Longest label shown in full.
 const LABEL_WIDTH: usize = 24;
+/// Longest long name shown in full.
+const NAME_WIDTH: usize = 40;
 /// Support from which a first counterpart counts as stable.
 const STABLE: f64 = 0.5;
 
@@ -52,9 +56,14 @@ fn heading(text: &mut String, study: &Study) -> Result {
         format!(" in {blocks} blocks")
     };
     writeln!(text, "{}", study.title)?;
+    let sides = match study.settings.hemispheres {
+        Hemispheres::Ignore => "",
+        Hemispheres::Match => " Candidates on the same side only.",
+        Hemispheres::Fold => " Left and right copies folded.",
+    };
     writeln!(
         text,
-        "{}. {}. {landmarks} landmarks{in_blocks}.\n",
+        "{}. {}. {landmarks} landmarks{in_blocks}.{sides}\n",
         species.a, species.b
     )
 }
@@ -98,7 +107,7 @@ fn trust(text: &mut String, study: &Study, located: &Located) -> Result {
         .list()
         .iter()
         .zip(&located.left_out)
-        .filter(|(_, found)| found.contradicted)
+        .filter(|(_, found)| found.contradicted.is_some())
         .map(|(landmark, _)| landmark.name.as_str())
         .collect();
     if !contradicted.is_empty() {
@@ -108,10 +117,43 @@ fn trust(text: &mut String, study: &Study, located: &Located) -> Result {
             contradicted.join(", ")
         )?;
     }
-    let chosen = located.choice.evidence;
-    let name = chosen.in_words();
-    let axes = located.choice.axes[chosen];
-    writeln!(text, "  Ranked by {name} distance on {axes} axes.\n")
+    ranked_by(text, located)
+}
+
+/// What carried the ranking.
+fn ranked_by(text: &mut String, located: &Located) -> Result {
+    let rests = &located.evidence;
+    let in_words = |kind: Kind| match kind {
+        Kind::Procrustes => joint(located, Alignment::Procrustes),
+        Kind::Canonical => joint(located, Alignment::Canonical),
+        Kind::Fingerprint => "landmark fingerprints".to_owned(),
+        Kind::Grown => "canonical distance with grown anchors".to_owned(),
+        Kind::Transport => format!(
+            "transport averaged over {} replicates",
+            rests.transport_replicates
+        ),
+    };
+    if let [only] = &rests.kinds[..] {
+        return writeln!(text, "  Ranked by {}.\n", in_words(only.kind));
+    }
+    let mut kinds: Vec<&Member> = rests.kinds.iter().collect();
+    kinds.sort_by(|x, y| y.weight.total_cmp(&x.weight));
+    let named: Vec<String> = kinds
+        .iter()
+        .map(|member| format!("{} {:.2}", member.kind, member.weight))
+        .collect();
+    writeln!(
+        text,
+        "  Ranked by a mixture, weighed by left-out landmarks: {};\n  \
+         its support and rank intervals come from {} replicates.\n",
+        named.join(", "),
+        rests.ranking_replicates
+    )
+}
+
+fn joint(located: &Located, alignment: Alignment) -> String {
+    let axes = located.choice.axes[alignment];
+    format!("{} distance on {axes} axes", alignment.in_words())
 }
 
 /// The strongest and the weakest correspondences of a's parcels.
@@ -206,14 +248,32 @@ fn pair(text: &mut String, study: &Study, placement: &Placement, found: &Counter
         label(Side::B, found.parcel),
         found.support,
         found.distance
-    )
+    )?;
+    let named =
+        |side: Side, parcel: usize| study.species[side].attributes[parcel].long_name.as_deref();
+    match (
+        named(Side::A, placement.parcel),
+        named(Side::B, found.parcel),
+    ) {
+        (None, None) => Ok(()),
+        (one, other) => writeln!(
+            text,
+            "    ({} - {})",
+            cut(one.unwrap_or("no long name"), NAME_WIDTH),
+            cut(other.unwrap_or("no long name"), NAME_WIDTH)
+        ),
+    }
 }
 
 /// A label cut to what a terminal line can hold.
 pub(super) fn short(label: &str) -> String {
-    if label.chars().count() <= LABEL_WIDTH {
-        return label.to_owned();
+    cut(label, LABEL_WIDTH)
+}
+
+fn cut(words: &str, width: usize) -> String {
+    if words.chars().count() <= width {
+        return words.to_owned();
     }
-    let head: String = label.chars().take(LABEL_WIDTH - 1).collect();
+    let head: String = words.chars().take(width - 1).collect();
     format!("{head}…")
 }

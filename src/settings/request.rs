@@ -6,8 +6,9 @@ use thiserror::Error;
 
 use super::{Axes, Conduct, EvidenceChoice, Settings, Top};
 use crate::bootstrap::Resampling;
-use crate::domain::{Choice, Seed};
+use crate::domain::{Choice, Hemispheres, Seed};
 use crate::embed;
+use crate::transport::Mass;
 
 /// A setting that cannot be used.
 #[derive(Debug, Clone, PartialEq, Eq, Error)]
@@ -100,10 +101,16 @@ request! {
     diffusion_time: f64 = "diffusion-time", |key, text| number(key, text, 0.0..=1e3, "a number from 0 to 1000");
     /// What ranks the counterparts.
     evidence: EvidenceChoice = "evidence", choice;
+    /// Mass of parcels in transport.
+    mass: Mass = "mass", choice;
+    /// Replicates of transport to average; large species get fewer.
+    transport_replicates: usize = "transport-replicates", |key, text| whole(key, text, 24..=10_000, "a whole number from 24 to 10000");
     /// Ridge of the canonical correlation in units of the landmarks' mean variance; 0 is classical.
     ridge: f64 = "ridge", |key, text| number(key, text, 0.0..=1e6, "a number of 0 or more");
     /// How landmark blocks are drawn.
     resampling: Resampling = "resampling", choice;
+    /// What hemispheres mean; match and fold need to know them.
+    hemispheres: Hemispheres = "hemispheres", choice;
     /// Counterparts listed for each parcel, or "all".
     top: Top = "top", |key, text| match text {
         "all" => Ok(Top::All),
@@ -130,6 +137,8 @@ const DENSITY_EXPONENT: f64 = 0.5;
 const DIFFUSION_TIME: f64 = 1.0;
 /// Ridge unless asked otherwise; docs/method.md has the figures it was chosen by.
 const RIDGE: f64 = 0.4;
+/// Replicates of transport unless asked otherwise: every landmark block is left out of 40 of them.
+const TRANSPORT_REPLICATES: usize = 120;
 /// Counterparts listed unless asked otherwise.
 const TOP: usize = 10;
 
@@ -165,9 +174,12 @@ impl Request {
             embedding: self.embedding.unwrap_or(embed::Method::OF_SQUARE),
             density_exponent: self.density_exponent.unwrap_or(DENSITY_EXPONENT),
             diffusion_time: self.diffusion_time.unwrap_or(DIFFUSION_TIME),
-            evidence: self.evidence.unwrap_or(EvidenceChoice::Auto),
+            evidence: self.evidence.unwrap_or(EvidenceChoice::Mixture),
+            mass: self.mass.unwrap_or(Mass::Uniform),
+            transport_replicates: self.transport_replicates.unwrap_or(TRANSPORT_REPLICATES),
             ridge: self.ridge.unwrap_or(RIDGE),
             resampling: self.resampling.unwrap_or(Resampling::Bayesian),
+            hemispheres: self.hemispheres.unwrap_or(Hemispheres::Ignore),
             top: self.top.unwrap_or(Top::Number(TOP)),
         };
         let conduct = Conduct {
@@ -252,8 +264,11 @@ mod tests {
             ("axes", "0"),
             ("density-exponent", "1.5"),
             ("diffusion-time", "-1"),
+            ("mass", "weight"),
+            ("transport-replicates", "23"),
             ("ridge", "NaN"),
             ("evidence", "guess"),
+            ("hemispheres", "mirror"),
             ("top", "0"),
             ("quiet", "yes"),
         ] {

@@ -78,12 +78,34 @@ landmarks = "landmarks.csv"
 name = "Loamick"
 matrix = "a.csv"
 weights = "counts"
+parcels = "a_parcels.csv"
 
 [species.b]
 name = "Pellivane"
 matrix = "b.csv"
 weights = "fractions"
+parcels = "b_parcels.csv"
 "#;
+
+/// What the systems are called in the tables of parcels.
+const SYSTEM_NAMES: [&str; SYSTEMS] = [
+    "sight",
+    "hearing",
+    "touch",
+    "movement",
+    "smell and taste",
+    "memory",
+    "body state",
+];
+/// Added to the seed for the draws of the tables of parcels, which came later and must not change the
+/// others.
+const ATTRIBUTE_SEED: u64 = 1 << 32;
+/// How far the middle of the left hemisphere lies from the midline, in units of the space.
+const LATERAL: f64 = 5.0;
+/// Spread of the log area of a parcel.
+const AREA_SPREAD: f64 = 0.35;
+/// Millimetres to a unit of the space and square millimetres of a middling region, in each species.
+const SIZES: [(f64, f64); 2] = [(3.0, 18.0), (7.5, 110.0)];
 
 /// A landmark of the table before its parcels are drawn, its cells as they are printed.
 struct Proposal {
@@ -246,14 +268,25 @@ pub fn files(seed: u64) -> Vec<(&'static str, String)> {
 
     let raw_a = with_lone_parcels(&expected_weights(&parcels_a, Map::Coarse, rng), rng);
     let raw_b = with_lone_parcels(&expected_weights(&parcels_b, Map::Fine, rng), rng);
+    let attributes = &mut Draws::seed_from_u64(seed.wrapping_add(ATTRIBUTE_SEED));
+    let of_region: Vec<Vec<usize>> = (0..REGIONS).map(|region| vec![region]).collect();
+    let described_a = described(&regions, &of_region, &parcels_a, SIZES[0], attributes);
+    let mut next = 0..parcels_b.len();
+    let halves: Vec<Vec<usize>> = labels
+        .heirs
+        .iter()
+        .map(|heirs| next.by_ref().take(heirs.len()).collect())
+        .collect();
+    let described_b = described(&regions, &halves, &parcels_b, SIZES[1], attributes);
     let counts = counted(&strongest(raw_a, DENSITY_A), rng);
     let fractions = shared_out(strongest(raw_b, DENSITY_B));
 
     let order_a = shuffled(counts.len(), rng);
     let order_b = shuffled(fractions.len(), rng);
-    // Drawn last, so that the brains themselves do not depend on their surfaces.
-    let surface_a = surface::label_file(&places(&parcels_a, rng), &labels.a);
-    let surface_b = surface::label_file(&places(&parcels_b, rng), &labels.b);
+    let surface = |described: &[Described], labels: &[String]| {
+        let centres: Vec<[f64; 3]> = described.iter().map(|of| of.coordinates).collect();
+        surface::label_file(&centres, labels)
+    };
     vec![
         ("study.toml", STUDY.to_string()),
         ("a.csv", matrix(&counts, &labels.a, &order_a, count_cell)),
@@ -262,8 +295,16 @@ pub fn files(seed: u64) -> Vec<(&'static str, String)> {
             matrix(&fractions, &labels.b, &order_b, fraction_cell),
         ),
         ("landmarks.csv", landmark_table(&parts, &labels)),
-        ("a.label.gii", surface_a),
-        ("b.label.gii", surface_b),
+        ("a.label.gii", surface(&described_a, &labels.a)),
+        ("b.label.gii", surface(&described_b, &labels.b)),
+        (
+            "a_parcels.csv",
+            parcel_table(&described_a, &labels.a, &order_a),
+        ),
+        (
+            "b_parcels.csv",
+            parcel_table(&described_b, &labels.b, &order_b),
+        ),
         ("truth.csv", truth_table(&labels, &order_a)),
         ("displaced.csv", displaced_table(&parts, &labels)),
         (
@@ -492,14 +533,6 @@ fn with_lone_parcels(weights: &Weights, rng: &mut Draws) -> Weights {
     grown
 }
 
-/// Where the parcels of a species lie; those that fit nowhere lie anywhere.
-fn places(parcels: &[Parcel], rng: &mut Draws) -> Vec<Place> {
-    let inherited = parcels.iter().map(|parcel| parcel.place);
-    let mut places: Vec<Place> = inherited.collect();
-    places.extend((0..LONE).map(|_| near(&ORIGIN, CENTRE_SPREAD + SYSTEM_SPREAD, rng)));
-    places
-}
-
 /// Sets all but the strongest connections to zero, so that the given percentage of pairs is left.
 fn strongest(mut weights: Weights, density: usize) -> Weights {
     let n = weights.len();
@@ -565,6 +598,59 @@ fn matrix(
     rows.extend(order.iter().map(|&row| {
         let cells = order.iter().map(|&column| cell(weights[row][column]));
         std::iter::once(labels[row].clone()).chain(cells).collect()
+    }));
+    table(&rows)
+}
+
+/// What a table of parcels says of one.
+struct Described {
+    coordinates: [f64; 3],
+    area: f64,
+    system: usize,
+}
+
+/// Places the parcels in the left hemisphere by three of the axes of the space, and gives them sizes;
+/// lone parcels get any place and any system.
+fn described(
+    regions: &[Region],
+    members: &[Vec<usize>],
+    parcels: &[Parcel],
+    (unit, middling): (f64, f64),
+    rng: &mut Draws,
+) -> Vec<Described> {
+    let mut all = Vec::new();
+    let mut describe = |place: &Place, system: usize, share: f64| {
+        let lateral = (LATERAL + place[0]).max(0.2);
+        all.push(Described {
+            coordinates: [-lateral * unit, place[1] * unit, place[2] * unit],
+            area: share * middling * (AREA_SPREAD * normal(rng)).exp(),
+            system,
+        });
+    };
+    for (region, members) in regions.iter().zip(members) {
+        for &parcel in members {
+            let share = 1.0 / members.len() as f64;
+            describe(&parcels[parcel].place, region.system, share);
+        }
+    }
+    for lone in 0..LONE {
+        let model = &regions[REGIONS * (2 * lone + 1) / (2 * LONE)];
+        describe(&model.place.map(|x| -x), model.system, 1.0);
+    }
+    all
+}
+
+/// A table of parcels, in the order of the matrix.
+fn parcel_table(described: &[Described], labels: &[String], order: &[usize]) -> String {
+    let mut rows = vec![row(["label", "hemisphere", "x", "y", "z", "area", "group"])];
+    rows.extend(order.iter().map(|&parcel| {
+        let of = &described[parcel];
+        // A zero has no sign.
+        let [x, y, z] = of
+            .coordinates
+            .map(|c| format!("{:.1}", (10.0 * c).round() / 10.0 + 0.0));
+        let (area, group) = (format!("{:.1}", of.area), SYSTEM_NAMES[of.system]);
+        row([&labels[parcel], "left", &x, &y, &z, &area, group])
     }));
     table(&rows)
 }

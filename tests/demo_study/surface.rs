@@ -1,17 +1,14 @@
 //! An invented hemisphere: points spread evenly over a ball, divided among the parcels, as a GIFTI
 //! label file. Only the parcel of each vertex is written; there is no shape to show.
 
-use super::Place;
-
 /// Vertices of the hemisphere.
 const VERTICES: usize = 1000;
 /// One vertex in this many lies on the wall between the hemispheres and belongs to no parcel.
 const WALL_EVERY: usize = 20;
 
-/// The label file of a hemisphere whose parcels lie in the direction of the leading three of their
-/// coordinates.
-pub fn label_file(places: &[Place], labels: &[String]) -> String {
-    let keys = keys(places);
+/// The label file of a left hemisphere from the centres of its parcels, x growing towards the middle.
+pub fn label_file(centres: &[[f64; 3]], labels: &[String]) -> String {
+    let keys = keys(centres);
     let mut xml = String::from(concat!(
         "<?xml version=\"1.0\" encoding=\"UTF-8\"?>\n",
         "<!DOCTYPE GIFTI SYSTEM \"http://www.nitrc.org/frs/download.php/115/gifti.dtd\">\n",
@@ -43,16 +40,20 @@ pub fn label_file(places: &[Place], labels: &[String]) -> String {
 }
 
 /// For each vertex the number of its parcel, counted from 1; 0 on the wall.
-fn keys(places: &[Place]) -> Vec<usize> {
+fn keys(centres: &[[f64; 3]]) -> Vec<usize> {
     let vertices: Vec<[f64; 3]> = (0..VERTICES).map(vertex).collect();
-    let seeds: Vec<[f64; 3]> = places
+    let middle: [f64; 3] = std::array::from_fn(|axis| {
+        centres.iter().map(|centre| centre[axis]).sum::<f64>() / centres.len() as f64
+    });
+    let seeds: Vec<[f64; 3]> = centres
         .iter()
-        .map(|place| {
-            let length = place[..3].iter().map(|x| x * x).sum::<f64>().sqrt();
-            [place[0], place[1], place[2]].map(|x| x / length)
+        .map(|centre| {
+            let away: [f64; 3] = std::array::from_fn(|axis| centre[axis] - middle[axis]);
+            let length = away.iter().map(|x| x * x).sum::<f64>().sqrt();
+            away.map(|x| x / length)
         })
         .collect();
-    // The lowest vertices are the wall; the first ones are the highest.
+    // The last vertices lie towards the middle.
     let free = VERTICES - VERTICES / WALL_EVERY;
     let mut keys = vec![0; VERTICES];
     // Every parcel has a vertex, however crowded its neighbourhood.
@@ -71,13 +72,14 @@ fn keys(places: &[Place]) -> Vec<usize> {
     keys
 }
 
-/// A point of the spiral that covers a ball evenly, from the top down (common practice, no source).
+/// A point of the spiral that covers a ball evenly, from the outside to the middle (common practice, no
+/// source).
 fn vertex(at: usize) -> [f64; 3] {
     let golden = std::f64::consts::PI * (3.0 - 5.0_f64.sqrt());
-    let height = 1.0 - 2.0 * (at as f64 + 0.5) / VERTICES as f64;
-    let radius = (1.0 - height * height).sqrt();
+    let medial = 2.0 * (at as f64 + 0.5) / VERTICES as f64 - 1.0;
+    let radius = (1.0 - medial * medial).sqrt();
     let turn = golden * at as f64;
-    [radius * turn.cos(), radius * turn.sin(), height]
+    [medial, radius * turn.cos(), radius * turn.sin()]
 }
 
 /// The cosine of the angle between two directions.

@@ -76,6 +76,9 @@ pub fn matrix(arrays: &[Listed], wanted: &Wanted<'_>) -> Result<usize, Fault> {
     }
 }
 
+/// Labels of rows and of columns, where a file holds them.
+pub type Found = (Option<Vec<Label>>, Option<Vec<Label>>);
+
 /// Labels of the rows and of the columns, as far as the file holds them: the array named, else the
 /// only one of the right length. `read` gives the texts of an array.
 ///
@@ -87,7 +90,7 @@ pub fn labels(
     (rows, columns): (usize, usize),
     place: &Place,
     mut read: impl FnMut(usize) -> Result<Vec<String>, Fault>,
-) -> Result<(Option<Vec<Label>>, Option<Vec<Label>>), Fault> {
+) -> Result<Found, Fault> {
     let named = match wanted.label_variable {
         None => None,
         Some(name) => Some(labels_named(arrays, name, (rows, columns))?),

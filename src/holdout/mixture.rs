@@ -1,0 +1,252 @@
+//! Kinds of evidence weighed by left-out landmarks and mixed.
+
+use ndarray::Array2;
+use rayon::prelude::*;
+use serde::Serialize;
+
+use super::choose::choose;
+use super::out_of_bag::OutOfBag;
+use super::trials::{Asked, Placed, Trials, Way};
+use crate::align::Alignment;
+use crate::bootstrap::{Purpose, Stream};
+use crate::domain::{Pair, Seed, Side};
+use crate::evidence::{Fitted, Kind, Material};
+use crate::place::{self, Candidates};
+
+/// How fast weight falls with left-out error, with very many landmarks.
+const SHARPNESS: f64 = 8.0;
+/// Number of blocks with which the fall is half as fast: few landmarks judge roughly, so weights are
+/// shrunk towards the odds that the kinds have without them.
+const HALF_SHARP: f64 = 6.0;
+
+/// One kind in a mixture.
+#[derive(Debug, Clone, Copy, PartialEq, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub struct Member {
+    /// The kind.
+    pub kind: Kind,
+    /// Its weight; those of all kinds sum to 1.
+    pub weight: f64,
+    /// Its left-out error: mean over blocks, 0 where every counterpart comes first.
+    pub error: f64,
+    /// Index of its way of ranking.
+    #[serde(skip)]
+    pub way: usize,
+}
+
+/// Weights of kinds from the errors of each block under each kind:
+///
+/// ```text
+/// weight = odds exp(-s (error - least error)) / sum,   s = 8 B / (B + 6),   B blocks
+/// ```
+#[must_use]
+pub fn weigh(kinds: &[Kind], errors: &[Vec<f64>]) -> Vec<f64> {
+    let means: Vec<f64> = errors
+        .iter()
+        .map(|errors| errors.iter().sum::<f64>() / errors.len().max(1) as f64)
+        .collect();
+    let least = means.iter().copied().fold(f64::INFINITY, f64::min);
+    let blocks = errors.first().map_or(0, Vec::len) as f64;
+    let sharpness = SHARPNESS * blocks / (blocks + HALF_SHARP);
+    let raw: Vec<f64> = kinds
+        .iter()
+        .zip(&means)
+        .map(|(kind, error)| kind.prior_odds() * (-sharpness * (error - least)).exp())
+        .collect();
+    let sum: f64 = raw.iter().sum();
+    raw.into_iter().map(|x| x / sum).collect()
+}
+
+/// Mixes scores: for each kind the mean, over both directions, of the logarithm of a candidate's rank
+/// as a share of the logarithm of their number. A kind can so rule out no candidate, and first
+/// against second counts as much as tenth against twentieth.
+pub struct Blend {
+    /// Weighted sum of the kinds' log ranks; less is more alike.
+    pub score: Array2<f64>,
+}
+
+impl Blend {
+    /// Nothing yet, `(candidates of a, candidates of b)`.
+    #[must_use]
+    pub fn new(shape: (usize, usize)) -> Blend {
+        Blend {
+            score: Array2::zeros(shape),
+        }
+    }
+
+    /// Adds a kind.
+    pub fn add(&mut self, weight: f64, dissimilarities: &Array2<f64>) {
+        self.score
+            .scaled_add(weight, &place::log_ranks(dissimilarities));
+    }
+}
+
+/// Where a left-out landmark's first candidate was, seen from one species.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct FirstOf {
+    /// The share of mass that transport without the landmark sends there, where there is transport.
+    pub share: Option<f64>,
+    /// Whether it was the counterpart.
+    pub right: bool,
+}
+
+/// A landmark left out of a mixture.
+#[derive(Debug, Clone, Copy, PartialEq)]
+pub struct LeftOutOfMixture {
+    /// Where its counterpart came.
+    pub placed: Pair<Placed>,
+    /// What came first.
+    pub first: Pair<FirstOf>,
+}
+
+/// Every landmark left out of a mixture of the kinds named by their ways. Weights come from the
+/// errors of the other blocks alone, joint spaces have the axes that the other blocks favour.
+///
+/// # Panics
+/// If a way cannot be fitted though the trials could.
+#[must_use]
+pub fn leave_out(
+    material: &Material<'_>,
+    ways: &[Way],
+    trials: &Trials,
+    members: &[Member],
+    bagged: Option<&OutOfBag>,
+    open: &Pair<Vec<usize>>,
+    admissible: &Candidates,
+    asked: &Asked,
+    seed: Seed,
+) -> Vec<LeftOutOfMixture> {
+    let landmarks = material.landmarks;
+    (0..landmarks.len())
+        .into_par_iter()
+        .map(|at| {
+            let landmark = &landmarks.list()[at];
+            let block = landmark.block;
+            let joint = choose(ways, trials, None, Some(block));
+            let way_of = |member: &Member| match member.kind {
+                Kind::Procrustes => joint.ways[Alignment::Procrustes],
+                Kind::Canonical => joint.ways[Alignment::Canonical],
+                _ => member.way,
+            };
+            let kinds: Vec<Kind> = members.iter().map(|member| member.kind).collect();
+            let errors: Vec<Vec<f64>> = members
+                .iter()
+                .map(|member| trials.errors(way_of(member), Some(block)))
+                .collect();
+            let candidates = Pair::from_fn(|side| {
+                let mut all = [&open[side][..], &landmark.parcels[side][..]].concat();
+                all.sort_unstable();
+                all
+            });
+            let shape = (candidates.a.len(), candidates.b.len());
+            let weights = material.weights(|b| if b == block { 0.0 } else { 1.0 });
+            let mut blend = Blend::new(shape);
+            let mut scores = Array2::zeros(shape);
+            for (member, weight) in members.iter().zip(weigh(&kinds, &errors)) {
+                match ways[way_of(member)].evidence() {
+                    Some(evidence) => {
+                        let index = (block * landmarks.blocks() + block) as u64;
+                        let mut chance = Stream::new(seed, Purpose::EvidenceLeftOut, index);
+                        // A kind that has nothing to say without the landmark ranks nothing.
+                        let Ok(fitted) = evidence.fit(material, &weights, &mut chance) else {
+                            continue;
+                        };
+                        fitted.dissimilarities(&candidates.a, &candidates.b, &mut scores);
+                    }
+                    None => {
+                        let all = &bagged.expect("costly kinds have replicates").without[block];
+                        scores = Array2::from_shape_fn(shape, |(i, j)| {
+                            all[(candidates.a[i], candidates.b[j])]
+                        });
+                    }
+                }
+                admissible.close(&candidates.a, &candidates.b, &mut scores);
+                blend.add(weight, &scores);
+            }
+            admissible.close(&candidates.a, &candidates.b, &mut blend.score);
+            let found = Pair::from_fn(|from: Side| {
+                let to = from.opposite();
+                let question = candidates[from]
+                    .binary_search(&asked.of(at)[from])
+                    .expect("the asked member is a candidate");
+                let row: Vec<f64> = match from {
+                    Side::A => blend.score.row(question).to_vec(),
+                    Side::B => blend.score.column(question).to_vec(),
+                };
+                let first = (0..row.len())
+                    .min_by(|&i, &j| row[i].total_cmp(&row[j]).then(i.cmp(&j)))
+                    .map(|first| candidates[to][first])
+                    .expect("the landmark itself has a parcel");
+                let placed = Placed::of(&row, &candidates[to], &landmark.parcels[to]);
+                let share = bagged
+                    .filter(|bagged| bagged.shares.is_some())
+                    .map(|bagged| bagged.asked[at][from][first]);
+                (
+                    placed,
+                    FirstOf {
+                        share,
+                        right: placed.rank == 1,
+                    },
+                )
+            });
+            LeftOutOfMixture {
+                placed: found.map(|(placed, _)| placed),
+                first: found.map(|(_, first)| first),
+            }
+        })
+        .collect()
+}
+
+/// Where counterparts come when landmarks are left out of costly evidence.
+#[must_use]
+pub fn placed_out_of_bag(
+    material: &Material<'_>,
+    bagged: &OutOfBag,
+    open: &Pair<Vec<usize>>,
+    admissible: &Candidates,
+    asked: &Asked,
+) -> Vec<Pair<Placed>> {
+    struct Mean<'o>(&'o Array2<f64>);
+    impl Fitted for Mean<'_> {
+        fn dissimilarities(&self, a: &[usize], b: &[usize], out: &mut Array2<f64>) {
+            for (row, &i) in a.iter().enumerate() {
+                for (column, &j) in b.iter().enumerate() {
+                    out[(row, column)] = self.0[(i, j)];
+                }
+            }
+        }
+    }
+    material
+        .landmarks
+        .list()
+        .iter()
+        .enumerate()
+        .map(|(at, landmark)| {
+            let mean = Mean(&bagged.without[landmark.block]);
+            super::trials::place_one(&mean, landmark, asked.of(at), open, admissible)
+        })
+        .collect()
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn a_kind_that_errs_more_weighs_less_and_few_landmarks_change_little() {
+        let kinds = [Kind::Canonical, Kind::Fingerprint, Kind::Transport];
+        let with = |blocks: usize| {
+            let errors = [0.8, 0.2, 0.2].map(|error| vec![error; blocks]);
+            weigh(&kinds, &errors)
+        };
+        let (few, many) = (with(6), with(60));
+        for weights in [&few, &many] {
+            assert!((weights.iter().sum::<f64>() - 1.0).abs() < 1e-12);
+            assert!(weights[0] < weights[1] && weights[1] < weights[2]);
+        }
+        assert!(many[0] < few[0]);
+        // Odds times exp(-8 * 6 / 12 * 0.6) = exp(-2.4), over 1 + 8 + that.
+        let expected = (-2.4_f64).exp() / (9.0 + (-2.4_f64).exp());
+        assert!((few[0] - expected).abs() < 1e-12);
+    }
+}

@@ -1,0 +1,238 @@
+//! What ranks: one kind of evidence or a mixture, on the full sample and in a replicate.
+
+use ndarray::{Array2, ArrayView1};
+
+use super::chance::Support;
+use super::{Counterpart, Placement, Space, Tally};
+use crate::bootstrap::{Purpose, Stream};
+use crate::domain::{Pair, Seed, Side};
+use crate::evidence::{Kind, Material};
+use crate::holdout::{Blend, Member, OutOfBag, Way};
+use crate::place::{self, Candidates};
+use crate::prepare::Study;
+
+/// What ranks.
+pub enum Ranker {
+    /// One kind, fitted again in every replicate.
+    One(Way),
+    /// Several kinds with their weights, of which costly ones bring their own replicates.
+    Mixture {
+        /// The kinds and their ways of ranking.
+        members: Vec<(Member, Way)>,
+        /// Replicates of transport, if it is among them.
+        bagged: Option<OutOfBag>,
+        /// Replicates that rank.
+        replicates: usize,
+    },
+}
+
+impl Ranker {
+    /// Replicates that rank, of `all`.
+    pub fn replicates(&self, all: usize) -> usize {
+        match self {
+            Ranker::One(_) => all,
+            Ranker::Mixture { replicates, .. } => (*replicates).min(all),
+        }
+    }
+
+    /// Fills `out` with how unlike open parcels are in a replicate with these landmark weights.
+    ///
+    /// # Panics
+    /// If evidence cannot be fitted, which was tried on the full sample.
+    pub fn replicate(
+        &self,
+        material: &Material<'_>,
+        weights: &[f64],
+        replicate: usize,
+        open: &Pair<Vec<usize>>,
+        candidates: &Candidates,
+        seed: Seed,
+        out: &mut Array2<f64>,
+    ) {
+        let fill = |way: &Way, out: &mut Array2<f64>| {
+            let mut chance = Stream::new(seed, Purpose::Evidence, replicate as u64);
+            fit(material, way, weights, &mut chance, open, out);
+        };
+        match self {
+            Ranker::One(way) => fill(way, out),
+            Ranker::Mixture {
+                members, bagged, ..
+            } => {
+                let mut blend = Blend::new(out.dim());
+                for (member, way) in members {
+                    match (way, bagged) {
+                        (Way::Transport, Some(bagged)) => {
+                            out.zip_mut_with(&bagged.each[replicate], |x, y| *x = f64::from(*y));
+                        }
+                        _ => fill(way, out),
+                    }
+                    candidates.close(&open.a, &open.b, out);
+                    blend.add(member.weight, out);
+                }
+                out.assign(&blend.score);
+            }
+        }
+        candidates.close(&open.a, &open.b, out);
+    }
+}
+
+fn fit(
+    material: &Material<'_>,
+    way: &Way,
+    weights: &[f64],
+    chance: &mut Stream,
+    open: &Pair<Vec<usize>>,
+    out: &mut Array2<f64>,
+) {
+    way.evidence()
+        .expect("costly kinds bring their own replicates")
+        .fit(material, weights, chance)
+        .expect("it was fitted before, and every draw has two landmarks or more")
+        .dissimilarities(&open.a, &open.b, out);
+}
+
+/// The full-sample ranking of open parcels against open parcels, and which of it is listed.
+pub struct Ranking {
+    /// What ranks.
+    pub ranker: Ranker,
+    /// Parcels that are no landmark.
+    pub open: Pair<Vec<usize>>,
+    /// For each open parcel its listed candidates, as places in `open` of the other side.
+    pub listed: Pair<Vec<Vec<usize>>>,
+    /// For each kind the first candidate of each open parcel.
+    firsts: Vec<(Kind, Pair<Vec<Option<usize>>>)>,
+}
+
+impl Ranking {
+    /// Ranks the full sample.
+    pub fn new(
+        material: &Material<'_>,
+        ranker: Ranker,
+        open: &Pair<Vec<usize>>,
+        study: &Study,
+    ) -> Ranking {
+        let weights = material.weights(|_| 1.0);
+        let shape = (open.a.len(), open.b.len());
+        let mut scores = Array2::zeros(shape);
+        let mut firsts = Vec::new();
+        let full = |way: &Way, out: &mut Array2<f64>| {
+            // The full sample comes before the first replicate, so it takes the last index.
+            let mut chance = Stream::new(study.settings.seed, Purpose::Evidence, u64::MAX);
+            fit(material, way, &weights, &mut chance, open, out);
+        };
+        match &ranker {
+            Ranker::One(way) => {
+                full(way, &mut scores);
+                study.candidates.close(&open.a, &open.b, &mut scores);
+                firsts.push((way.kind(), place::nearest(&scores)));
+            }
+            Ranker::Mixture {
+                members, bagged, ..
+            } => {
+                let mut blend = Blend::new(shape);
+                for (member, way) in members {
+                    match (way, bagged) {
+                        (Way::Transport, Some(bagged)) => {
+                            scores = Array2::from_shape_fn(shape, |(i, j)| {
+                                bagged.mean[(open.a[i], open.b[j])]
+                            });
+                        }
+                        _ => full(way, &mut scores),
+                    }
+                    study.candidates.close(&open.a, &open.b, &mut scores);
+                    firsts.push((member.kind, place::nearest(&scores)));
+                    blend.add(member.weight, &scores);
+                }
+                scores = blend.score;
+                study.candidates.close(&open.a, &open.b, &mut scores);
+            }
+        }
+        let best = |row: ArrayView1<'_, f64>| {
+            let mut order = place::order(row);
+            let admissible = row.iter().filter(|d| **d < f64::INFINITY).count();
+            order.truncate(study.settings.top.of(admissible));
+            order
+        };
+        Ranking {
+            ranker,
+            open: open.clone(),
+            listed: Pair {
+                a: scores.rows().into_iter().map(best).collect(),
+                b: scores.columns().into_iter().map(best).collect(),
+            },
+            firsts,
+        }
+    }
+
+    /// Share of a parcel's mass that averaged transport sends to a candidate, both as places among
+    /// the open parcels.
+    fn share(&self, side: Side, parcel: usize, candidate: usize) -> Option<f64> {
+        let Ranker::Mixture {
+            bagged: Some(bagged),
+            ..
+        } = &self.ranker
+        else {
+            return None;
+        };
+        let shares = bagged.shares.as_ref()?;
+        let (own, other) = (
+            self.open[side][parcel],
+            self.open[side.opposite()][candidate],
+        );
+        Some(match side {
+            Side::A => shares.a[(own, other)],
+            Side::B => shares.b[(other, own)],
+        })
+    }
+
+    /// Every open parcel's candidates, in the order of the input file.
+    pub fn placements(
+        &self,
+        side: Side,
+        study: &Study,
+        tally: &Tally,
+        space: &Space,
+        landmarks: &Support,
+    ) -> Vec<Placement> {
+        let other = side.opposite();
+        let mut rank_intervals = tally.rank_intervals(side);
+        let mut placements: Vec<Option<Placement>> = vec![None; study.species[side].parcels.len()];
+        for (at, listed) in self.listed[side].iter().enumerate() {
+            let parcel = self.open[side][at];
+            let counterparts = listed
+                .iter()
+                .enumerate()
+                .map(|(place, &candidate)| {
+                    let support = tally.support(side, at, candidate);
+                    Counterpart {
+                        parcel: self.open[other][candidate],
+                        rank: place + 1,
+                        rank_interval: rank_intervals.next().expect("one for each listed pair"),
+                        distance: space.distance(side, parcel, self.open[other][candidate]),
+                        support,
+                        mutual: place == 0 && self.listed[other][candidate].first() == Some(&at),
+                        kinds_agreeing: self
+                            .firsts
+                            .iter()
+                            .filter(|(_, firsts)| firsts[side][at] == Some(candidate))
+                            .map(|(kind, _)| *kind)
+                            .collect(),
+                        chance: (place == 0).then(|| {
+                            let share = self.share(side, at, candidate);
+                            landmarks.chance(share, support)
+                        }),
+                    }
+                })
+                .collect();
+            placements[parcel] = Some(Placement {
+                parcel,
+                counterparts,
+            });
+        }
+        let as_listed = study.species[side].parcels.as_listed();
+        as_listed
+            .iter()
+            .filter_map(|&parcel| placements[parcel].take())
+            .collect()
+    }
+}
