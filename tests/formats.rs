@@ -18,23 +18,7 @@ fn data(name: &str) -> PathBuf {
 
 /// A species whose matrix is a file beside the script that made it.
 fn species(matrix: &str) -> SpeciesFile {
-    SpeciesFile {
-        name: "Vole".to_owned(),
-        matrix: Some(data(matrix)),
-        subjects: None,
-        labels: None,
-        column_labels: None,
-        rows: None,
-        tracer: None,
-        variable: None,
-        label_variable: None,
-        parcels: None,
-        distances: None,
-        weights: WeightKind::Counts,
-        transform: None,
-        likeness: None,
-        strongest: None,
-    }
+    SpeciesFile::new("Vole", &data(matrix), WeightKind::Counts)
 }
 
 fn read(species: &SpeciesFile) -> Connectivity {

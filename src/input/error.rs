@@ -4,6 +4,7 @@ use std::fmt;
 use std::path::{Path, PathBuf};
 
 use super::formats::Fault;
+use super::gifti::GiftiFault;
 use super::parcel_fault::ParcelFault;
 use crate::domain::Side;
 
@@ -139,6 +140,9 @@ pub enum Problem {
     /// A fault of one format of matrices.
     #[error(transparent)]
     Format(#[from] Fault),
+    /// A fault of a file of labels of a surface.
+    #[error(transparent)]
+    Gifti(#[from] GiftiFault),
     /// A fault in what is said of parcels.
     #[error(transparent)]
     Parcels(#[from] ParcelFault),

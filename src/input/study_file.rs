@@ -49,6 +49,28 @@ pub struct SpeciesFile {
 }
 
 impl SpeciesFile {
+    /// A species of which nothing is said but what must be.
+    #[must_use]
+    pub fn new(name: &str, matrix: &Path, weights: WeightKind) -> SpeciesFile {
+        SpeciesFile {
+            name: name.to_owned(),
+            matrix: Some(matrix.to_path_buf()),
+            subjects: None,
+            labels: None,
+            column_labels: None,
+            rows: None,
+            tracer: None,
+            variable: None,
+            label_variable: None,
+            parcels: None,
+            distances: None,
+            weights,
+            transform: None,
+            likeness: None,
+            strongest: None,
+        }
+    }
+
     /// The file, or one of the files, that its connectivity is read from.
     #[must_use]
     pub fn source(&self) -> &Path {
