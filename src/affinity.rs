@@ -1,9 +1,7 @@
 //! How alike two parcels of one species are: by the profiles of their connections.
 
-use std::collections::HashMap;
-
 use ndarray::linalg::general_mat_mul;
-use ndarray::{s, Array1, Array2, ArrayView2, Axis};
+use ndarray::{s, Array1, Array2, ArrayView2, Axis, CowArray, Ix2};
 
 use crate::domain::{choices, Connectivity, Share, WeightKind};
 
@@ -51,13 +49,20 @@ const FEWEST_SHARED: f64 = 3.0;
 /// The same as a share of a whole profile.
 const SMALLEST_SHARED: f64 = 0.1;
 
+/// Whether so many entries of so many possible ones are enough to compare two profiles by.
+#[must_use]
+pub fn enough_shared(shared: f64, possible: f64) -> bool {
+    shared >= FEWEST_SHARED && shared >= SMALLEST_SHARED * possible
+}
+
 /// One half of the profiles: links sent, or links received.
 #[derive(Debug, Clone)]
-struct Half {
+struct Half<'n> {
     /// The parcels that have it, where not all do.
     parcels: Option<Vec<usize>>,
-    /// Strengths `(parcels that have it, entries)`; zero where nothing was observed.
-    links: Array2<f64>,
+    /// Strengths `(parcels that have it, entries)`; zero where nothing was observed. Those of the
+    /// network itself where nothing is cut, since a copy of a large one is dear.
+    links: CowArray<'n, f64, Ix2>,
     /// One where an entry was observed, zero elsewhere; `None` where all were.
     observed: Option<Array2<f64>>,
 }
@@ -69,19 +74,22 @@ struct Half {
 /// columns too, and compared among these only. Entries that were never observed are left out of
 /// every comparison: two profiles are compared where both were observed.
 #[derive(Debug, Clone)]
-pub struct Profiles {
+pub struct Profiles<'n> {
     parcels: usize,
-    halves: Vec<Half>,
+    halves: Vec<Half<'n>>,
 }
 
-impl Profiles {
+impl<'n> Profiles<'n> {
     /// Profiles of a complete square network, strengths `(parcels, parcels)`; each half of a profile
     /// is cut to its strongest links.
     #[must_use]
-    pub fn new(strengths: ArrayView2<'_, f64>, strongest: Share) -> Profiles {
-        let mut halves = vec![Half::whole(strengths, strongest)];
+    pub fn new(strengths: ArrayView2<'n, f64>, strongest: Share) -> Profiles<'n> {
+        let mut halves = vec![Half::whole(CowArray::from(strengths), strongest)];
         if is_directed(strengths) {
-            halves.push(Half::whole(strengths.t(), strongest));
+            halves.push(Half::whole(
+                CowArray::from(strengths.reversed_axes()),
+                strongest,
+            ));
         }
         Profiles {
             parcels: strengths.nrows(),
@@ -91,7 +99,7 @@ impl Profiles {
 
     /// Profiles of any network whose rows are the parcels.
     #[must_use]
-    pub fn of(network: &Connectivity, strongest: Share) -> Profiles {
+    pub fn of(network: &'n Connectivity, strongest: Share) -> Profiles<'n> {
         let strengths = network.weights().view();
         if network.is_square() && !network.has_missing() {
             return Profiles::new(strengths, strongest);
@@ -102,26 +110,17 @@ impl Profiles {
                 f64::from(u8::from(!network.is_missing(i, j)))
             })
         });
-        let mut outgoing = Half::whole(strengths, strongest);
+        let mut outgoing = Half::whole(CowArray::from(strengths), strongest);
         outgoing.observed.clone_from(&observed);
         let mut halves = vec![outgoing];
-        let row_of: HashMap<&str, usize> = network
-            .row_labels()
-            .iter()
-            .enumerate()
-            .map(|(row, label)| (label.as_str(), row))
-            .collect();
         // Columns that are parcels, and the rows these stand in.
-        let (columns, rows): (Vec<usize>, Vec<usize>) = network
-            .column_labels()
-            .iter()
-            .enumerate()
-            .filter_map(|(column, label)| Some((column, *row_of.get(label.as_str())?)))
+        let (columns, rows): (Vec<usize>, Vec<usize>) = (0..strengths.ncols())
+            .filter_map(|column| Some((column, network.row_of_column(column)?)))
             .unzip();
         let symmetric = network.is_square() && !is_directed_where_observed(network);
         if !symmetric && !columns.is_empty() {
             let received = strengths.select(Axis(1), &columns).reversed_axes();
-            let mut incoming = Half::whole(received.view(), strongest);
+            let mut incoming = Half::whole(CowArray::from(received), strongest);
             incoming.observed = observed.map(|mask| {
                 let mask = mask.select(Axis(1), &columns).reversed_axes();
                 mask.as_standard_layout().into_owned()
@@ -237,7 +236,7 @@ impl Profiles {
         }
         if likeness == Likeness::Pearson {
             let width = self.width() as f64;
-            let sums = |half: &Half| half.links.sum_axis(Axis(1));
+            let sums = |half: &Half<'_>| half.links.sum_axis(Axis(1));
             let means: Array1<f64> = self
                 .halves
                 .iter()
@@ -280,18 +279,19 @@ impl Profiles {
                 }
             };
             let squared = half.links.mapv(|x| x * x);
-            half.add(&half.links, &half.links, &mut products);
-            half.add(&squared, mask, &mut squares);
-            half.add(&half.links, mask, &mut sums);
+            let (links, mask) = (half.links.view(), mask.view());
+            half.add(links, links, &mut products);
+            half.add(squared.view(), mask, &mut squares);
+            half.add(links, mask, &mut sums);
             half.add(mask, mask, &mut shared);
             let ones = Array2::from_elem((half.links.nrows(), 1), 1.0);
             let width = ones.mapv(|one: f64| one * half.links.ncols() as f64);
-            half.add(&width, &ones, &mut possible);
+            half.add(width.view(), ones.view(), &mut possible);
         }
         let mut affinity = products;
         likenesses(&mut affinity, |products, i, j| {
             let count = shared[(i, j)];
-            if count < FEWEST_SHARED || count < SMALLEST_SHARED * possible[(i, j)] {
+            if !enough_shared(count, possible[(i, j)]) {
                 return 0.0;
             }
             let (mut product, mut own_i, mut own_j) =
@@ -313,10 +313,15 @@ impl Profiles {
     }
 }
 
-impl Half {
-    fn whole(links: ArrayView2<'_, f64>, strongest: Share) -> Half {
-        let mut links = links.as_standard_layout().into_owned();
-        keep_strongest(&mut links, strongest);
+impl<'n> Half<'n> {
+    fn whole(links: CowArray<'n, f64, Ix2>, strongest: Share) -> Half<'n> {
+        let links = if strongest == Share::ALL {
+            links
+        } else {
+            let mut links = links.as_standard_layout().into_owned();
+            keep_strongest(&mut links, strongest);
+            CowArray::from(links)
+        };
         Half {
             parcels: None,
             links,
@@ -334,9 +339,9 @@ impl Half {
     }
 
     /// Adds the products of rows of `left` with rows of `right` to the pairs of parcels they stand for.
-    fn add(&self, left: &Array2<f64>, right: &Array2<f64>, to: &mut Array2<f64>) {
+    fn add(&self, left: ArrayView2<'_, f64>, right: ArrayView2<'_, f64>, to: &mut Array2<f64>) {
         match &self.parcels {
-            None => general_mat_mul(1.0, left, &right.t(), 1.0, to),
+            None => general_mat_mul(1.0, &left, &right.t(), 1.0, to),
             Some(parcels) => {
                 let products = left.dot(&right.t());
                 for ((i, j), product) in products.indexed_iter() {
@@ -380,9 +385,6 @@ pub fn is_directed(strengths: ArrayView2<'_, f64>) -> bool {
 /// Keeps in each row the strongest share of its links and every tie with the weakest kept; what is
 /// cut, and everything negative, becomes zero. A share of 1 leaves the row as it is.
 fn keep_strongest(rows: &mut Array2<f64>, share: Share) {
-    if share == Share::ALL {
-        return;
-    }
     let others = rows.ncols().saturating_sub(1) as f64;
     // The slack keeps 0.55 x 100 at 55 in spite of rounding.
     let keep = ((share.get() * others - 1e-9).ceil() as usize).max(1);

@@ -98,6 +98,15 @@ pub struct FoundLandmarks {
     pub known: Pair<(usize, usize)>,
 }
 
+/// A table of parcels that was found.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct FoundParcels {
+    /// Name of the file in the folder.
+    pub file: String,
+    /// Parcels it describes that the matrix has, and all it describes.
+    pub known: (usize, usize),
+}
+
 /// One species of the draft.
 #[derive(Debug, Clone, PartialEq)]
 pub struct DraftSpecies {
@@ -105,6 +114,8 @@ pub struct DraftSpecies {
     pub name: String,
     /// Its matrix, where one was found.
     pub matrix: Option<FoundMatrix>,
+    /// The table of its parcels, where one was found.
+    pub parcels: Option<FoundParcels>,
 }
 
 /// A study file to be, and what it rests on.

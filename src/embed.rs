@@ -20,6 +20,15 @@ choices! {
     }
 }
 
+impl Method {
+    /// The default.
+    pub const OF_SQUARE: Method = Method::Diffusion;
+    /// The default where a network is rectangular: short profiles leave many pairs of parcels without
+    /// any common partner, and a diffusion map spends its first axes on the pieces that fall off
+    /// (measured, docs/method.md).
+    pub const OF_RECTANGULAR: Method = Method::Components;
+}
+
 /// Coordinates of one species' parcels.
 #[derive(Debug, Clone, PartialEq)]
 pub struct Embedding {

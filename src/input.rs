@@ -1,6 +1,7 @@
 //! Files to domain types. Every fault names file, line, column and parcel, and says what to do.
 
 mod delimited;
+mod distances;
 mod error;
 mod formats;
 mod grid;
@@ -8,16 +9,22 @@ mod label_file;
 mod landmark_table;
 mod matrix;
 mod nearest;
+mod parcel_fault;
+mod parcel_table;
 mod recognise;
 mod sides;
 mod source;
 mod study_file;
 
+pub use distances::{read as read_distances, Distances};
 pub use error::{InputError, Place, Problem};
 pub use formats::{Fault, Inflated};
 pub use landmark_table::read as read_landmarks;
 pub use matrix::{read as read_matrix, read_of as read_matrix_of, Matrix};
 pub use nearest::{nearest, nearest_few};
-pub use recognise::{recognise, LandmarkLooks, Looks, MatrixLooks};
+pub use parcel_fault::ParcelFault;
+pub use parcel_table::{read as read_parcels, ParcelTable};
+pub use recognise::{recognise, LandmarkLooks, Looks, MatrixLooks, ParcelLooks};
+pub use sides::{differ_only_by_side, without_side, SideMark};
 pub use source::{InputFile, Source};
 pub use study_file::{read as read_study_file, SpeciesFile, StudyFile};

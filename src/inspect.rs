@@ -7,6 +7,7 @@ mod axes;
 mod coverage;
 mod hubs;
 mod landmarks;
+mod space;
 mod suggestion;
 mod systems;
 
@@ -14,13 +15,14 @@ pub use axes::{AxesAllowed, AxesWorth};
 pub use coverage::{Beyond, Coverage, Far, System};
 pub use hubs::Hub;
 pub use landmarks::{BasisCount, LandmarkFacts};
+pub use space::{AttributeFacts, DistanceFacts};
 pub use suggestion::Suggestion;
 pub use systems::systems;
 
 use serde::Serialize;
 
 use crate::affinity::{self, Profiles};
-use crate::domain::{Pair, Side, Transform, WeightKind};
+use crate::domain::{Pair, RowsAre, Side, Tracer, Transform, WeightKind};
 use crate::evidence::Material;
 use crate::locate::beyond_landmarks;
 use crate::prepare::{Filled, Parts, RawFacts, Study, SumsToOne};
@@ -53,6 +55,18 @@ pub struct SpeciesFacts {
     pub parcels: usize,
     /// Parcels without any connection, in the order of the file.
     pub set_aside: Vec<String>,
+    /// Parcels of which too little was observed, in the order of the file.
+    pub not_covered: Vec<String>,
+    /// What parcels are where the matrix is not square.
+    pub rectangular: Option<RowsAre>,
+    /// How injected areas were traced, as stated.
+    pub tracer: Option<Tracer>,
+    /// Columns: entries of a profile in one direction.
+    pub columns: usize,
+    /// Of these, how many are parcels themselves.
+    pub columns_within: usize,
+    /// Entries off the diagonal that were never observed.
+    pub missing: usize,
     /// What the weights measure, as stated.
     pub weights: WeightKind,
     /// How they are transformed.
@@ -67,7 +81,7 @@ pub struct SpeciesFacts {
     pub filled: Filled,
     /// Entries off the diagonal that are a connection.
     pub connections: usize,
-    /// The same as a share of all entries off the diagonal.
+    /// The same as a share of all observed entries off the diagonal.
     pub density: f64,
     /// Smallest weight off the diagonal.
     pub smallest: f64,
@@ -87,6 +101,10 @@ pub struct SpeciesFacts {
     pub affinity_parts: usize,
     /// The parcels with the largest strength.
     pub hubs: Vec<Hub>,
+    /// What is known of its parcels besides.
+    pub attributes: AttributeFacts,
+    /// Distances between them, where known.
+    pub distances: Option<DistanceFacts>,
     /// What the leading axes of its embedding carry.
     pub axes: AxesWorth,
     /// What of its connectivity the landmarks speak for.
@@ -129,14 +147,24 @@ fn species_facts(study: &Study, side: Side, beyond: &[f64]) -> SpeciesFacts {
     let (species, raw) = (&study.species[side], &study.raw[side]);
     let treatment = &study.treatment[side];
     let labels = species.parcels.labels();
-    let strengths = species.network.weights().view();
-    let affinity = Profiles::new(strengths, treatment.affinity.strongest)
+
+    let affinity = Profiles::of(&species.network, treatment.affinity.strongest)
         .affinity(treatment.affinity.likeness);
-    let parts = Parts::of(labels.len(), |i, j| affinity[(i, j)] > 0.0);
+    let alike = affinity
+        .indexed_iter()
+        .filter(|(_, a)| **a > 0.0)
+        .map(|(pair, _)| pair);
+    let parts = Parts::of(labels.len(), alike);
     SpeciesFacts {
         name: species.parcels.species().to_owned(),
         parcels: labels.len(),
         set_aside: species.parcels.isolated().to_vec(),
+        not_covered: species.parcels.uncovered().to_vec(),
+        rectangular: raw.rectangular,
+        tracer: treatment.tracer,
+        columns: raw.columns,
+        columns_within: raw.columns_within,
+        missing: raw.missing,
         weights: treatment.weights,
         transform: treatment.transform,
         transform_because: reason(treatment.weights, treatment.transform, raw),
@@ -154,6 +182,8 @@ fn species_facts(study: &Study, side: Side, beyond: &[f64]) -> SpeciesFacts {
         outside_largest_part: raw.outside.iter().map(|&i| labels[i].clone()).collect(),
         affinity_parts: parts.sizes.len(),
         hubs: hubs::hubs(study, side),
+        attributes: AttributeFacts::of(species),
+        distances: DistanceFacts::of(study, side),
         axes: AxesWorth::of(&species.embedding),
         coverage: Coverage::of(study, side, &affinity, beyond),
     }

@@ -125,11 +125,20 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             Err(why) => unavailable.push(why),
         }
     }
-    let asked = Asked::draw(&study.landmarks, settings.seed);
-    let mut trials = holdout::run(&material, &ways, &open, &asked, settings.seed, watch)?;
+    let candidates = &study.candidates;
+    let asked = Asked::draw(&study.landmarks, candidates, settings.seed);
+    let mut trials = holdout::run(
+        &material,
+        &ways,
+        &open,
+        candidates,
+        &asked,
+        settings.seed,
+        watch,
+    )?;
     let bagged = match transport(study, &material, &open, &asked, watch)? {
         Some(Ok(bagged)) => {
-            let placed = holdout::placed_out_of_bag(&material, &bagged, &open, &asked);
+            let placed = holdout::placed_out_of_bag(&material, &bagged, &open, candidates, &asked);
             ways.push(Way::Transport);
             trials.add(placed);
             Some(bagged)
@@ -161,6 +170,7 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             &members,
             bagged.as_ref(),
             &open,
+            candidates,
             &asked,
             settings.seed,
         )

@@ -1,4 +1,8 @@
-//! Where a parcel falls among the other species' parcels: order, rank, nearest.
+//! Where a parcel falls among the other species' parcels: candidates, order, rank, nearest.
+
+mod candidates;
+
+pub use candidates::Candidates;
 
 use ndarray::{Array2, ArrayView1};
 
@@ -71,13 +75,13 @@ pub fn log_ranks(dissimilarities: &Array2<f64>) -> Array2<f64> {
 }
 
 /// The best candidate of every row (a's parcels) and of every column (b's parcels); `None` where
-/// there is no candidate.
+/// there is no candidate. What is infinitely unlike is none (see [`Candidates::close`]).
 ///
 /// # Panics
 /// If the rows of the matrix are not contiguous.
 #[must_use]
 pub fn nearest(dissimilarities: &Array2<f64>) -> Pair<Vec<Option<usize>>> {
-    let (rows, columns) = dissimilarities.dim();
+    let columns = dissimilarities.ncols();
     let mut least = vec![f64::INFINITY; columns];
     let mut first_row = vec![0; columns];
     let by_row = dissimilarities
@@ -94,7 +98,8 @@ pub fn nearest(dissimilarities: &Array2<f64>) -> Pair<Vec<Option<usize>>> {
         a: by_row,
         b: first_row
             .into_iter()
-            .map(|row| (rows > 0).then_some(row as usize))
+            .zip(least)
+            .map(|(row, least)| (least < f64::INFINITY).then_some(row as usize))
             .collect(),
     }
 }
@@ -125,5 +130,13 @@ mod tests {
         let nearest = nearest(&d);
         assert_eq!(nearest.a, [Some(1), Some(0)]);
         assert_eq!(nearest.b, [Some(1), Some(0), Some(0)]);
+    }
+
+    #[test]
+    fn what_is_no_candidate_is_nobody_s_nearest() {
+        let no = f64::INFINITY;
+        let found = nearest(&array![[no, 1.0], [no, no]]);
+        assert_eq!(found.a, [Some(1), None]);
+        assert_eq!(found.b, [None, Some(0)]);
     }
 }

@@ -1,30 +1,42 @@
 //! From files to two species ready for comparison: read, check, transform, embed.
 
+use std::collections::BTreeMap;
 use std::path::Path;
 
 use serde::Serialize;
 
 use crate::affinity::{self, Profiles};
 use crate::bootstrap::{Purpose, Stream};
-use crate::domain::{Connectivity, Landmarks, Pair, Parcels, Side, Transform, WeightKind};
+use crate::domain::{
+    Attributes, Connectivity, Geometry, Hemispheres, Landmarks, Pair, Parcels, RowsAre, Side,
+    Standing, Tracer, Transform, WeightKind,
+};
 use crate::embed::{self, DiffusionTime, Embedding};
 use crate::evidence::{Evidence, Fingerprint, Material, Transport};
-use crate::input::{self, InputError, InputFile, Place, Problem, Source, SpeciesFile};
+use crate::input::{self, InputError, InputFile, ParcelFault, Place, Problem, Source, SpeciesFile};
+use crate::place::Candidates;
 use crate::settings::{Axes, Conduct, EvidenceChoice, Request, Settings};
 use crate::species::Species;
 use crate::transform;
 use crate::transport::Mass;
 use crate::warning::Warning;
 
+mod arrange;
+mod fold;
 mod parts;
 mod raw_facts;
+mod sides;
 mod suspicion;
 
+use arrange::{standing, Arranged};
+use fold::Folding;
 pub use parts::Parts;
 pub use raw_facts::{Filled, RawFacts, SumsToOne};
 
 /// Fewest parcels that make an embedding.
 const FEWEST_PARCELS: usize = 4;
+/// Fewest entries of a profile by which parcels can be compared.
+const FEWEST_COLUMNS: usize = 3;
 /// Most axes that are tried when left-out landmarks choose.
 const MOST_AXES: usize = 12;
 
@@ -33,6 +45,13 @@ const MOST_AXES: usize = 12;
 pub struct Treatment {
     /// What the weights measure.
     pub weights: WeightKind,
+    /// What the parcels are where the matrix holds links from them to other areas, or to some of
+    /// them, only.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub parcels_are: Option<RowsAre>,
+    /// How injected areas were traced.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub tracer: Option<Tracer>,
     /// How they were transformed.
     pub transform: Transform,
     /// How profiles were compared.
@@ -50,11 +69,22 @@ pub struct Inputs {
     pub matrix: Pair<InputFile>,
     /// Files of labels, where matrices have them.
     #[serde(skip_serializing_if = "none")]
-    pub labels: Pair<Option<InputFile>>,
+    pub labels: Pair<Vec<InputFile>>,
+    /// Tables of parcels, where there are any.
+    #[serde(skip_serializing_if = "none")]
+    pub parcels: Pair<Option<InputFile>>,
+    /// Files of distances, where there are any.
+    #[serde(skip_serializing_if = "none")]
+    pub distances: Pair<Option<InputFile>>,
 }
 
-fn none(files: &Pair<Option<InputFile>>) -> bool {
-    files.a.is_none() && files.b.is_none()
+fn none<'f, F>(files: &'f Pair<F>) -> bool
+where
+    &'f F: IntoIterator<Item = &'f InputFile>,
+{
+    [&files.a, &files.b]
+        .into_iter()
+        .all(|files| files.into_iter().next().is_none())
 }
 
 /// A study that has passed every check, embedded.
@@ -74,6 +104,10 @@ pub struct Study {
     pub raw: Pair<RawFacts>,
     /// What was read.
     pub inputs: Inputs,
+    /// Which parcels may be counterparts.
+    pub candidates: Candidates,
+    /// What was asked for, before defaults.
+    pub asked: Request,
     /// Every choice.
     pub settings: Settings,
     /// How the run behaves.
@@ -85,10 +119,14 @@ pub struct Study {
 /// One species' matrix as read, with what its parcels are.
 struct Raw {
     file: InputFile,
-    labels: Option<InputFile>,
+    labels: Vec<InputFile>,
+    table: Option<InputFile>,
+    distances: Option<InputFile>,
     warnings: Vec<Warning>,
     network: Connectivity,
     parcels: Parcels,
+    attributes: Vec<Attributes>,
+    geometry: Geometry,
     facts: RawFacts,
 }
 
@@ -98,11 +136,18 @@ struct Raw {
 /// [`InputError`] for the first fault found.
 pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
     let description = input::read_study_file(study)?;
-    let (settings, conduct) = asked.or(description.request.clone()).settle();
+    let asked = asked.or(description.request.clone());
+    let (mut settings, conduct) = asked.clone().settle();
     let raw = description
         .species
         .as_ref()
-        .try_map_at_once(conduct.threads, |_, described| read_species(described))?;
+        .try_map_at_once(conduct.threads, |_, described| {
+            read_species(described, settings.hemispheres)
+        })?;
+    let rectangular = |raw: &Raw| raw.facts.rectangular.is_some();
+    if asked.embedding.is_none() && (rectangular(&raw.a) || rectangular(&raw.b)) {
+        settings.embedding = embed::Method::OF_RECTANGULAR;
+    }
     let mut warnings = [&raw.a.warnings[..], &raw.b.warnings[..]].concat();
 
     let table = Source::read(&description.landmarks)?;
@@ -113,13 +158,35 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
     let (landmarks, more) = input::read_landmarks(&table, parcels)?;
     warnings.extend(more);
     let most = most_axes(settings.axes, &landmarks, &table)?;
+    let candidates = match settings.hemispheres {
+        Hemispheres::Ignore => Candidates::everywhere(),
+        Hemispheres::Fold => {
+            if Side::BOTH.iter().all(|side| parcels[*side].folded() == 0) {
+                let place = Place::file(&description.file.path);
+                return Err(InputError::new(place, ParcelFault::NothingToFold.into()));
+            }
+            Candidates::everywhere()
+        }
+        Hemispheres::Match => {
+            let attributes = raw.as_ref().map(|raw| raw.attributes.as_slice());
+            sides::matched(parcels, attributes, &landmarks, &mut warnings).map_err(|fault| {
+                let file = match &fault {
+                    ParcelFault::LandmarkAcross { .. } => table.path(),
+                    _ => &description.file.path,
+                };
+                InputError::new(Place::file(file), fault.into())
+            })?
+        }
+    };
 
-    let treatment = Pair::from_fn(|side| treatment(&description.species[side], &raw[side].network));
+    let treatment = Pair::from_fn(|side| treatment(&description.species[side], &raw[side]));
     let inputs = Inputs {
         study: description.file,
         landmarks: table.file,
         matrix: raw.as_ref().map(|raw| raw.file.clone()),
         labels: raw.as_ref().map(|raw| raw.labels.clone()),
+        parcels: raw.as_ref().map(|raw| raw.table.clone()),
+        distances: raw.as_ref().map(|raw| raw.distances.clone()),
     };
     let facts = raw.as_ref().map(|raw| raw.facts.clone());
     let species = raw.try_map_at_once(conduct.threads, |side, raw| {
@@ -184,6 +251,8 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         treatment,
         raw: facts,
         inputs,
+        candidates,
+        asked,
         settings,
         conduct,
         warnings,
@@ -227,86 +296,165 @@ fn check_evidence(
     })
 }
 
-/// Reads and checks one matrix, and finds its parcels.
-fn read_species(described: &SpeciesFile) -> Result<Raw, InputError> {
+/// What is known of a species besides its connections, for the labels of its matrix.
+struct Known {
+    attributes: Vec<Attributes>,
+    geometry: Geometry,
+    table: Option<InputFile>,
+    distances: Option<InputFile>,
+}
+
+fn read_known(
+    described: &SpeciesFile,
+    labels: &[String],
+    warnings: &mut Vec<Warning>,
+) -> Result<Known, InputError> {
+    let table = match &described.parcels {
+        None => None,
+        Some(path) => {
+            let source = Source::read(path)?;
+            let table = input::read_parcels(&source, labels, &described.name)?;
+            warnings.extend(table.warnings);
+            Some((table.file, table.attributes))
+        }
+    };
+    let distances = match &described.distances {
+        None => None,
+        Some(path) => {
+            let own = described.labels.as_deref();
+            let read = input::read_distances(path, own, labels, &described.name)?;
+            warnings.extend(read.warnings);
+            Some((read.file, read.values))
+        }
+    };
+    let (table, attributes) = table.unzip();
+    let (file, distances) = distances.unzip();
+    let attributes: Vec<Attributes> =
+        attributes.unwrap_or_else(|| vec![Attributes::default(); labels.len()]);
+    let coordinates = attributes.iter().map(|a| a.coordinates).collect();
+    Ok(Known {
+        geometry: Geometry::new(coordinates, distances),
+        attributes,
+        table,
+        distances: file,
+    })
+}
+
+/// Reads and checks one matrix and what is said of its parcels, folds it where that is asked for, and
+/// finds the parcels that take part.
+fn read_species(described: &SpeciesFile, hemispheres: Hemispheres) -> Result<Raw, InputError> {
     let matrix = input::read_matrix_of(described)?;
-    let mut network = matrix.network;
     let mut warnings = matrix.warnings;
-    suspicion::look_over(&network, described, &mut warnings);
-    let filled = raw_facts::filled(&network);
-    if described.weights == WeightKind::Correlations {
-        symmetrise(&mut network);
-    }
-    let connected = connected(&network, described.weights);
-    let place = || Place::file(&described.matrix);
-    if !connected.contains(&true) {
-        return Err(InputError::new(place(), Problem::AllZero));
-    }
-    let parcels = Parcels::new(&described.name, network.row_labels(), &connected);
-    if parcels.len() < FEWEST_PARCELS {
-        return Err(InputError::new(
-            place(),
-            Problem::TooFewParcels {
-                found: parcels.len(),
-                needed: FEWEST_PARCELS,
-            },
-        ));
-    }
-    if !parcels.isolated().is_empty() {
-        warnings.push(Warning::SetAside {
+    let fail = |problem| Err(InputError::new(Place::file(&described.matrix), problem));
+    suspicion::look_over(&matrix.network, described, &mut warnings);
+    let filled = raw_facts::filled(&matrix.network);
+    let arranged = Arranged::of(matrix.network, matrix.rows_are, described.weights);
+    if arranged.missing > 0 {
+        warnings.push(Warning::MissingEntries {
             species: described.name.clone(),
-            parcels: parcels.isolated().to_vec(),
+            entries: arranged.missing,
+            mirrored: arranged.mirrored,
+            columns: arranged.unobserved_columns,
         });
     }
-    let order: Vec<usize> = {
-        let mut order: Vec<usize> = (0..connected.len()).filter(|&i| connected[i]).collect();
-        let labels = network.row_labels();
-        order.sort_by(|&i, &j| labels[i].as_bytes().cmp(labels[j].as_bytes()));
-        order
-    };
-    let network = network.select(&order, &order);
+    let mut network = arranged.network;
+    let mut labels = network.row_labels().to_vec();
+    let mut known = read_known(described, &labels, &mut warnings)?;
+    let mut copies = BTreeMap::new();
+    let folding = (hemispheres == Hemispheres::Fold)
+        .then(|| Folding::of(&labels, &known.attributes))
+        .flatten();
+    if let Some(folding) = folding {
+        network = folding.network(&network, described.weights);
+        if !network.weights().iter().all(|w| w.is_finite()) {
+            return fail(ParcelFault::FoldOverflows.into());
+        }
+        let attributes = folding.attributes(&known.attributes);
+        known.geometry = folding.geometry(&known.geometry, &attributes);
+        known.attributes = attributes;
+        labels = folding.labels();
+        copies = folding.copies();
+        let alone = folding.without_copy();
+        if !alone.is_empty() {
+            warnings.push(Warning::NoCopy {
+                species: described.name.clone(),
+                parcels: alone,
+            });
+        }
+    }
+    suspicion::components(&network, described, &mut warnings);
+    let standing = standing(&network, described.weights, arranged.missing > 0);
+    if standing.iter().all(|s| *s == Standing::Uncovered) {
+        return fail(Problem::AllMissing);
+    }
+    if !standing.contains(&Standing::Placed) {
+        return fail(Problem::AllZero);
+    }
+    let parcels = Parcels::new(&described.name, &labels, &standing).made_of(copies);
+    if parcels.len() < FEWEST_PARCELS {
+        return fail(Problem::TooFewParcels {
+            found: parcels.len(),
+            needed: FEWEST_PARCELS,
+        });
+    }
+    let (rows, columns) = in_order(&network, &standing);
+    if columns.len() < FEWEST_COLUMNS {
+        return fail(Problem::TooFewColumns {
+            found: columns.len(),
+            needed: FEWEST_COLUMNS,
+        });
+    }
+    for (parcels, observed) in [(parcels.isolated(), true), (parcels.uncovered(), false)] {
+        if !parcels.is_empty() {
+            warnings.push(Warning::SetAside {
+                species: described.name.clone(),
+                parcels: parcels.to_vec(),
+                observed,
+            });
+        }
+    }
+    let selected = network.select(&rows, &columns);
+    // A large network is dear to keep twice.
+    drop(network);
     Ok(Raw {
         file: matrix.file,
         labels: matrix.labels,
+        table: known.table,
+        distances: known.distances,
+        attributes: rows.iter().map(|&i| known.attributes[i].clone()).collect(),
+        geometry: known.geometry.select(&rows),
         warnings,
-        facts: RawFacts::of(&network, described.weights, filled),
-        network,
+        facts: RawFacts::of(&selected, arranged.rows_are, described.weights, filled),
+        network: selected,
         parcels,
     })
 }
 
-/// Which parcels have a connection in either direction.
-fn connected(network: &Connectivity, weights: WeightKind) -> Vec<bool> {
-    let mut connected = vec![false; network.row_labels().len()];
-    for ((i, j), &w) in network.weights().indexed_iter() {
-        // Every finite logarithm stands for a connection.
-        if i != j && (w != 0.0 || weights == WeightKind::Log10) {
-            connected[i] = true;
-            connected[j] = true;
-        }
-    }
-    connected
+/// The rows that take part, in bytewise order of their labels, and the columns likewise, without those
+/// of parcels that do not take part.
+fn in_order(network: &Connectivity, standing: &[Standing]) -> (Vec<usize>, Vec<usize>) {
+    let in_order = |labels: &[String], kept: &dyn Fn(usize) -> bool| -> Vec<usize> {
+        let mut order: Vec<usize> = (0..labels.len()).filter(|&at| kept(at)).collect();
+        order.sort_by(|&i, &j| labels[i].as_bytes().cmp(labels[j].as_bytes()));
+        order
+    };
+    let takes_part = |row: usize| standing[row] == Standing::Placed;
+    let rows = in_order(network.row_labels(), &takes_part);
+    let columns = in_order(network.column_labels(), &|column| {
+        network.row_of_column(column).is_none_or(takes_part)
+    });
+    (rows, columns)
 }
 
-/// The mean of both halves: a correlation has no direction.
-fn symmetrise(network: &mut Connectivity) {
-    let mut weights = network.weights_mut();
-    for i in 0..weights.nrows() {
-        for j in 0..i {
-            let mean = (weights[(i, j)] + weights[(j, i)]) / 2.0;
-            weights[(i, j)] = mean;
-            weights[(j, i)] = mean;
-        }
-    }
-}
-
-fn treatment(described: &SpeciesFile, network: &Connectivity) -> Treatment {
+fn treatment(described: &SpeciesFile, raw: &Raw) -> Treatment {
     let default = affinity::Params::default_for(described.weights);
     Treatment {
         weights: described.weights,
+        parcels_are: raw.facts.rectangular,
+        tracer: described.tracer,
         transform: described
             .transform
-            .unwrap_or_else(|| transform::default_for(network, described.weights)),
+            .unwrap_or_else(|| transform::default_for(&raw.network, described.weights)),
         affinity: affinity::Params {
             likeness: described.likeness.unwrap_or(default.likeness),
             strongest: described.strongest.unwrap_or(default.strongest),
@@ -365,11 +513,14 @@ fn embed_species(
             })?
         }
     };
+    let areas = raw.attributes.iter().map(|a| a.extent?.area()).collect();
     Ok(Species {
+        areas,
         parcels: raw.parcels,
+        attributes: raw.attributes,
+        geometry: raw.geometry,
         network,
         profiles: treatment.affinity,
         embedding,
-        areas: None,
     })
 }

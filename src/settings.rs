@@ -7,7 +7,7 @@ pub use request::{BadSetting, Request};
 use serde::{Serialize, Serializer};
 
 use crate::bootstrap::Resampling;
-use crate::domain::{choices, Seed};
+use crate::domain::{choices, Hemispheres, Seed};
 use crate::embed;
 use crate::transport::Mass;
 
@@ -104,6 +104,8 @@ pub struct Settings {
     pub ridge: f64,
     /// How landmark blocks are drawn in a replicate.
     pub resampling: Resampling,
+    /// What hemispheres mean.
+    pub hemispheres: Hemispheres,
     /// Counterparts listed for each parcel.
     pub top: Top,
 }

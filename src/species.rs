@@ -1,7 +1,7 @@
 //! One species ready for comparison.
 
 use crate::affinity;
-use crate::domain::{Connectivity, Parcels};
+use crate::domain::{Attributes, Connectivity, Geometry, Parcels};
 use crate::embed::Embedding;
 
 /// A species' parcels, the strengths of their connections, and their coordinates; all in the order
@@ -10,6 +10,10 @@ use crate::embed::Embedding;
 pub struct Species {
     /// The parcels that take part.
     pub parcels: Parcels,
+    /// What is known of each besides its connections.
+    pub attributes: Vec<Attributes>,
+    /// Where they lie.
+    pub geometry: Geometry,
     /// Their connectivity, transformed.
     pub network: Connectivity,
     /// How their affinities are made from it.

@@ -4,6 +4,8 @@ use std::fmt;
 
 use serde::{Serialize, Serializer};
 
+use crate::domain::{RowsAre, Tracer};
+
 /// Parcels named in a warning before the rest is only counted.
 const NAMED: usize = 6;
 
@@ -61,12 +63,56 @@ pub enum Warning {
         /// Parcels outside the largest.
         outside: Vec<String>,
     },
-    /// Parcels without any connection.
+    /// Parcels that cannot be placed.
     SetAside {
         /// The species.
         species: String,
         /// Their labels.
         parcels: Vec<String>,
+        /// Whether they were observed, so that they have no connection; else too little of them was.
+        observed: bool,
+    },
+    /// Landmark parcels that cannot be placed, so that nothing can be anchored to them.
+    LandmarksReduced {
+        /// The parcels, in words.
+        parcels: Vec<String>,
+        /// Landmarks that have no parcel left on one side.
+        landmarks: Vec<String>,
+    },
+    /// A matrix from parcels to other areas, or to some of them.
+    Rectangular {
+        /// The species.
+        species: String,
+        /// Parcels.
+        parcels: usize,
+        /// What they are.
+        parcels_are: RowsAre,
+        /// Entries of each.
+        entries: usize,
+        /// Of these, how many are no parcels.
+        elsewhere: usize,
+        /// Whether the study file says so.
+        stated: bool,
+    },
+    /// Injected areas on the side on which the tracer does not put them.
+    TracerAgainstShape {
+        /// The species.
+        species: String,
+        /// The tracer.
+        tracer: Tracer,
+        /// What injected areas are by it.
+        injected: RowsAre,
+    },
+    /// Entries that were never observed.
+    MissingEntries {
+        /// The species.
+        species: String,
+        /// How many, off the diagonal.
+        entries: usize,
+        /// Of these, how many were taken from the other side of the diagonal.
+        mirrored: usize,
+        /// Lines without any observed entry.
+        columns: usize,
     },
     /// Two landmarks that are the two sides of one area but may be left out one at a time.
     SidesNotBlocked {
@@ -84,6 +130,74 @@ pub enum Warning {
     ColumnIgnored {
         /// Its name.
         column: String,
+    },
+    /// A column of a table of parcels that means nothing here.
+    AttributeIgnored {
+        /// The species.
+        species: String,
+        /// Its name.
+        column: String,
+        /// A known column it may be a slip for.
+        near: Option<String>,
+    },
+    /// Rows of a table of parcels that the matrix knows nothing of.
+    ParcelsUnknown {
+        /// The species.
+        species: String,
+        /// Their labels.
+        parcels: Vec<String>,
+    },
+    /// Parcels of the matrix without a row in the table of parcels.
+    ParcelsUndescribed {
+        /// The species.
+        species: String,
+        /// Their labels.
+        parcels: Vec<String>,
+    },
+    /// Distances that depend on the direction.
+    DistancesAsymmetric {
+        /// The species.
+        species: String,
+        /// Largest difference.
+        largest: f64,
+    },
+    /// Distances in one half of the matrix only.
+    DistancesOneHalf {
+        /// The species.
+        species: String,
+    },
+    /// Different parcels at the distance 0.
+    DistancesZero {
+        /// The species.
+        species: String,
+        /// Pairs of them.
+        pairs: usize,
+    },
+    /// Sides are matched, but these parcels have none.
+    SideUnknown {
+        /// The species.
+        species: String,
+        /// The parcels.
+        parcels: Vec<String>,
+    },
+    /// Open parcels without any candidate on their side.
+    NoCandidate {
+        /// The species.
+        species: String,
+        /// The parcels.
+        parcels: Vec<String>,
+    },
+    /// Brains are folded, but these parcels of one side have no copy on the other.
+    NoCopy {
+        /// The species.
+        species: String,
+        /// The parcels.
+        parcels: Vec<String>,
+    },
+    /// Landmarks that became the same pair of parcels when brains were folded.
+    LandmarksMerged {
+        /// The landmark that stays and the one that went into it.
+        pairs: Vec<(String, String)>,
     },
     /// A landmark that the others contradict.
     Contradicted {
@@ -180,11 +294,89 @@ impl fmt::Display for Warning {
                 "{species}: the network falls into {components} parts; outside the largest: {}",
                 listed(outside)
             ),
-            Warning::SetAside { species, parcels } => write!(
+            Warning::SetAside {
+                species,
+                parcels,
+                observed,
+            } => write!(
                 f,
-                "{species}: set aside, no connection at all: {}",
+                "{species}: set aside, {}: {}",
+                if *observed {
+                    "no connection at all"
+                } else {
+                    "too little observed to compare them with others"
+                },
                 listed(parcels)
             ),
+            Warning::LandmarksReduced { parcels, landmarks } => {
+                write!(
+                    f,
+                    "nothing can be anchored to landmark parcels that were set aside: {}",
+                    listed(parcels)
+                )?;
+                if !landmarks.is_empty() {
+                    write!(f, "; landmarks not used: {}", listed(landmarks))?;
+                }
+                Ok(())
+            }
+            Warning::Rectangular {
+                species,
+                parcels,
+                parcels_are,
+                entries,
+                elsewhere,
+                stated,
+            } => {
+                let others = match elsewhere {
+                    0 => "all of them parcels too".to_owned(),
+                    n => format!("{n} of them no parcels"),
+                };
+                write!(
+                    f,
+                    "{species}: read as rectangular, {parcels} parcels as {parcels_are} by {entries} {} ({others}); links that the table does not hold are unknown, not absent",
+                    parcels_are.opposite()
+                )?;
+                if !stated {
+                    write!(
+                        f,
+                        ". If it should be square, a row or a column got lost; if not, add rows = \"sources\" or rows = \"targets\" to the study file"
+                    )?;
+                }
+                Ok(())
+            }
+            Warning::TracerAgainstShape {
+                species,
+                tracer,
+                injected,
+            } => write!(
+                f,
+                "{species}: by a tracer that is {tracer} the injected areas are {injected}, but here {injected} are the longer side; check rows and tracer"
+            ),
+            Warning::MissingEntries {
+                species,
+                entries,
+                mirrored,
+                columns,
+            } => {
+                write!(
+                    f,
+                    "{species}: {} missing, which is not zero; parcels are compared where both were observed",
+                    counted(*entries, "entry", "entries")
+                )?;
+                if *mirrored > 0 {
+                    write!(
+                        f,
+                        "; {mirrored} were taken from the other side of the diagonal, since links have no direction"
+                    )?;
+                }
+                if *columns > 0 {
+                    write!(
+                        f,
+                        "; {columns} lines without any entry are taken for areas that were not injected"
+                    )?;
+                }
+                Ok(())
+            }
             Warning::SidesNotBlocked { first, second } => write!(
                 f,
                 "landmarks {first} and {second} look like the two sides of one area; give both the same block, or left-out figures will flatter"
@@ -197,6 +389,60 @@ impl fmt::Display for Warning {
             Warning::ColumnIgnored { column } => {
                 write!(f, "landmark table: column {column:?} is not used")
             }
+            Warning::AttributeIgnored {
+                species,
+                column,
+                near,
+            } => {
+                write!(f, "{species}, table of parcels: column {column:?} is not used")?;
+                match near {
+                    Some(near) => write!(f, "; did you mean {near:?}?"),
+                    None => Ok(()),
+                }
+            }
+            Warning::ParcelsUnknown { species, parcels } => write!(
+                f,
+                "{species}, table of parcels: not in the matrix and not used: {}",
+                listed(parcels)
+            ),
+            Warning::ParcelsUndescribed { species, parcels } => write!(
+                f,
+                "{species}, table of parcels: no row for {}; their attributes stay empty",
+                listed(parcels)
+            ),
+            Warning::DistancesAsymmetric { species, largest } => write!(
+                f,
+                "{species}: the distances are not symmetric (largest difference {largest:.3}); the mean of both halves is used"
+            ),
+            Warning::DistancesOneHalf { species } => write!(
+                f,
+                "{species}: only one half of the matrix of distances is filled; it is used for both directions"
+            ),
+            Warning::DistancesZero { species, pairs } => write!(
+                f,
+                "{species}: {} of different parcels at the distance 0; in a list of connections a pair that is absent has it, so check that all are there",
+                if *pairs == 1 { "1 pair".to_owned() } else { format!("{pairs} pairs") }
+            ),
+            Warning::SideUnknown { species, parcels } => write!(
+                f,
+                "{species}: no hemisphere is known of {}; their counterparts are sought on both sides",
+                listed(parcels)
+            ),
+            Warning::NoCandidate { species, parcels } => write!(
+                f,
+                "{species}: no open parcel of the other species lies on the side of {}; they get no counterpart. Where one map has one hemisphere only, hemispheres = \"fold\" may be what you want",
+                listed(parcels)
+            ),
+            Warning::NoCopy { species, parcels } => write!(
+                f,
+                "{species}: no copy on the other side was found for {}; they are kept as they are",
+                listed(parcels)
+            ),
+            Warning::LandmarksMerged { pairs } => write!(
+                f,
+                "landmarks that are one when the brains are folded; the first of each counts: {}",
+                listed(&pairs.iter().map(|(first, second)| format!("{first} and {second}")).collect::<Vec<_>>())
+            ),
             Warning::Contradicted {
                 landmark,
                 from_a,

@@ -480,27 +480,17 @@ fn entries_that_are_no_weight() {
             ],
         ),
         case(
-            "NaN",
-            |s| s.set("a.csv", 3, 4, "NaN"),
-            &[
-                "a.csv, line 3, column 4 (auditory to motor): ",
-                "found NaN",
-                "fill in the value, or remove the parcel's row and column",
-            ],
-        ),
-        case(
-            "NA",
-            |s| s.set("a.csv", 3, 4, "NA"),
-            &["a.csv, line 3, column 4", "found NA", "fill in the value"],
-        ),
-        case(
-            "empty cell",
-            |s| s.set("a.csv", 3, 4, ""),
-            &[
-                "a.csv, line 3, column 4",
-                "an empty cell",
-                "fill in the value",
-            ],
+            "nothing but missing entries",
+            |s| {
+                s.edit_table("a.csv", |rows| {
+                    for row in rows.iter_mut().skip(1) {
+                        for cell in row.iter_mut().skip(1) {
+                            *cell = "NA".to_owned();
+                        }
+                    }
+                });
+            },
+            &["a.csv: ", "of no parcel were enough entries observed"],
         ),
         case(
             "negative count",
@@ -788,13 +778,25 @@ fn landmark_tables() {
         )
         .options(&["--axes", "1"]),
         case(
-            "landmark without connections",
-            |s| isolate(s, "b.csv", 3),
-            &[
-                "landmarks.csv, line 4, column 3 (movement): ",
-                "\"Mot\" of species b has no connection",
-                "remove it from the landmark",
-            ],
+            "landmarks without connections, and too few others",
+            |s| {
+                s.edit_table("landmarks.csv", |rows| rows.truncate(4));
+                isolate(s, "b.csv", 3);
+            },
+            &["landmarks.csv: ", "found 2 landmarks", "add rows"],
+        ),
+        case(
+            "a landmark parcel that was not observed, and too few others",
+            |s| {
+                s.edit_table("landmarks.csv", |rows| rows.truncate(4));
+                s.edit_table("a.csv", |rows| {
+                    for at in 1..rows.len() {
+                        rows[at][2] = String::new();
+                        rows[2][at] = "NaN".to_owned();
+                    }
+                });
+            },
+            &["landmarks.csv: ", "found 2 landmarks"],
         ),
     ]);
 }

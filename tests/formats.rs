@@ -22,8 +22,13 @@ fn species(matrix: &str) -> SpeciesFile {
         name: "Vole".to_owned(),
         matrix: data(matrix),
         labels: None,
+        column_labels: None,
+        rows: None,
+        tracer: None,
         variable: None,
         label_variable: None,
+        parcels: None,
+        distances: None,
         weights: WeightKind::Counts,
         transform: None,
         likeness: None,
@@ -36,8 +41,8 @@ fn read(species: &SpeciesFile) -> Connectivity {
     assert_eq!(matrix.warnings, [], "{}", species.matrix.display());
     assert_eq!(matrix.file.path, species.matrix);
     assert_eq!(
-        matrix.labels.map(|l| l.path),
-        species.labels,
+        matrix.labels.first().map(|l| &l.path),
+        species.labels.as_ref(),
         "{}",
         species.matrix.display()
     );
@@ -336,36 +341,47 @@ fn broken_numpy_files() {
     ]);
 }
 
+/// A 5 x 5 array of f32 in which one entry differs.
+fn one_entry(value: f32) -> Vec<u8> {
+    let mut bytes: Vec<u8> = Vec::new();
+    for i in 0..25 {
+        bytes.extend(if i == 14 { value } else { 1.0 }.to_le_bytes());
+    }
+    npy(
+        "{'descr': '<f4', 'fortran_order': True, 'shape': (5, 5), }",
+        &bytes,
+    )
+}
+
 #[test]
-fn missing_and_infinite_entries_say_where_they_are() {
-    let entry = |value: f32| {
-        let mut bytes: Vec<u8> = Vec::new();
-        for i in 0..25 {
-            bytes.extend(if i == 14 { value } else { 1.0 }.to_le_bytes());
-        }
-        npy(
-            "{'descr': '<f4', 'fortran_order': True, 'shape': (5, 5), }",
-            &bytes,
-        )
+fn infinite_entries_say_where_they_are() {
+    refuse(vec![case(
+        "infinite",
+        one_entry(f32::INFINITY),
+        &[
+            "row 5, column 3 (Tê, <lateral> to M1): ",
+            "finite number",
+            "\"inf\"",
+        ],
+    )
+    .labelled()]);
+}
+
+#[test]
+fn missing_entries_are_told_from_zeros() {
+    let folder = tempfile::tempdir().unwrap();
+    let matrix = folder.path().join("x");
+    std::fs::write(&matrix, one_entry(f32::NAN)).unwrap();
+    let array = SpeciesFile {
+        matrix: matrix.clone(),
+        ..with_labels("labels.txt")
     };
-    refuse(vec![
-        case(
-            "NaN",
-            entry(f32::NAN),
-            &[
-                "row 5, column 3 (Tê, <lateral> to M1): ",
-                "found NaN",
-                "fill in",
-            ],
-        )
-        .labelled(),
-        case(
-            "infinite",
-            entry(f32::INFINITY),
-            &["row 5, column 3", "finite number", "\"inf\""],
-        )
-        .labelled(),
-    ]);
+    let network = read(&array);
+    assert_eq!(network.missing(), 1);
+    assert!(network.is_missing(4, 2));
+    std::fs::write(&matrix, "source,target,weight\nV1,A1,n/a\nA1,V1,2\n").unwrap();
+    let network = read(&array);
+    assert!(network.is_missing(0, 1) && network.missing() == 1);
 }
 
 #[test]
@@ -596,11 +612,6 @@ fn broken_lists_of_connections() {
             &["line 2, column 3 (V1 to A1): ", "found \"many\""],
         ),
         case(
-            "missing",
-            list("V1,A1,n/a\n"),
-            &["line 2, column 3 (V1 to A1): ", "found n/a"],
-        ),
-        case(
             "negative",
             list("V1,A1,3\nA1,M1,-2\n"),
             &["line 3, column 3 (A1 to M1): ", "found -2"],
@@ -639,7 +650,7 @@ fn broken_texts() {
         case(
             "numbers, not square",
             b"0,1,2.5\n0,0,3\n".to_vec(),
-            &["2 rows and 3 columns"],
+            &["labels.txt: ", "5 labels for the 2 rows"],
         )
         .labelled(),
         case(

@@ -301,7 +301,7 @@ fn isolated_parcels_and_half_a_matrix_are_named() {
     assert_eq!(strings(&said["species"]["a"]["set-aside"]), ["cingulate"]);
     assert_eq!(said["species"]["a"]["filled"], "above");
     assert!(mentions(&said["suggestions"], "fill in the half below"));
-    assert!(text(&study.path("study.toml")).contains("set aside: cingulate"));
+    assert!(text(&study.path("study.toml")).contains("set aside, no links: cingulate"));
 }
 
 #[test]
@@ -365,7 +365,7 @@ fn refusals_are_those_of_locate() {
         (|s| s.remove("study.toml"), &[]),
         (|s| s.remove("b.csv"), &[]),
         (|s| s.set("a.csv", 3, 2, "-4"), &[]),
-        (|s| s.set("b.csv", 3, 2, "NA"), &[]),
+        (|s| s.set("b.csv", 3, 2, "inf"), &[]),
         (|s| s.set("landmarks.csv", 2, 2, "calcarin"), &[]),
         (|s| s.setting("replicates = 1"), &[]),
         (|_| (), &["--axes", "6"]),

@@ -747,6 +747,7 @@ fn the_record_says_what_was_done() {
             "transport-replicates": 120,
             "ridge": 0.25,
             "resampling": "bayesian",
+            "hemispheres": "ignore",
             "top": "all",
         })
     );

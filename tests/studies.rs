@@ -328,6 +328,9 @@ fn exchanging_the_species_changes_nothing() {
     let demo = path("species-demo");
     std::fs::copy(demo.join("a.csv"), folder.path().join("b.csv")).unwrap();
     std::fs::copy(demo.join("b.csv"), folder.path().join("a.csv")).unwrap();
+    for table in ["a_parcels.csv", "b_parcels.csv"] {
+        std::fs::copy(demo.join(table), folder.path().join(table)).unwrap();
+    }
     let exchanged = |text: String| {
         text.replace("species.a]", "species.x]")
             .replace("species.b]", "species.a]")

@@ -139,6 +139,11 @@ struct SettingOptions {
     #[arg(long, value_name = "bayesian|ordinary", value_parser = checked("resampling"))]
     resampling: Option<String>,
 
+    /// What hemispheres mean: match allows only counterparts on the same side, fold makes one parcel
+    /// of the left and the right copy of an area [default: ignore]
+    #[arg(long, value_name = "ignore|match|fold", value_parser = checked("hemispheres"))]
+    hemispheres: Option<String>,
+
     /// Counterparts listed for each parcel [default: 10]
     #[arg(long, value_name = "N|all", value_parser = checked("top"))]
     top: Option<String>,
@@ -194,6 +199,7 @@ impl SettingOptions {
             ("transport-replicates", &given.transport_replicates),
             ("ridge", &given.ridge),
             ("resampling", &given.resampling),
+            ("hemispheres", &given.hemispheres),
             ("top", &given.top),
             ("quiet", &quiet),
             ("replace", &replace),

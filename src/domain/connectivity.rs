@@ -1,5 +1,7 @@
 //! One species' connectivity: who connects to whom, how strongly, and what was not observed.
 
+use std::collections::HashMap;
+
 use ndarray::Array2;
 use thiserror::Error;
 
@@ -26,17 +28,20 @@ pub enum ShapeError {
     },
 }
 
-/// Connection weights between sources (rows) and targets (columns), each with labels of its own.
+/// Connection weights between rows and columns, each with labels of its own: sources and targets as
+/// read, parcels and the entries of their profiles once arranged.
 ///
 /// Row labels and column labels are kept apart because tracer data are rectangular, and a mask
-/// tells entries that were never observed from absent connections.
+/// tells entries that were never observed from absent connections. A row and a column of one label
+/// are one parcel.
 #[derive(Debug, Clone, PartialEq)]
 pub struct Connectivity {
     row_labels: Vec<String>,
     column_labels: Vec<String>,
     weights: Array2<f64>,
     missing: Option<Array2<bool>>,
-    square: bool,
+    /// For each column the row with the same label: the same parcel.
+    row_of_column: Vec<Option<usize>>,
 }
 
 impl Connectivity {
@@ -72,27 +77,27 @@ impl Connectivity {
             }
         }
         Ok(Connectivity {
-            square: row_labels == column_labels,
+            row_of_column: same_label(&row_labels, &column_labels),
             row_labels,
             column_labels,
             weights,
-            missing,
+            missing: missing.filter(|mask| mask.iter().any(|missing| *missing)),
         })
     }
 
-    /// Labels of the sources.
+    /// Labels of the rows.
     #[must_use]
     pub fn row_labels(&self) -> &[String] {
         &self.row_labels
     }
 
-    /// Labels of the targets.
+    /// Labels of the columns.
     #[must_use]
     pub fn column_labels(&self) -> &[String] {
         &self.column_labels
     }
 
-    /// Weights `(sources, targets)`; entries that are missing hold no meaning.
+    /// Weights `(rows, columns)`; entries that are missing hold no meaning.
     #[must_use]
     pub fn weights(&self) -> &Array2<f64> {
         &self.weights
@@ -118,17 +123,66 @@ impl Connectivity {
     /// Whether rows and columns are the same parcels in the same order.
     #[must_use]
     pub fn is_square(&self) -> bool {
-        self.square
+        self.row_labels.len() == self.column_labels.len()
+            && (0..)
+                .zip(&self.row_of_column)
+                .all(|(at, row)| *row == Some(at))
+    }
+
+    /// The row that is the same parcel as a column, where there is one.
+    #[must_use]
+    pub fn row_of_column(&self, column: usize) -> Option<usize> {
+        self.row_of_column[column]
     }
 
     /// Whether the entry is the diagonal, which is not data: a parcel's link with itself.
     #[must_use]
     pub fn is_self(&self, row: usize, column: usize) -> bool {
-        if self.square {
-            row == column
-        } else {
-            self.row_labels[row] == self.column_labels[column]
+        self.row_of_column[column] == Some(row)
+    }
+
+    /// Whether the entry is data: observed, and not a parcel's link with itself.
+    #[must_use]
+    pub fn is_data(&self, row: usize, column: usize) -> bool {
+        !self.is_self(row, column) && !self.is_missing(row, column)
+    }
+
+    /// Number of entries that were never observed.
+    #[must_use]
+    pub fn missing(&self) -> usize {
+        self.missing
+            .as_ref()
+            .map_or(0, |mask| mask.iter().filter(|missing| **missing).count())
+    }
+
+    /// The same data with rows and columns exchanged.
+    #[must_use]
+    pub fn transposed(self) -> Connectivity {
+        let weights = self.weights.reversed_axes();
+        let missing = self.missing.map(|mask| mask.reversed_axes());
+        Connectivity {
+            row_of_column: same_label(&self.column_labels, &self.row_labels),
+            row_labels: self.column_labels,
+            column_labels: self.row_labels,
+            weights: weights.as_standard_layout().into_owned(),
+            missing: missing.map(|mask| mask.as_standard_layout().into_owned()),
         }
+    }
+
+    /// Fills in a missing entry.
+    pub(crate) fn observe(&mut self, row: usize, column: usize, weight: f64) {
+        self.weights[(row, column)] = weight;
+        if let Some(mask) = &mut self.missing {
+            mask[(row, column)] = false;
+        }
+    }
+
+    /// Forgets the mask once nothing is missing any more.
+    pub(crate) fn settle_mask(&mut self) {
+        self.missing = self
+            .missing
+            .take()
+            .filter(|mask| mask.iter().any(|missing| *missing));
     }
 
     /// Sets every entry that is no data to zero: missing ones and the diagonal.
@@ -136,7 +190,7 @@ impl Connectivity {
         let (rows, columns) = self.weights.dim();
         for i in 0..rows {
             for j in 0..columns {
-                if self.is_self(i, j) || self.is_missing(i, j) {
+                if !self.is_data(i, j) {
                     self.weights[(i, j)] = 0.0;
                 }
             }
@@ -153,17 +207,30 @@ impl Connectivity {
             pick(&self.column_labels, columns),
         );
         Connectivity {
-            square: row_labels == column_labels,
+            row_of_column: same_label(&row_labels, &column_labels),
             row_labels,
             column_labels,
             weights: Array2::from_shape_fn((rows.len(), columns.len()), |(i, j)| {
                 self.weights[(rows[i], columns[j])]
             }),
-            missing: self.missing.as_ref().map(|mask| {
-                Array2::from_shape_fn((rows.len(), columns.len()), |(i, j)| {
-                    mask[(rows[i], columns[j])]
+            missing: self
+                .missing
+                .as_ref()
+                .map(|mask| {
+                    Array2::from_shape_fn((rows.len(), columns.len()), |(i, j)| {
+                        mask[(rows[i], columns[j])]
+                    })
                 })
-            }),
+                .filter(|mask| mask.iter().any(|missing| *missing)),
         }
     }
+}
+
+/// For each column the row with the same label.
+fn same_label(rows: &[String], columns: &[String]) -> Vec<Option<usize>> {
+    let at: HashMap<&str, usize> = rows.iter().map(String::as_str).zip(0..).collect();
+    columns
+        .iter()
+        .map(|label| at.get(label.as_str()).copied())
+        .collect()
 }

@@ -27,6 +27,13 @@ pub fn account(draft: &Draft, file: &Path) -> String {
                     "             weights {}: {}",
                     matrix.guess.kind, matrix.guess.because
                 ));
+                if let Some(table) = &species.parcels {
+                    lines.push(format!(
+                        "             parcels {}: describes {} of them",
+                        plain(&table.file),
+                        table.known.0
+                    ));
+                }
                 if let Some(fault) = &matrix.fault {
                     to_do.push(format!("mend {fault}"));
                 }

@@ -1,13 +1,13 @@
-//! Which file of a folder is which: two matrices and a landmark table.
+//! Which file of a folder is which: two matrices, a landmark table, tables of parcels.
 
 use std::collections::HashSet;
 use std::path::Path;
 
 use super::guess::guess;
 use super::names::names;
-use super::{Draft, DraftError, DraftSpecies, FoundLandmarks, FoundMatrix};
+use super::{Draft, DraftError, DraftSpecies, FoundLandmarks, FoundMatrix, FoundParcels};
 use crate::domain::{Pair, Side};
-use crate::input::{recognise, LandmarkLooks, Looks, MatrixLooks, Source};
+use crate::input::{recognise, LandmarkLooks, Looks, MatrixLooks, ParcelLooks, Source};
 use crate::transform;
 
 /// Endings of tables.
@@ -17,6 +17,7 @@ const ENDINGS: [&str; 4] = ["csv", "tsv", "tab", "txt"];
 pub fn assign(folder: &Path) -> Result<Draft, DraftError> {
     let mut matrices = Vec::new();
     let mut tables = Vec::new();
+    let mut described = Vec::new();
     let mut unused = Vec::new();
     for name in files(folder)? {
         let looks = match Source::read(&folder.join(&name)) {
@@ -26,6 +27,7 @@ pub fn assign(folder: &Path) -> Result<Draft, DraftError> {
         match looks {
             Looks::Matrix(looks) => matrices.push(found(name, *looks)),
             Looks::Landmarks(looks) => tables.push((name, looks)),
+            Looks::Parcels(looks) => described.push((name, looks)),
             Looks::Neither(why) => unused.push((name, why)),
         }
     }
@@ -45,6 +47,13 @@ pub fn assign(folder: &Path) -> Result<Draft, DraftError> {
     for matrix in matrices.into_iter().flatten() {
         unused.push((matrix.file, "two other matrices were taken".to_owned()));
     }
+    let parcels = parcel_tables(&mut described, &chosen);
+    for (name, _) in described {
+        unused.push((
+            name,
+            "it describes parcels, but another table describes more of a matrix".to_owned(),
+        ));
+    }
     unused.sort();
     let names = names(&chosen.as_ref().map(|m| m.as_ref().map(|m| m.file.clone())));
     let landmarks = landmarks.map(|(file, looks)| FoundLandmarks {
@@ -62,10 +71,12 @@ pub fn assign(folder: &Path) -> Result<Draft, DraftError> {
             a: DraftSpecies {
                 name: a,
                 matrix: chosen.a,
+                parcels: parcels.a,
             },
             b: DraftSpecies {
                 name: b,
                 matrix: chosen.b,
+                parcels: parcels.b,
             },
         },
         landmarks,
@@ -121,6 +132,34 @@ fn likeliest_table(tables: &mut Vec<(String, LandmarkLooks)>) -> Option<(String,
         (looks.rows, named, std::cmp::Reverse(at))
     })?;
     Some(tables.remove(best))
+}
+
+/// Takes out, for each matrix, the table that describes most of its parcels, at least half of its own
+/// rows; of equals the first by name.
+fn parcel_tables(
+    tables: &mut Vec<(String, ParcelLooks)>,
+    matrices: &Pair<Option<FoundMatrix>>,
+) -> Pair<Option<FoundParcels>> {
+    let chosen = matrices.as_ref().map(|matrix| {
+        let matrix = matrix.as_ref()?;
+        tables
+            .iter()
+            .map(|(file, looks)| FoundParcels {
+                file: file.clone(),
+                known: (hits(&looks.labels, matrix), looks.labels.len()),
+            })
+            .filter(|table| 2 * table.known.0 >= table.known.1.max(1))
+            .min_by_key(|table| std::cmp::Reverse(table.known.0))
+    });
+    tables.retain(|(file, _)| {
+        let takes = |side| {
+            chosen[side]
+                .as_ref()
+                .is_some_and(|t: &FoundParcels| t.file == *file)
+        };
+        !Side::BOTH.into_iter().any(takes)
+    });
+    chosen
 }
 
 /// The matrices that the landmarks name; as far as these leave it open those without a fault, then

@@ -3,7 +3,7 @@
 use super::{Draft, DraftSpecies, FoundLandmarks};
 use crate::affinity::{Likeness, Params};
 use crate::bootstrap::Resampling;
-use crate::domain::{Choice, Side, Transform, WeightKind};
+use crate::domain::{Choice, Hemispheres, Side, Transform, WeightKind};
 use crate::embed;
 use crate::settings::{EvidenceChoice, Request};
 use crate::transport::Mass;
@@ -17,6 +17,10 @@ const LANDMARK_TABLE: &str = "\
 # One row for each pair of parcels taken for homologous; at least three rows, a dozen is better.
 # Several parcels in a cell are separated by ;. The columns weight, block and basis may be left out.
 # Left and right copies of one area share a block.";
+
+/// What a table of parcels holds.
+const PARCEL_TABLE: &str =
+    "Columns: label, and any of hemisphere, x, y, z, area or volume, group, long_name.";
 
 /// Writes the study file.
 pub fn study_file(draft: &Draft) -> String {
@@ -132,6 +136,23 @@ fn species(lines: &mut Vec<String>, side: Side, species: &DraftSpecies) {
         "Share of each parcel's links that its profile keeps, the strongest; above 0, at most 1.",
     ));
     lines.push(format!("# strongest = {:?}", affinity.strongest.get()));
+    match &species.parcels {
+        Some(table) => {
+            let (known, all) = table.known;
+            lines.push(comment(&format!(
+                "The table of its parcels: {known} of its {all} labels are in the matrix. {PARCEL_TABLE}"
+            )));
+            lines.push(format!("parcels = {}", text(&table.file)));
+        }
+        None => {
+            lines.push(comment(&format!(
+                "A table of its parcels may be added: parcels = \"FILE\". {PARCEL_TABLE}"
+            )));
+        }
+    }
+    lines.push(comment(
+        "So may distances between them, a matrix of any format: distances = \"FILE\".",
+    ));
 }
 
 fn settings(lines: &mut Vec<String>) {
@@ -148,6 +169,7 @@ fn settings(lines: &mut Vec<String>) {
             "evidence" => choices::<EvidenceChoice>(lines, |_| true),
             "mass" => choices::<Mass>(lines, |_| true),
             "resampling" => choices::<Resampling>(lines, |_| true),
+            "hemispheres" => choices::<Hemispheres>(lines, |_| true),
             _ => {}
         }
     }

@@ -11,7 +11,7 @@ use crate::align::Alignment;
 use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{Pair, Seed, Side};
 use crate::evidence::{Fitted, Kind, Material};
-use crate::place;
+use crate::place::{self, Candidates};
 
 /// How fast weight falls with left-out error, with very many landmarks.
 const SHARPNESS: f64 = 12.0;
@@ -112,6 +112,7 @@ pub fn leave_out(
     members: &[Member],
     bagged: Option<&OutOfBag>,
     open: &Pair<Vec<usize>>,
+    admissible: &Candidates,
     asked: &Asked,
     seed: Seed,
 ) -> Vec<LeftOutOfMixture> {
@@ -159,8 +160,10 @@ pub fn leave_out(
                         });
                     }
                 }
+                admissible.close(&candidates.a, &candidates.b, &mut scores);
                 blend.add(weight, &scores);
             }
+            admissible.close(&candidates.a, &candidates.b, &mut blend.score);
             let found = Pair::from_fn(|from: Side| {
                 let to = from.opposite();
                 let question = candidates[from]
@@ -200,6 +203,7 @@ pub fn placed_out_of_bag(
     material: &Material<'_>,
     bagged: &OutOfBag,
     open: &Pair<Vec<usize>>,
+    admissible: &Candidates,
     asked: &Asked,
 ) -> Vec<Pair<Placed>> {
     struct Mean<'o>(&'o Array2<f64>);
@@ -219,7 +223,7 @@ pub fn placed_out_of_bag(
         .enumerate()
         .map(|(at, landmark)| {
             let mean = Mean(&bagged.without[landmark.block]);
-            super::trials::place_one(&mean, landmark, asked.of(at), open)
+            super::trials::place_one(&mean, landmark, asked.of(at), open, admissible)
         })
         .collect()
 }

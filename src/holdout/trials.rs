@@ -8,7 +8,7 @@ use crate::align::{Alignment, Params};
 use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{Landmark, Landmarks, Pair, Seed, Side};
 use crate::evidence::{Evidence, Fingerprint, Fitted, Grown, JointDistance, Kind, Material};
-use crate::place;
+use crate::place::{self, Candidates};
 use crate::watch::{Interrupted, Watch};
 
 /// One way of ranking that left-out landmarks are to judge.
@@ -73,9 +73,12 @@ impl Way {
 pub struct Asked(Vec<Pair<usize>>);
 
 impl Asked {
-    /// Draws the members.
+    /// Draws the members, such that those of one landmark may be counterparts.
+    ///
+    /// # Panics
+    /// If a landmark has no such members, which a checked study rules out.
     #[must_use]
-    pub fn draw(landmarks: &Landmarks, seed: Seed) -> Asked {
+    pub fn draw(landmarks: &Landmarks, candidates: &Candidates, seed: Seed) -> Asked {
         Asked(
             landmarks
                 .list()
@@ -83,10 +86,15 @@ impl Asked {
                 .enumerate()
                 .map(|(at, landmark)| {
                     let mut chance = Stream::new(seed, Purpose::AskedMember, at as u64);
-                    Pair::from_fn(|side| {
-                        let members = &landmark.parcels[side];
+                    let Pair { a, b } = &landmark.parcels;
+                    let mut one_of = |members: &[usize], admissible: &dyn Fn(usize) -> bool| {
+                        let members: Vec<usize> =
+                            members.iter().copied().filter(|&m| admissible(m)).collect();
                         members[chance.gen_range(0..members.len())]
-                    })
+                    };
+                    let a = one_of(a, &|a| b.iter().any(|&b| candidates.admit(Side::A, a, b)));
+                    let b = one_of(b, &|b| candidates.admit(Side::A, a, b));
+                    Pair { a, b }
                 })
                 .collect(),
         )
@@ -104,7 +112,7 @@ impl Asked {
 pub struct Placed {
     /// Rank of the best member opposite, 1 being right.
     pub rank: usize,
-    /// Candidates: the other species' open parcels and the landmark's own.
+    /// Candidates: the other species' open parcels and the landmark's own, as far as admissible.
     pub candidates: usize,
 }
 
@@ -119,7 +127,8 @@ impl Placed {
         (self.rank as f64).ln() / (self.candidates as f64).ln()
     }
 
-    /// Where the best of `members` comes among candidates; `dissimilarities` has one number for each.
+    /// Where the best of `members` comes among candidates; `dissimilarities` has one number for each,
+    /// infinite where a parcel may not be a counterpart.
     ///
     /// # Panics
     /// If no member is among the candidates.
@@ -133,7 +142,7 @@ impl Placed {
                 .map(|(at, _)| place::rank(dissimilarities, at))
                 .min()
                 .expect("a landmark has at least one parcel on each side"),
-            candidates: candidates.len(),
+            candidates: dissimilarities.iter().filter(|d| d.is_finite()).count(),
         }
     }
 
@@ -205,6 +214,7 @@ pub fn run(
     material: &Material<'_>,
     ways: &[Way],
     open: &Pair<Vec<usize>>,
+    candidates: &Candidates,
     asked: &Asked,
     seed: Seed,
     watch: &dyn Watch,
@@ -239,9 +249,12 @@ pub fn run(
                             .enumerate()
                             .filter(|(_, l)| l.block == i || l.block == j)
                             .map(|(at, l)| match &fitted {
-                                Ok(fitted) => (at, place_one(&**fitted, l, asked.of(at), open)),
+                                Ok(fitted) => {
+                                    let asked = asked.of(at);
+                                    (at, place_one(&**fitted, l, asked, open, candidates))
+                                }
                                 // Without the landmark there is nothing to go by.
-                                Err(_) => (at, last_of_all(l, open)),
+                                Err(_) => (at, last_of_all(l, asked.of(at), open, candidates)),
                             })
                             .collect()
                     })
@@ -293,10 +306,12 @@ pub(super) fn place_one(
     landmark: &Landmark,
     asked: Pair<usize>,
     open: &Pair<Vec<usize>>,
+    admissible: &Candidates,
 ) -> Pair<Placed> {
     Pair::from_fn(|from| {
         let to = from.opposite();
         let mut candidates = [&open[to][..], &landmark.parcels[to][..]].concat();
+        candidates.retain(|&candidate| admissible.admit(from, asked[from], candidate));
         candidates.sort_unstable();
         let question = [asked[from]];
         let dissimilarities: Vec<f64> = match from {
@@ -316,13 +331,24 @@ pub(super) fn place_one(
 }
 
 /// The worst rank that a landmark's counterpart can have.
-fn last_of_all(landmark: &Landmark, open: &Pair<Vec<usize>>) -> Pair<Placed> {
+fn last_of_all(
+    landmark: &Landmark,
+    asked: Pair<usize>,
+    open: &Pair<Vec<usize>>,
+    admissible: &Candidates,
+) -> Pair<Placed> {
     Pair::from_fn(|from| {
         let to = from.opposite();
-        let candidates = open[to].len() + landmark.parcels[to].len();
+        let admitted = |parcels: &[usize]| {
+            parcels
+                .iter()
+                .filter(|&&candidate| admissible.admit(from, asked[from], candidate))
+                .count()
+        };
+        let (others, own) = (admitted(&open[to]), admitted(&landmark.parcels[to]));
         Placed {
-            rank: open[to].len() + 1,
-            candidates,
+            rank: others + 1,
+            candidates: others + own,
         }
     })
 }

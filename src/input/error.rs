@@ -4,6 +4,7 @@ use std::fmt;
 use std::path::{Path, PathBuf};
 
 use super::formats::Fault;
+use super::parcel_fault::ParcelFault;
 use crate::domain::Side;
 
 /// A place in an input file, as exactly as it is known.
@@ -138,6 +139,9 @@ pub enum Problem {
     /// A fault of one format of matrices.
     #[error(transparent)]
     Format(#[from] Fault),
+    /// A fault in what is said of parcels.
+    #[error(transparent)]
+    Parcels(#[from] ParcelFault),
     /// No such file.
     #[error("there is no such file; check the path (in a study file it is relative to that file's folder)")]
     NotFound,
@@ -267,9 +271,6 @@ pub enum Problem {
         /// Whether it should have been a logarithm.
         logarithm: bool,
     },
-    /// NaN, NA or an empty cell.
-    #[error("expected a number, found {0}; missing entries are not read yet: fill in the value, or remove the parcel's row and column")]
-    Missing(String),
     /// A negative count, fraction or ordinal.
     #[error("expected a weight of zero or more ({weights}), found {found}; if negative weights are meant, say weights = \"correlations\", \"log10\" or \"other\"")]
     Negative {
@@ -278,9 +279,9 @@ pub enum Problem {
         /// The weight.
         found: f64,
     },
-    /// Rows and columns differ in number.
-    #[error("expected a square matrix, found {rows} rows and {columns} columns of data; every parcel needs a row and a column, but {label:?} has no {lacks}")]
-    NotSquare {
+    /// Nearly square: a line seems to be lost.
+    #[error("expected a square matrix, found {rows} rows and {columns} columns of data; every parcel needs a row and a column, but {label:?} has no {lacks}. If these links were not measured, add rows = \"sources\" or rows = \"targets\" to the species in the study file")]
+    LineLost {
         /// Rows of data.
         rows: usize,
         /// Columns of data.
@@ -289,6 +290,22 @@ pub enum Problem {
         label: String,
         /// `row` or `column`, whichever it lacks.
         lacks: &'static str,
+    },
+    /// Some lines are rows and columns, others only rows, others only columns.
+    #[error("found {rows} rows and {columns} columns of data, and the {is} {label:?} is no {lacks}{}; in a square matrix every parcel has a row and a column, and in a rectangular one the areas on the shorter side are among those on the longer. Correct the label, or, if the two sides are different areas, add rows = \"sources\" or rows = \"targets\" to the species in the study file", hint(near))]
+    LineAlone {
+        /// Rows of data.
+        rows: usize,
+        /// Columns of data.
+        columns: usize,
+        /// The first label of the shorter side that is not on the longer one.
+        label: String,
+        /// `row` or `column`, whichever it is.
+        is: &'static str,
+        /// The other, which it lacks.
+        lacks: &'static str,
+        /// Near spellings on the longer side.
+        near: Vec<String>,
     },
     /// An empty label.
     #[error("expected a parcel label, found an empty cell; every row and column needs a label")]
@@ -319,6 +336,17 @@ pub enum Problem {
     /// No connection at all.
     #[error("every weight off the diagonal is zero; expected at least some connections, so check what was exported")]
     AllZero,
+    /// Nothing observed.
+    #[error("of no parcel were enough entries observed to compare it with others; expected numbers, so check what was exported")]
+    AllMissing,
+    /// Too few columns to compare parcels by.
+    #[error("found {found} columns of data to compare parcels by, at least {needed} are needed; give links with more areas")]
+    TooFewColumns {
+        /// Columns found.
+        found: usize,
+        /// Columns needed.
+        needed: usize,
+    },
     /// Too few parcels to embed.
     #[error("found {found} parcels with connections, at least {needed} are needed; give a matrix of more parcels")]
     TooFewParcels {
@@ -411,14 +439,6 @@ pub enum Problem {
         in_blocks: usize,
         /// Axes asked for.
         axes: usize,
-    },
-    /// A landmark parcel without any connection.
-    #[error("landmark parcel {parcel:?} of species {} has no connection at all, so nothing can be anchored to it; remove it from the landmark", side.letter())]
-    LandmarkIsolated {
-        /// The species.
-        side: Side,
-        /// The parcel.
-        parcel: String,
     },
     /// A matrix without any axis.
     #[error("the connectivity of species {} yields no axis at all; check that its weights differ, span no more than numbers can hold, and are of the kind the study file states", side.letter())]

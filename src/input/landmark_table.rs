@@ -1,6 +1,6 @@
 //! The table of landmarks: `landmark,a,b` and optionally `weight`, `block`, `basis`.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 use super::delimited::{self, Row, Table};
 use super::error::{InputError, Place, Problem};
@@ -18,7 +18,7 @@ const COLUMNS: [&str; 6] = ["landmark", "a", "b", "weight", "block", "basis"];
 /// Reads the landmarks and finds their parcels.
 ///
 /// # Errors
-/// [`InputError`] for a missing column, an empty cell, an unknown, repeated or unconnected parcel, a
+/// [`InputError`] for a missing column, an empty cell, an unknown or repeated parcel, a
 /// repeated landmark, a weight outside (0, 1] or fewer than three landmarks.
 pub fn read(
     source: &Source,
@@ -32,6 +32,8 @@ pub fn read(
     let mut blocks: Vec<String> = Vec::new();
     let mut names: BTreeMap<String, u64> = BTreeMap::new();
     let mut used: Pair<BTreeMap<usize, (String, u64)>> = Pair::default();
+    let mut without = Without::default();
+    let mut merged = Vec::new();
     for row in &table.rows {
         let at = |column: usize| Place::line(source.path(), row.line).column(column + 1);
         let name = row.cells.get(columns.landmark).unwrap_or("").to_owned();
@@ -48,17 +50,28 @@ pub fn read(
             ));
         }
         names.insert(name.clone(), row.line);
+        let fault = |side: Side| {
+            let place = at(columns.parcels[side]).parcel(&name);
+            |problem| InputError::new(place, problem)
+        };
         let members = Pair::try_from_fn(|side| {
-            members(
-                row,
-                columns.parcels[side],
+            members(row, columns.parcels[side], parcels[side], side).map_err(fault(side))
+        })?;
+        if let Some(first) = same_when_folded(&list, &members, parcels) {
+            merged.push((first.name.clone(), name));
+            continue;
+        }
+        for side in Side::BOTH {
+            claim(
+                &members[side].placed,
                 parcels[side],
                 side,
                 &mut used[side],
                 &name,
+                row.line,
             )
-            .map_err(|problem| InputError::new(at(columns.parcels[side]).parcel(&name), problem))
-        })?;
+            .map_err(fault(side))?;
+        }
         let weight = match cell(row, columns.weight) {
             None => Share::ALL,
             Some(text) => text
@@ -72,6 +85,15 @@ pub fn read(
                     )
                 })?,
         };
+        for side in Side::BOTH {
+            for label in &members[side].unplaced {
+                without.note(&name, label, parcels[side].species());
+            }
+        }
+        if members.a.placed.is_empty() || members.b.placed.is_empty() {
+            without.landmarks.push(name);
+            continue;
+        }
         let block = match cell(row, columns.block) {
             // A block of its own, told from named ones by a spelling no cell can have.
             None => {
@@ -88,7 +110,7 @@ pub fn read(
             .map(|_| Basis(cell(row, columns.basis).unwrap_or("").to_owned()));
         list.push(Landmark {
             name,
-            parcels: members,
+            parcels: members.map(|m| m.placed),
             weight,
             block,
             basis,
@@ -98,6 +120,10 @@ pub fn read(
         .into_iter()
         .map(|b| b.trim_start().to_owned())
         .collect();
+    warnings.extend(without.warning());
+    if !merged.is_empty() {
+        warnings.push(Warning::LandmarksMerged { pairs: merged });
+    }
     warnings.extend(suspicions(&list, parcels));
     let landmarks = Landmarks::new(list, blocks).map_err(|e| match e {
         LandmarkError::TooFew { found, needed } => InputError::new(
@@ -182,31 +208,53 @@ fn cell(row: &Row, column: Option<usize>) -> Option<&str> {
 }
 
 /// The parcels one cell names.
-fn members(
-    row: &Row,
-    column: usize,
-    parcels: &Parcels,
-    side: Side,
-    used: &mut BTreeMap<usize, (String, u64)>,
-    landmark: &str,
-) -> Result<Vec<usize>, Problem> {
+struct Members {
+    /// Those that take part.
+    placed: Vec<usize>,
+    /// Labels of those that were set aside.
+    unplaced: Vec<String>,
+}
+
+/// Landmark parcels that were set aside, and landmarks that have none left.
+#[derive(Default)]
+struct Without {
+    parcels: Vec<String>,
+    landmarks: Vec<String>,
+}
+
+impl Without {
+    fn note(&mut self, landmark: &str, parcel: &str, species: &str) {
+        self.parcels
+            .push(format!("{parcel} of {species} ({landmark})"));
+    }
+
+    fn warning(self) -> Option<Warning> {
+        (!self.parcels.is_empty()).then_some(Warning::LandmarksReduced {
+            parcels: self.parcels,
+            landmarks: self.landmarks,
+        })
+    }
+}
+
+/// Reads the parcels one cell names.
+fn members(row: &Row, column: usize, parcels: &Parcels, side: Side) -> Result<Members, Problem> {
     let cell = row.cells.get(column).unwrap_or("");
     // A label may itself contain the separator: then it is the label that counts.
     let labels: Vec<&str> = match parcels.find(cell) {
         Some(_) => vec![cell],
         None => cell.split(PARCEL_SEPARATOR).map(str::trim).collect(),
     };
-    let mut members = Vec::new();
+    let (mut members, mut unplaced) = (Vec::new(), Vec::new());
     for label in labels {
         if label.is_empty() {
             return Err(Problem::EmptyCell("a parcel"));
         }
         let Some(parcel) = parcels.find(label) else {
-            if parcels.isolated().iter().any(|known| known == label) {
-                return Err(Problem::LandmarkIsolated {
-                    side,
-                    parcel: label.to_owned(),
-                });
+            let aside = [parcels.isolated(), parcels.uncovered()].concat();
+            let resolved = parcels.resolve(label);
+            if aside.iter().any(|known| known == resolved) {
+                unplaced.push(label.to_owned());
+                continue;
             }
             return Err(Problem::UnknownParcel {
                 side,
@@ -218,17 +266,57 @@ fn members(
                     .collect(),
             });
         };
-        if let Some((landmark, line)) = used.insert(parcel, (landmark.to_owned(), row.line)) {
+        // Both copies of a folded parcel may be named; together they are one.
+        if parcels.folded() == 0 || !members.contains(&parcel) {
+            members.push(parcel);
+        }
+    }
+    Ok(Members {
+        placed: members,
+        unplaced,
+    })
+}
+
+/// Sees that no landmark has these parcels yet.
+fn claim(
+    members: &[usize],
+    parcels: &Parcels,
+    side: Side,
+    used: &mut BTreeMap<usize, (String, u64)>,
+    landmark: &str,
+    line: u64,
+) -> Result<(), Problem> {
+    for &parcel in members {
+        if let Some((landmark, line)) = used.insert(parcel, (landmark.to_owned(), line)) {
             return Err(Problem::ParcelTwice {
                 side,
-                parcel: label.to_owned(),
+                parcel: parcels.labels()[parcel].clone(),
                 landmark,
                 line,
             });
         }
-        members.push(parcel);
     }
-    Ok(members)
+    Ok(())
+}
+
+/// An earlier landmark of the very same parcels, where brains are folded: then the left and the right
+/// copy of one landmark are one, and nothing is gained by counting it twice.
+fn same_when_folded<'l>(
+    list: &'l [Landmark],
+    members: &Pair<Members>,
+    parcels: Pair<&Parcels>,
+) -> Option<&'l Landmark> {
+    if Side::BOTH
+        .into_iter()
+        .all(|side| parcels[side].folded() == 0)
+    {
+        return None;
+    }
+    let set = |parcels: &[usize]| -> BTreeSet<usize> { parcels.iter().copied().collect() };
+    list.iter().find(|landmark| {
+        let same = |side| set(&landmark.parcels[side]) == set(&members[side].placed);
+        Side::BOTH.into_iter().all(same)
+    })
 }
 
 /// What is legal but should be known.

@@ -1,46 +1,53 @@
-//! From a grid of any format to a checked square connectivity; row = source, column = target.
+//! From a grid of any format to a checked connectivity whose rows are parcels.
 
-use std::collections::{HashMap, HashSet};
-use std::path::Path;
+mod lines;
 
 use ndarray::Array2;
 
 use super::error::{InputError, Place, Problem};
 use super::formats::{self, Fault, Wanted};
-use super::grid::{Grid, Label};
+use super::grid::{Grid, Origin};
 use super::label_file::{self, LabelFile};
-use super::nearest::nearest_few;
 use super::source::{Bytes, InputFile, Source};
 use super::study_file::SpeciesFile;
-use crate::domain::{Connectivity, WeightKind};
+use crate::domain::{Connectivity, RowsAre, Tracer, WeightKind};
 use crate::warning::Warning;
+use lines::{Given, Lines, Shape};
 
 /// A species' matrix as read, and the files it was read from.
 #[derive(Debug, Clone)]
 pub struct Matrix {
-    /// The matrix.
+    /// The matrix; its rows are the parcels.
     pub network: Connectivity,
+    /// What its rows are; sources where it is square.
+    pub rows_are: RowsAre,
     /// What is legal but suspicious.
     pub warnings: Vec<Warning>,
     /// The file of the matrix.
     pub file: InputFile,
-    /// The file of its labels, where they have one of their own.
-    pub labels: Option<InputFile>,
+    /// The files of its labels, where they have one of their own.
+    pub labels: Vec<InputFile>,
+}
+
+/// What the study says about the numbers of a matrix.
+struct Stated<'s> {
+    species: &'s str,
+    weights: WeightKind,
+    rows: Option<RowsAre>,
+    tracer: Option<Tracer>,
 }
 
 /// Reads a species' matrix in any format, recognised by what the file holds.
 ///
 /// # Errors
-/// [`InputError`] with the place and parcel for anything that is not a complete square matrix of
-/// weights of the kind stated.
+/// [`InputError`] with the place and parcel for anything that is not a matrix of weights of the kind
+/// stated, between parcels or from parcels to some of them.
 pub fn read_of(described: &SpeciesFile) -> Result<Matrix, InputError> {
     let bytes = Bytes::read(&described.matrix)?;
     let file = bytes.file.clone();
-    let labels = described
-        .labels
-        .as_deref()
-        .map(label_file::read)
-        .transpose()?;
+    let read_labels = |path: &Option<_>| path.as_deref().map(label_file::read).transpose();
+    let labels = read_labels(&described.labels)?;
+    let column_labels = read_labels(&described.column_labels)?;
     let wanted = Wanted {
         weights: described.weights,
         variable: described.variable.as_deref(),
@@ -48,20 +55,36 @@ pub fn read_of(described: &SpeciesFile) -> Result<Matrix, InputError> {
         labels: labels.as_ref().map(|l| l.labels.as_slice()),
     };
     let grid = formats::read(bytes, &wanted)?;
-    let (network, warnings) = settle(grid, labels.as_ref(), described.weights, &described.name)?;
+    let given = Given {
+        labels: labels.as_ref(),
+        column_labels: column_labels.as_ref(),
+        orientation_stated: described.rows.is_some() || described.tracer.is_some(),
+    };
+    let stated = Stated {
+        species: &described.name,
+        weights: described.weights,
+        rows: described.rows,
+        tracer: described.tracer,
+    };
+    let (network, rows_are, warnings) = settle(grid, given, &stated)?;
     Ok(Matrix {
         network,
+        rows_are,
         warnings,
         file,
-        labels: labels.map(|l| l.file),
+        labels: [labels, column_labels]
+            .into_iter()
+            .flatten()
+            .map(|l| l.file)
+            .collect(),
     })
 }
 
 /// Reads a matrix from a text that carries its labels.
 ///
 /// # Errors
-/// [`InputError`] with file, line, column and parcel for anything that is not a complete square
-/// matrix of weights of the kind stated.
+/// [`InputError`] with file, line, column and parcel for anything that is not a matrix of weights of
+/// the kind stated.
 pub fn read(
     source: &Source,
     weights: WeightKind,
@@ -73,232 +96,175 @@ pub fn read(
         label_variable: None,
         labels: None,
     };
-    settle(formats::text(source, &wanted)?, None, weights, species)
+    let stated = Stated {
+        species,
+        weights,
+        rows: None,
+        tracer: None,
+    };
+    let grid = formats::text(source, &wanted)?;
+    let (network, _, warnings) = settle(grid, Given::default(), &stated)?;
+    Ok((network, warnings))
 }
 
-/// The parcels of a grid: a label for each row, and the column that belongs to it.
-struct Axes {
-    labels: Vec<String>,
-    column: Vec<usize>,
+/// Reads a grid whose rows and columns are the same parcels and whose numbers are of any kind, such as
+/// distances; `None` where they are not the same.
+///
+/// # Errors
+/// [`InputError`] with the place for labels and entries that are none.
+pub(super) fn square(
+    grid: Grid,
+    labels: Option<&LabelFile>,
+    species: &str,
+) -> Result<Option<Connectivity>, InputError> {
+    let given = Given {
+        labels,
+        ..Given::default()
+    };
+    let stated = Stated {
+        species,
+        weights: WeightKind::Other,
+        rows: None,
+        tracer: None,
+    };
+    let (network, _, _) = settle(grid, given, &stated)?;
+    Ok(Some(network).filter(Connectivity::is_square))
 }
 
-/// Checks labels, shape and entries, and brings the columns into the order of the rows.
+/// Checks labels and entries, brings the columns of a square matrix into the order of the rows, and
+/// turns the matrix so that its rows are parcels.
 fn settle(
     mut grid: Grid,
-    given: Option<&LabelFile>,
-    weights: WeightKind,
-    species: &str,
-) -> Result<(Connectivity, Vec<Warning>), InputError> {
-    let Axes { labels, column } = axes(&mut grid, given)?;
-    clear_diagonal(&mut grid.values, &column);
-    check_entries(&grid, &labels, &column, weights)?;
-
-    let mut warnings = Vec::new();
-    let mut values = grid.values;
-    if !column.iter().copied().eq(0..column.len()) {
-        warnings.push(Warning::ColumnsReordered {
-            species: species.to_owned(),
-        });
-        values = Array2::from_shape_fn(values.dim(), |(i, j)| values[(i, column[j])]);
-    }
-    let connectivity = Connectivity::new(labels.clone(), labels, values, None)
-        .expect("rows, columns and labels were counted above");
-    Ok((connectivity, warnings))
-}
-
-/// The labels a matrix carries, of its rows and of its columns.
-type Own = (Option<Vec<Label>>, Option<Vec<Label>>);
-
-/// Settles which parcels rows and columns stand for.
-fn axes(grid: &mut Grid, given: Option<&LabelFile>) -> Result<Axes, InputError> {
-    let (rows, columns) = grid.values.dim();
-    let own = (grid.row_labels.take(), grid.column_labels.take());
-    let file = grid.file.as_path();
-    let square = |own: &Own| {
-        if rows == columns {
-            return Ok(());
-        }
-        Err(InputError::new(
-            Place::file(file),
-            match own {
-                (Some(of_rows), Some(of_columns)) => not_square(of_rows, of_columns),
-                _ => Fault::NotSquare { rows, columns }.into(),
-            },
-        ))
-    };
-    let Some(given) = given else {
-        for labels in [&own.1, &own.0].into_iter().flatten() {
-            check_labels(labels)?;
-        }
-        square(&own)?;
-        return match own {
-            (Some(of_rows), Some(of_columns)) => {
-                let column = column_order(&of_rows, &of_columns)?;
-                Ok(Axes {
-                    labels: texts(of_rows),
-                    column,
-                })
-            }
-            (Some(labels), None) | (None, Some(labels)) => Ok(Axes {
-                labels: texts(labels),
-                column: (0..columns).collect(),
-            }),
-            (None, None) => Err(InputError::new(
-                Place::file(file),
-                Fault::NoLabels { rows }.into(),
-            )),
-        };
-    };
-
-    check_labels(&given.labels)?;
-    square(&own)?;
-    if given.labels.len() != rows {
+    given: Given<'_>,
+    stated: &Stated<'_>,
+) -> Result<(Connectivity, RowsAre, Vec<Warning>), InputError> {
+    let mut lines = Lines::settle(&mut grid, given)?;
+    let is_list = matches!(grid.origin, Origin::Pairs { .. });
+    if let (true, Some(RowsAre::Targets)) = (is_list, stated.rows) {
         return Err(InputError::new(
-            Place::file(&given.file.path),
-            Fault::LabelCount {
-                found: given.labels.len(),
-                rows,
-                matrix: file.to_path_buf(),
-            }
-            .into(),
+            Place::file(&grid.file),
+            Fault::ListKnowsDirection.into(),
         ));
     }
-    // The matrix's own labels still say which column belongs to which row.
-    let (own, column) = match own {
-        (Some(of_rows), Some(of_columns)) if !same(&of_rows, &of_columns) => {
-            check_labels(&of_columns)?;
-            check_labels(&of_rows)?;
-            let column = column_order(&of_rows, &of_columns)?;
-            (Some(of_rows), column)
-        }
-        (of_rows, of_columns) => (of_rows.or(of_columns), (0..columns).collect()),
-    };
-    if let Some(own) = own {
-        refuse_other_order(&own, given, file)?;
+    clear_diagonal(&mut grid, &lines);
+    check_entries(&grid, &lines, stated.weights)?;
+
+    let mut warnings = Vec::new();
+    let mut values = std::mem::take(&mut grid.values);
+    if !lines.column.iter().copied().eq(0..lines.column.len()) {
+        warnings.push(Warning::ColumnsReordered {
+            species: stated.species.to_owned(),
+        });
+        values = Array2::from_shape_fn(values.dim(), |(i, j)| values[(i, lines.column[j])]);
     }
-    Ok(Axes {
-        labels: texts(given.labels.clone()),
-        column,
-    })
-}
-
-fn texts(labels: Vec<Label>) -> Vec<String> {
-    labels.into_iter().map(|label| label.text).collect()
-}
-
-fn same(one: &[Label], other: &[Label]) -> bool {
-    one.iter()
-        .map(|label| &label.text)
-        .eq(other.iter().map(|label| &label.text))
-}
-
-/// Labels given for those of the matrix rename its parcels. The same labels in another order would
-/// exchange them, which nobody means.
-fn refuse_other_order(own: &[Label], given: &LabelFile, matrix: &Path) -> Result<(), InputError> {
-    let Some(at) = (0..own.len()).find(|&i| own[i].text != given.labels[i].text) else {
-        return Ok(());
-    };
-    let of = |labels| -> HashSet<String> { texts(labels).into_iter().collect() };
-    if of(own.to_vec()) != of(given.labels.clone()) {
-        return Ok(());
+    let any_missing = values.iter().any(|w| w.is_nan());
+    let missing = any_missing.then(|| values.mapv(f64::is_nan));
+    if any_missing {
+        values.mapv_inplace(|w| if w.is_nan() { 0.0 } else { w });
     }
-    Err(InputError::new(
-        given.labels[at].place.clone(),
-        Fault::LabelsReordered {
-            given: given.labels[at].text.clone(),
-            own: own[at].text.clone(),
-            matrix: matrix.to_path_buf(),
-        }
-        .into(),
-    ))
-}
-
-/// Sees that no label is empty and none comes twice.
-fn check_labels(labels: &[Label]) -> Result<(), InputError> {
-    let mut first: HashMap<&str, &Place> = HashMap::new();
-    for Label { text, place } in labels {
-        if text.is_empty() {
-            return Err(InputError::new(place.clone(), Problem::EmptyLabel));
-        }
-        if let Some(before) = first.insert(text, place) {
-            return Err(InputError::new(
-                place.clone().parcel(text),
-                Problem::DuplicateLabel {
-                    label: text.clone(),
-                    first: before.within_file(),
-                },
-            ));
-        }
+    let mut network = Connectivity::new(lines.rows, lines.columns, values, missing)
+        .expect("rows, columns and labels were counted above");
+    if let (Some(tracer), Origin::Pairs { at, .. }) = (stated.tracer, &grid.origin) {
+        (network, lines.shape) = injected_only(network, tracer, at.keys().copied());
     }
-    Ok(())
-}
 
-/// The fault of a matrix with more labels on one axis than on the other, by the first that is alone.
-fn not_square(rows: &[Label], columns: &[Label]) -> Problem {
-    let (more, fewer, lacks) = if rows.len() > columns.len() {
-        (rows, columns, "column")
+    // Injected areas are on the shorter side, so that the tracer says what that side is.
+    let shorter_is_columns = !matches!(lines.shape, Shape::RowsWithin | Shape::RowsElse);
+    let by_tracer = stated.tracer.map(|tracer| match shorter_is_columns {
+        true => tracer.injected().opposite(),
+        false => tracer.injected(),
+    });
+    let rows = if is_list {
+        Some(RowsAre::Sources)
     } else {
-        (columns, rows, "row")
+        stated.rows
     };
-    let known: HashSet<&String> = fewer.iter().map(|label| &label.text).collect();
-    Problem::NotSquare {
-        rows: rows.len(),
-        columns: columns.len(),
-        label: more
-            .iter()
-            .find(|label| !known.contains(&label.text))
-            .map_or_else(String::new, |label| label.text.clone()),
-        lacks,
+    if lines.shape == Shape::Square {
+        let turned = rows == Some(RowsAre::Targets);
+        let network = if turned {
+            network.transposed()
+        } else {
+            network
+        };
+        return Ok((network, RowsAre::Sources, warnings));
     }
+    let rows = rows.or(by_tracer).unwrap_or(RowsAre::Sources);
+    if let (Some(tracer), true) = (stated.tracer, by_tracer != Some(rows)) {
+        warnings.push(Warning::TracerAgainstShape {
+            species: stated.species.to_owned(),
+            tracer,
+            injected: tracer.injected(),
+        });
+    }
+    let (network, rows_are) = match shorter_is_columns {
+        true => (network, rows),
+        false => (network.transposed(), rows.opposite()),
+    };
+    warnings.push(Warning::Rectangular {
+        species: stated.species.to_owned(),
+        parcels: network.row_labels().len(),
+        parcels_are: rows_are,
+        entries: network.column_labels().len(),
+        elsewhere: (0..network.column_labels().len())
+            .filter(|&j| network.row_of_column(j).is_none())
+            .count(),
+        stated: given.orientation_stated,
+    });
+    Ok((network, rows_are, warnings))
 }
 
-/// For each row, the column that carries its label.
-fn column_order(rows: &[Label], columns: &[Label]) -> Result<Vec<usize>, InputError> {
-    let at: HashMap<&str, usize> = columns
-        .iter()
-        .enumerate()
-        .map(|(i, label)| (label.text.as_str(), i))
-        .collect();
-    rows.iter()
-        .map(|Label { text, place }| {
-            at.get(text.as_str()).copied().ok_or_else(|| {
-                InputError::new(
-                    place.clone().parcel(text),
-                    Problem::LabelMismatch {
-                        axis: "row",
-                        other: "column",
-                        label: text.clone(),
-                        near: nearest_few(text, columns.iter().map(|c| c.text.as_str()))
-                            .into_iter()
-                            .map(str::to_owned)
-                            .collect(),
-                    },
-                )
-            })
-        })
-        .collect()
+/// Of a list of connections by tracer: on the injected side only the areas that it mentions there.
+/// An area that was never injected has no line, which is no zero.
+fn injected_only(
+    network: Connectivity,
+    tracer: Tracer,
+    pairs: impl Iterator<Item = (usize, usize)>,
+) -> (Connectivity, Shape) {
+    let all: Vec<usize> = (0..network.row_labels().len()).collect();
+    let mut mentioned = vec![false; all.len()];
+    for (source, target) in pairs {
+        match tracer.injected() {
+            RowsAre::Sources => mentioned[source] = true,
+            RowsAre::Targets => mentioned[target] = true,
+        }
+    }
+    let injected: Vec<usize> = all.iter().copied().filter(|&i| mentioned[i]).collect();
+    if injected.len() == all.len() {
+        return (network, Shape::Square);
+    }
+    match tracer.injected() {
+        RowsAre::Sources => (network.select(&injected, &all), Shape::RowsWithin),
+        RowsAre::Targets => (network.select(&all, &injected), Shape::ColumnsWithin),
+    }
 }
 
 /// The diagonal is no data and often holds no number.
-fn clear_diagonal(values: &mut Array2<f64>, column: &[usize]) {
-    for (i, &j) in column.iter().enumerate() {
+fn clear_diagonal(grid: &mut Grid, lines: &Lines) {
+    let values = &mut grid.values;
+    let mut clear = |i: usize, j: usize| {
         if !values[(i, j)].is_finite() {
             values[(i, j)] = 0.0;
+        }
+    };
+    if lines.shape == Shape::Square {
+        for (i, &j) in lines.column.iter().enumerate() {
+            clear(i, j);
+        }
+        return;
+    }
+    let row_of: std::collections::HashMap<&str, usize> =
+        lines.rows.iter().map(String::as_str).zip(0..).collect();
+    for (label, &j) in lines.columns.iter().zip(&lines.column) {
+        if let Some(&i) = row_of.get(label.as_str()) {
+            clear(i, j);
         }
     }
 }
 
-/// Sees that every entry off the diagonal is a weight.
-fn check_entries(
-    grid: &Grid,
-    labels: &[String],
-    column: &[usize],
-    weights: WeightKind,
-) -> Result<(), InputError> {
+/// Sees that every entry off the diagonal is a weight, or missing.
+fn check_entries(grid: &Grid, lines: &Lines, weights: WeightKind) -> Result<(), InputError> {
     for ((i, j), &value) in grid.values.indexed_iter() {
-        let problem = if value.is_nan() {
-            refuse_missing(grid.spelling(i, j))
-        } else if value.is_infinite() {
+        let problem = if value.is_infinite() {
             Problem::Infinite {
                 found: grid.spelling(i, j),
                 logarithm: weights == WeightKind::Log10,
@@ -311,18 +277,9 @@ fn check_entries(
         } else {
             continue;
         };
-        let target = column.iter().position(|&c| c == j).unwrap_or(j);
-        let pair = format!("{} to {}", labels[i], labels[target]);
+        let target = lines.column.iter().position(|&c| c == j).unwrap_or(j);
+        let pair = format!("{} to {}", lines.rows[i], lines.columns[target]);
         return Err(InputError::new(grid.place(i, j).parcel(&pair), problem));
     }
     Ok(())
-}
-
-/// The one place that says no to entries that were never observed.
-fn refuse_missing(spelling: String) -> Problem {
-    Problem::Missing(if spelling.is_empty() {
-        "an empty cell".to_owned()
-    } else {
-        spelling
-    })
 }

@@ -1,4 +1,4 @@
-//! What a table is by its looks: a matrix, a landmark table or neither. For guesses only; the
+//! What a table is by its looks: a matrix, a landmark table, a table of parcels or none. For guesses only; the
 //! readers judge.
 
 use std::collections::{HashMap, HashSet};
@@ -6,6 +6,7 @@ use std::collections::{HashMap, HashSet};
 use super::delimited::{self, Table};
 use super::error::InputError;
 use super::matrix;
+use super::parcel_table;
 use super::source::Source;
 use crate::domain::{Connectivity, WeightKind};
 
@@ -21,7 +22,9 @@ pub enum Looks {
     Matrix(Box<MatrixLooks>),
     /// A landmark table.
     Landmarks(LandmarkLooks),
-    /// Neither; the reason in words.
+    /// A table of parcels.
+    Parcels(ParcelLooks),
+    /// None of them; the reason in words.
     Neither(String),
 }
 
@@ -49,6 +52,13 @@ pub struct LandmarkLooks {
     pub b: Vec<String>,
 }
 
+/// A table that looks like a table of parcels.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct ParcelLooks {
+    /// The labels it describes.
+    pub labels: Vec<String>,
+}
+
 /// Looks at a table.
 #[must_use]
 pub fn recognise(source: &Source) -> Looks {
@@ -70,6 +80,10 @@ pub fn recognise(source: &Source) -> Looks {
         .filter(|l| columns.contains(l.as_str()))
         .count();
     if labels.len() < FEWEST_ROWS || (shared as f64) < SHARED_LABELS * labels.len() as f64 {
+        // Only what is no matrix: parcels may be called x, y and z.
+        if let Some(labels) = parcel_table::looks(&table) {
+            return Looks::Parcels(ParcelLooks { labels });
+        }
         return Looks::Neither("its rows and columns do not name the same parcels".to_owned());
     }
     let (mut off_diagonal, mut diagonal) = (Vec::new(), Vec::new());

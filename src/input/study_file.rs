@@ -9,7 +9,7 @@ use super::formats::Fault;
 use super::nearest::nearest;
 use super::source::{InputFile, Source};
 use crate::affinity::Likeness;
-use crate::domain::{Choice, Pair, Share, Side, Transform, WeightKind};
+use crate::domain::{Choice, Pair, RowsAre, Share, Side, Tracer, Transform, WeightKind};
 use crate::settings::{BadSetting, Request};
 
 /// One species as its study file describes it.
@@ -21,10 +21,20 @@ pub struct SpeciesFile {
     pub matrix: PathBuf,
     /// Its parcels' labels, where a file of their own holds them.
     pub labels: Option<PathBuf>,
+    /// Labels of the columns, where these differ and a file of their own holds them.
+    pub column_labels: Option<PathBuf>,
+    /// What the rows are.
+    pub rows: Option<RowsAre>,
+    /// How injected areas were traced.
+    pub tracer: Option<Tracer>,
     /// Array that is the matrix, in a file of several.
     pub variable: Option<String>,
     /// Array that holds the labels, in a file of several.
     pub label_variable: Option<String>,
+    /// What is known of its parcels besides.
+    pub parcels: Option<PathBuf>,
+    /// Distances between its parcels.
+    pub distances: Option<PathBuf>,
     /// What the weights measure.
     pub weights: WeightKind,
     /// Transform asked for.
@@ -59,8 +69,13 @@ const SPECIES_KEYS: &[&str] = &[
     "affinity",
     "strongest",
     "labels",
+    "column-labels",
+    "rows",
+    "tracer",
     "variable",
     "label-variable",
+    "parcels",
+    "distances",
 ];
 
 /// Reads and checks a study file.
@@ -152,7 +167,8 @@ fn species_file(table: &Table<'_>, folder: &Path) -> Result<SpeciesFile, InputEr
     if name.trim().is_empty() {
         return Err(table.bad_value("name", "more than blanks"));
     }
-    let labels = table.optional_text("labels")?;
+    let file = |key| Ok(table.optional_text(key)?.map(|path| folder.join(path)));
+    let labels = file("labels")?;
     let label_variable = table.optional_text("label-variable")?;
     if labels.is_some() && label_variable.is_some() {
         return Err(InputError::new(
@@ -162,9 +178,14 @@ fn species_file(table: &Table<'_>, folder: &Path) -> Result<SpeciesFile, InputEr
     }
     Ok(SpeciesFile {
         name,
-        labels: labels.map(|path| folder.join(path)),
+        labels,
+        column_labels: file("column-labels")?,
+        rows: table.choice("rows")?,
+        tracer: table.choice("tracer")?,
         variable: table.optional_text("variable")?,
         label_variable,
+        parcels: file("parcels")?,
+        distances: file("distances")?,
         matrix: folder.join(table.text("matrix", "matrix = \"matrix.csv\"")?),
         weights,
         transform,

@@ -5,7 +5,7 @@ use std::fmt;
 use serde::{Serialize, Serializer};
 
 use super::{LandmarkFacts, SpeciesFacts, TransformReason};
-use crate::domain::{Pair, Side, Transform, WeightKind};
+use crate::domain::{Hemispheres, Pair, Side, Transform, WeightKind};
 use crate::prepare::{Filled, Study, SumsToOne};
 use crate::transform::WIDE_SPAN;
 use crate::warning::Warning;
@@ -87,6 +87,20 @@ pub enum Suggestion {
         /// The parcels.
         parcels: Vec<String>,
     },
+    /// One map has one hemisphere, the other both.
+    FoldHemispheres {
+        /// The species with one.
+        one: String,
+        /// The species with two.
+        two: String,
+        /// Whether the one hemisphere is known, or only nothing says that there are two.
+        certain: bool,
+    },
+    /// Both maps have both hemispheres, and nothing was said about them.
+    ChooseHemispheres {
+        /// Whether sides are known, as matching needs.
+        known: bool,
+    },
     /// Left and right copies that are left out one at a time.
     BlockSides {
         /// Pairs of landmarks.
@@ -114,6 +128,7 @@ pub fn suggest(
     for side in Side::BOTH {
         coverage(study, side, &species[side], &mut found);
     }
+    found.extend(hemispheres(study, species));
     let pairs = study
         .warnings
         .iter()
@@ -131,6 +146,29 @@ pub fn suggest(
         found.push(Suggestion::StateBasis);
     }
     found
+}
+
+/// Asks what hemispheres mean, where nobody said so and it matters.
+fn hemispheres(study: &Study, species: &Pair<SpeciesFacts>) -> Option<Suggestion> {
+    let two = species.as_ref().map(|s| s.attributes.hemispheres());
+    let folds = |one: &SpeciesFacts, two: &SpeciesFacts| Suggestion::FoldHemispheres {
+        one: one.name.clone(),
+        two: two.name.clone(),
+        certain: one.attributes.hemispheres().is_some(),
+    };
+    // Who matched sides of which one map has only one has hardly meant that.
+    let asked = study.asked.hemispheres;
+    let open = asked.is_none() || asked == Some(Hemispheres::Match);
+    match (two.a, two.b) {
+        (Some(2), Some(2)) if asked.is_none() => Some(Suggestion::ChooseHemispheres {
+            known: Side::BOTH
+                .into_iter()
+                .all(|side| species[side].attributes.left > 0),
+        }),
+        (Some(2), Some(1) | None) if open => Some(folds(&species.b, &species.a)),
+        (Some(1) | None, Some(2)) if open => Some(folds(&species.a, &species.b)),
+        _ => None,
+    }
 }
 
 /// What the weights of one species suggest.
@@ -265,6 +303,20 @@ impl fmt::Display for Suggestion {
                 parcels.len(),
                 few(parcels)
             ),
+            Suggestion::FoldHemispheres { one, two, certain } => {
+                let seems = if *certain { "has" } else { "seems to have" };
+                write!(
+                    f,
+                    "hemispheres: {one} {seems} one and {two} two; say what is meant: hemispheres = \"fold\" makes one parcel of both copies of an area, so that like is compared with like; \"ignore\" ranks the copies one by one"
+                )
+            }
+            Suggestion::ChooseHemispheres { known } => {
+                let needs = if *known { "" } else { " (needs a column hemisphere in a table of parcels)" };
+                write!(
+                    f,
+                    "hemispheres: both maps have two; say what is meant: hemispheres = \"match\"{needs} seeks counterparts on the same side only, which halves the candidates; \"fold\" makes one parcel of both copies of an area; \"ignore\" ranks across sides"
+                )
+            }
             Suggestion::BlockSides { pairs } => {
                 let look = if *pairs == 1 { "1 pair looks" } else { &format!("{pairs} pairs look") };
                 write!(

@@ -8,7 +8,7 @@ use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{Pair, Seed, Side};
 use crate::evidence::{Kind, Material};
 use crate::holdout::{Blend, Member, OutOfBag, Way};
-use crate::place;
+use crate::place::{self, Candidates};
 use crate::prepare::Study;
 
 /// What ranks.
@@ -45,6 +45,7 @@ impl Ranker {
         weights: &[f64],
         replicate: usize,
         open: &Pair<Vec<usize>>,
+        candidates: &Candidates,
         seed: Seed,
         out: &mut Array2<f64>,
     ) {
@@ -65,11 +66,13 @@ impl Ranker {
                         }
                         _ => fill(way, out),
                     }
+                    candidates.close(&open.a, &open.b, out);
                     blend.add(member.weight, out);
                 }
                 out.assign(&blend.score);
             }
         }
+        candidates.close(&open.a, &open.b, out);
     }
 }
 
@@ -120,6 +123,7 @@ impl Ranking {
         match &ranker {
             Ranker::One(way) => {
                 full(way, &mut scores);
+                study.candidates.close(&open.a, &open.b, &mut scores);
                 firsts.push((way.kind(), place::nearest(&scores)));
             }
             Ranker::Mixture {
@@ -135,15 +139,18 @@ impl Ranking {
                         }
                         _ => full(way, &mut scores),
                     }
+                    study.candidates.close(&open.a, &open.b, &mut scores);
                     firsts.push((member.kind, place::nearest(&scores)));
                     blend.add(member.weight, &scores);
                 }
                 scores = blend.score;
+                study.candidates.close(&open.a, &open.b, &mut scores);
             }
         }
         let best = |row: ArrayView1<'_, f64>| {
             let mut order = place::order(row);
-            order.truncate(study.settings.top.of(order.len()));
+            let admissible = row.iter().filter(|d| **d < f64::INFINITY).count();
+            order.truncate(study.settings.top.of(admissible));
             order
         };
         Ranking {

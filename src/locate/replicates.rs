@@ -156,6 +156,7 @@ fn one(
         &weights,
         replicate,
         open,
+        &study.candidates,
         settings.seed,
         dissimilarities,
     );

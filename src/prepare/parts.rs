@@ -10,29 +10,25 @@ pub struct Parts {
 }
 
 impl Parts {
-    /// Finds the parts, numbered by their first thing.
+    /// Finds the parts, numbered by their first thing; `links` names each linked pair at least once.
     #[must_use]
-    pub fn of(n: usize, linked: impl Fn(usize, usize) -> bool) -> Parts {
-        let mut of = vec![usize::MAX; n];
+    pub fn of(n: usize, links: impl Iterator<Item = (usize, usize)>) -> Parts {
+        // Every thing points towards the first of its part (Galler & Fischer 1964).
+        let mut towards: Vec<usize> = (0..n).collect();
+        for (i, j) in links {
+            let (i, j) = (first(&mut towards, i), first(&mut towards, j));
+            towards[i.max(j)] = i.min(j);
+        }
+        let mut of = vec![0; n];
         let mut sizes = Vec::new();
-        for first in 0..n {
-            if of[first] != usize::MAX {
-                continue;
+        for at in 0..n {
+            let start = first(&mut towards, at);
+            if start == at {
+                of[at] = sizes.len();
+                sizes.push(0);
             }
-            let part = sizes.len();
-            let mut size = 0;
-            let mut waiting = vec![first];
-            of[first] = part;
-            while let Some(i) = waiting.pop() {
-                size += 1;
-                for j in 0..n {
-                    if of[j] == usize::MAX && linked(i, j) {
-                        of[j] = part;
-                        waiting.push(j);
-                    }
-                }
-            }
-            sizes.push(size);
+            of[at] = of[start];
+            sizes[of[at]] += 1;
         }
         Parts { of, sizes }
     }
@@ -57,6 +53,15 @@ impl Parts {
     }
 }
 
+/// The first thing of a part; the way there is shortened.
+fn first(towards: &mut [usize], mut at: usize) -> usize {
+    while towards[at] != at {
+        towards[at] = towards[towards[at]];
+        at = towards[at];
+    }
+    at
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
@@ -64,7 +69,7 @@ mod tests {
     #[test]
     fn parts_are_found_and_the_largest_is_known() {
         let links = [(0, 2), (1, 3), (3, 4)];
-        let parts = Parts::of(6, |i, j| links.contains(&(i, j)) || links.contains(&(j, i)));
+        let parts = Parts::of(6, links.into_iter());
         assert_eq!(parts.of, [0, 1, 0, 1, 1, 2]);
         assert_eq!(parts.real(), 2);
         assert_eq!(parts.largest(), Some(1));

@@ -1,10 +1,12 @@
 //! What a matrix holds before its weights are transformed, for people who want to see that it was
 //! understood.
 
+use std::collections::BTreeSet;
+
 use serde::Serialize;
 
 use super::parts::Parts;
-use crate::domain::{Connectivity, WeightKind};
+use crate::domain::{Connectivity, RowsAre, WeightKind};
 use crate::transform::observed;
 
 /// Sums may miss 1 by this much: fractions are often written with few digits.
@@ -36,12 +38,23 @@ pub enum Filled {
     Below,
 }
 
+/// Different weights counted before the rest is only "more".
+const MOST_DISTINCT: usize = 1000;
+
 /// Facts about the weights of one species, among the parcels that take part.
 #[derive(Debug, Clone, PartialEq)]
 pub struct RawFacts {
+    /// What the rows are, where the network is no square of parcels by parcels.
+    pub rectangular: Option<RowsAre>,
+    /// Entries of a profile in one direction: columns of the network.
+    pub columns: usize,
+    /// Columns that are parcels themselves.
+    pub columns_within: usize,
+    /// Entries off the diagonal that were never observed.
+    pub missing: usize,
     /// Entries off the diagonal that are a connection: not zero, or any logarithm.
     pub connections: usize,
-    /// The same as a share of all entries off the diagonal.
+    /// The same as a share of all observed entries off the diagonal.
     pub density: f64,
     /// Whether the profiles will hold links in both directions.
     pub directed: bool,
@@ -56,7 +69,7 @@ pub struct RawFacts {
     /// Orders of magnitude from the smallest to the largest positive weight; of what the logarithms
     /// stand for. `None` where no weight is positive.
     pub span: Option<f64>,
-    /// How many different weights other than zero there are.
+    /// How many different weights other than zero there are; counted up to a thousand.
     pub distinct: usize,
     /// Whether every weight is a whole number.
     pub whole: bool,
@@ -76,50 +89,102 @@ pub struct RawFacts {
 }
 
 impl RawFacts {
-    /// Looks at the weights of the parcels that take part. `filled` is asked in the order of the
-    /// file, so it is handed in.
+    /// Looks at the weights of the parcels that take part: the rows. `filled` is asked in the order of
+    /// the file, so it is handed in; `rows_are` counts where the network is not square.
     #[must_use]
-    pub fn of(network: &Connectivity, kind: WeightKind, filled: Filled) -> RawFacts {
-        let n = network.row_labels().len();
+    pub fn of(
+        network: &Connectivity,
+        rows_are: RowsAre,
+        kind: WeightKind,
+        filled: Filled,
+    ) -> RawFacts {
+        let (n, columns) = network.weights().dim();
+        let square = network.is_square();
         let weights = network.weights();
-        let is_link =
-            |i: usize, j: usize| i != j && (weights[(i, j)] != 0.0 || kind == WeightKind::Log10);
         let size = |w: f64| match kind {
             WeightKind::Log10 => 10.0_f64.powf(w),
             _ => w.abs(),
         };
-        let directed = (0..n).any(|i| (0..i).any(|j| weights[(i, j)] != weights[(j, i)]));
+        // Links with areas that are no row count as partners, not as parcels.
+        let mut elsewhere = 0;
+        let end_of_column: Vec<usize> = (0..columns)
+            .map(|j| {
+                network.row_of_column(j).unwrap_or_else(|| {
+                    elsewhere += 1;
+                    n + elsewhere - 1
+                })
+            })
+            .collect();
+        let links = || {
+            weights
+                .indexed_iter()
+                .filter(|((i, j), w)| {
+                    network.is_data(*i, *j) && (**w != 0.0 || kind == WeightKind::Log10)
+                })
+                .map(|((i, j), _)| (i, end_of_column[j]))
+        };
+        let directed = square
+            && (0..n).any(|i| {
+                (0..i).any(|j| {
+                    weights[(i, j)] != weights[(j, i)]
+                        && !network.is_missing(i, j)
+                        && !network.is_missing(j, i)
+                })
+            });
 
-        let mut partners = vec![0; n];
-        let mut strength = vec![0.0; n];
+        let mut partners: Vec<Vec<usize>> = vec![Vec::new(); n];
         let mut connections = 0;
-        for i in 0..n {
-            for j in 0..n {
-                if i == j {
-                    continue;
-                }
-                connections += usize::from(is_link(i, j));
-                partners[i] += usize::from(is_link(i, j) || is_link(j, i));
-                strength[i] += size(weights[(i, j)]);
-                if directed {
-                    strength[i] += size(weights[(j, i)]);
+        for (i, j) in links() {
+            connections += 1;
+            partners[i].push(j);
+            if j < n {
+                partners[j].push(i);
+            }
+        }
+        let partners = partners
+            .into_iter()
+            .map(|mut of_parcel| {
+                of_parcel.sort_unstable();
+                of_parcel.dedup();
+                of_parcel.len()
+            })
+            .collect();
+        let mut strength = vec![0.0; n];
+        for ((i, j), &w) in weights.indexed_iter() {
+            if network.is_data(i, j) {
+                strength[i] += size(w);
+                if let (true, Some(parcel)) = (directed || !square, network.row_of_column(j)) {
+                    strength[parcel] += size(w);
                 }
             }
         }
+
         let (mut smallest, mut largest) = (f64::INFINITY, f64::NEG_INFINITY);
-        let mut values: Vec<f64> = observed(network).filter(|w| *w != 0.0).collect();
+        let (mut least_positive, mut whole, mut entries) = (f64::INFINITY, true, 0_usize);
+        let mut distinct = BTreeSet::new();
         for w in observed(network) {
+            entries += 1;
             smallest = smallest.min(w);
             largest = largest.max(w);
+            if w > 0.0 {
+                least_positive = least_positive.min(w);
+            }
+            if w != 0.0 {
+                whole &= w.fract() == 0.0;
+                if distinct.len() < MOST_DISTINCT {
+                    distinct.insert(w.to_bits());
+                }
+            }
         }
-        let whole = values.iter().all(|w| w.fract() == 0.0);
-        values.sort_by(f64::total_cmp);
-        values.dedup();
-        let least_positive = values.iter().copied().find(|w| *w > 0.0);
-        let parts = Parts::of(n, |i, j| is_link(i, j) || is_link(j, i));
+        let least_positive = Some(least_positive).filter(|w| w.is_finite());
+        let parts = Parts::of(n + elsewhere, links());
         RawFacts {
+            rectangular: (!square).then_some(rows_are),
+            columns,
+            columns_within: columns - elsewhere,
+            missing: network.missing(),
             connections,
-            density: connections as f64 / (n * n.saturating_sub(1)).max(1) as f64,
+            density: connections as f64 / entries.max(1) as f64,
             directed,
             filled,
             smallest,
@@ -129,12 +194,12 @@ impl RawFacts {
                 _ => least_positive.map(|least| (largest / least).log10()),
             },
             least_positive,
-            distinct: values.len(),
+            distinct: distinct.len(),
             whole,
             sums_to_one: sums_to_one(network, kind),
             parts: parts.sizes.len(),
-            outside: parts.outside().collect(),
-            part: parts.of,
+            outside: parts.outside().filter(|&i| i < n).collect(),
+            part: parts.of[..n].to_vec(),
             partners,
             strength,
         }
@@ -160,28 +225,42 @@ pub fn filled(network: &Connectivity) -> Filled {
 
 /// Lines without any weight say nothing; with the diagonal or without it, since both are in use.
 fn sums_to_one(network: &Connectivity, kind: WeightKind) -> SumsToOne {
-    let n = network.row_labels().len();
+    let (rows, columns) = network.weights().dim();
     let weights = network.weights();
     let weight = |i: usize, j: usize| match kind {
+        _ if network.is_missing(i, j) => 0.0,
         WeightKind::Log10 => 10.0_f64.powf(weights[(i, j)]),
         _ => weights[(i, j)],
     };
-    let all_one = |entry: &dyn Fn(usize, usize) -> f64, diagonal: bool| {
-        let sums: Vec<f64> = (0..n)
-            .map(|line| {
-                (0..n)
-                    .filter(|&at| diagonal || at != line)
-                    .map(|at| entry(line, at))
+    let by_row = |diagonal: bool| -> Vec<f64> {
+        (0..rows)
+            .map(|i| {
+                (0..columns)
+                    .filter(|&j| diagonal || !network.is_self(i, j))
+                    .map(|j| weight(i, j))
                     .sum()
             })
-            .filter(|sum| *sum != 0.0)
-            .collect();
-        !sums.is_empty() && sums.iter().all(|sum| (sum - 1.0).abs() <= SUM_TOLERANCE)
+            .collect()
     };
-    let either = |entry: &dyn Fn(usize, usize) -> f64| {
-        all_one(entry, false) || (kind != WeightKind::Log10 && all_one(entry, true))
+    let by_column = |diagonal: bool| -> Vec<f64> {
+        let mut sums = vec![0.0; columns];
+        for i in 0..rows {
+            for (j, sum) in sums.iter_mut().enumerate() {
+                if diagonal || !network.is_self(i, j) {
+                    *sum += weight(i, j);
+                }
+            }
+        }
+        sums
     };
-    match (either(&weight), either(&|i, j| weight(j, i))) {
+    let all_one = |sums: Vec<f64>| {
+        let mut sums = sums.into_iter().filter(|sum| *sum != 0.0).peekable();
+        sums.peek().is_some() && sums.all(|sum| (sum - 1.0).abs() <= SUM_TOLERANCE)
+    };
+    let either = |sums: &dyn Fn(bool) -> Vec<f64>| {
+        all_one(sums(false)) || (kind != WeightKind::Log10 && all_one(sums(true)))
+    };
+    match (either(&by_row), either(&by_column)) {
         (true, true) => SumsToOne::Both,
         (true, false) => SumsToOne::Rows,
         (false, true) => SumsToOne::Columns,
@@ -202,17 +281,27 @@ mod tests {
     #[test]
     fn shares_of_a_target_are_told_from_shares_of_a_source() {
         let rows = network(array![[0.0, 0.7, 0.3], [0.4, 0.0, 0.6], [0.0, 0.0, 0.0]]);
-        let facts = RawFacts::of(&rows, WeightKind::Fractions, filled(&rows));
+        let facts = RawFacts::of(
+            &rows,
+            RowsAre::Sources,
+            WeightKind::Fractions,
+            filled(&rows),
+        );
         assert_eq!(facts.sums_to_one, SumsToOne::Rows);
         let columns = network(rows.weights().t().to_owned());
-        let facts = RawFacts::of(&columns, WeightKind::Fractions, filled(&columns));
+        let facts = RawFacts::of(
+            &columns,
+            RowsAre::Sources,
+            WeightKind::Fractions,
+            filled(&columns),
+        );
         assert_eq!(facts.sums_to_one, SumsToOne::Columns);
     }
 
     #[test]
     fn a_triangle_and_a_span_are_seen() {
         let half = network(array![[9.0, 1.0, 0.0], [0.0, 0.0, 1000.0], [0.0, 0.0, 0.0]]);
-        let facts = RawFacts::of(&half, WeightKind::Counts, filled(&half));
+        let facts = RawFacts::of(&half, RowsAre::Sources, WeightKind::Counts, filled(&half));
         assert_eq!(facts.filled, Filled::Above);
         assert!(facts.directed && facts.whole);
         assert_eq!(facts.span, Some(3.0));
@@ -220,7 +309,7 @@ mod tests {
         assert_eq!(facts.partners, [1, 2, 1]);
         assert_eq!(facts.strength, [1.0, 1001.0, 1000.0]);
         let logs = network(array![[0.0, -1.0], [-3.0, 0.0]]);
-        let facts = RawFacts::of(&logs, WeightKind::Log10, filled(&logs));
+        let facts = RawFacts::of(&logs, RowsAre::Sources, WeightKind::Log10, filled(&logs));
         assert_eq!((facts.span, facts.density), (Some(2.0), 1.0));
     }
 }

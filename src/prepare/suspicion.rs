@@ -8,18 +8,25 @@ use crate::warning::Warning;
 /// Correlations may differ this much across the diagonal before it is worth a word.
 const ASYMMETRY: f64 = 1e-6;
 
-/// Adds what a careful user would want to know about a square matrix.
+/// Adds what a careful user would want to know about a matrix.
 pub fn look_over(network: &Connectivity, described: &SpeciesFile, warnings: &mut Vec<Warning>) {
     let species = || described.name.clone();
     let weights = network.weights();
-    let off_diagonal = || weights.indexed_iter().filter(|((i, j), _)| i != j);
+    let off_diagonal = || {
+        weights
+            .indexed_iter()
+            .filter(|((i, j), _)| network.is_data(*i, *j))
+    };
 
     // Correlations and logarithms of a parcel with itself are 1 and 0 by nature.
     let empty = |w: f64| match described.weights {
         WeightKind::Correlations => w == 0.0 || w == 1.0,
         _ => w == 0.0,
     };
-    let diagonal = weights.diag().iter().filter(|w| !empty(**w)).count();
+    let diagonal = (0..weights.ncols())
+        .filter_map(|j| Some(weights[(network.row_of_column(j)?, j)]))
+        .filter(|w| !empty(*w))
+        .count();
     if diagonal > 0 && described.weights != WeightKind::Log10 {
         warnings.push(Warning::DiagonalNotEmpty {
             species: species(),
@@ -29,6 +36,7 @@ pub fn look_over(network: &Connectivity, described: &SpeciesFile, warnings: &mut
     match described.weights {
         WeightKind::Correlations => {
             let largest = off_diagonal()
+                .filter(|((i, j), _)| network.is_square() && network.is_data(*j, *i))
                 .map(|((i, j), w)| (w - weights[(j, i)]).abs())
                 .fold(0.0, f64::max);
             if largest > ASYMMETRY {
@@ -42,11 +50,11 @@ pub fn look_over(network: &Connectivity, described: &SpeciesFile, warnings: &mut
                 .map(|(at, _)| at)
                 .collect();
             if let Some(&(i, j)) = beyond.first() {
-                let labels = network.row_labels();
+                let labels = (network.row_labels(), network.column_labels());
                 warnings.push(Warning::CorrelationsBeyondOne {
                     species: species(),
                     entries: beyond.len(),
-                    example: (labels[i].clone(), labels[j].clone()),
+                    example: (labels.0[i].clone(), labels.1[j].clone()),
                 });
             }
         }
@@ -70,23 +78,39 @@ pub fn look_over(network: &Connectivity, described: &SpeciesFile, warnings: &mut
         }
         WeightKind::Counts | WeightKind::Ordinal | WeightKind::Other => {}
     }
-    if described.weights != WeightKind::Log10 {
-        components(network, &species(), warnings);
-    }
 }
 
-/// Parts between which there is no connection; parcels without any are reported elsewhere.
-fn components(network: &Connectivity, species: &str, warnings: &mut Vec<Warning>) {
+/// Adds a warning where there are parts between which there is no connection; parcels without any are
+/// reported elsewhere.
+pub fn components(network: &Connectivity, described: &SpeciesFile, warnings: &mut Vec<Warning>) {
+    if described.weights == WeightKind::Log10 {
+        return;
+    }
     let labels = network.row_labels();
     let weights = network.weights();
-    let parts = Parts::of(labels.len(), |i, j| {
-        i != j && (weights[(i, j)] != 0.0 || weights[(j, i)] != 0.0)
-    });
+    let mut ends = labels.len();
+    let end_of_column: Vec<usize> = (0..weights.ncols())
+        .map(|j| {
+            network.row_of_column(j).unwrap_or_else(|| {
+                ends += 1;
+                ends - 1
+            })
+        })
+        .collect();
+    let links = weights
+        .indexed_iter()
+        .filter(|((i, j), w)| network.is_data(*i, *j) && **w != 0.0)
+        .map(|((i, j), _)| (i, end_of_column[j]));
+    let parts = Parts::of(ends, links);
     if parts.real() > 1 {
         warnings.push(Warning::Components {
-            species: species.to_owned(),
+            species: described.name.clone(),
             components: parts.real(),
-            outside: parts.outside().map(|i| labels[i].clone()).collect(),
+            outside: parts
+                .outside()
+                .filter(|&i| i < labels.len())
+                .map(|i| labels[i].clone())
+                .collect(),
         });
     }
 }

@@ -6,8 +6,8 @@ use serde::Serialize;
 
 use super::record::{json, Identity};
 use super::summary::short;
-use crate::domain::{Pair, Side, WeightKind};
-use crate::inspect::{Inspection, SpeciesFacts, TransformReason};
+use crate::domain::{DistanceSource, Pair, RowsAre, Side, WeightKind};
+use crate::inspect::{AttributeFacts, Inspection, SpeciesFacts, TransformReason};
 use crate::prepare::{Filled, Study, SumsToOne};
 use crate::transform::WIDE_SPAN;
 
@@ -15,6 +15,10 @@ use crate::transform::WIDE_SPAN;
 const LISTED: usize = 6;
 /// Communities shown.
 const SYSTEMS: usize = 8;
+/// What is shown of what nobody said.
+const UNKNOWN: &str = "not known";
+/// Rank correlations below this size are not worth a verb: common practice, no source.
+const SLIGHT: f64 = 0.1;
 /// Width of a line of text.
 const WIDTH: usize = 96;
 
@@ -95,6 +99,7 @@ fn matrices(text: &mut String, study: &Study, found: &Inspection) -> Result {
             }),
         ),
         ("parcels", of(&|_, s| s.parcels.to_string())),
+        ("  by", of(&|_, s| columns(s))),
         ("weights", of(&|_, s| s.weights.to_string())),
         ("  from - to", of(&|_, s| range(s))),
         ("  positive ones span", of(&|_, s| span(s))),
@@ -113,15 +118,24 @@ fn matrices(text: &mut String, study: &Study, found: &Inspection) -> Result {
                 n => format!("{}; {n} parcels outside", s.parts),
             }),
         ),
+        ("never observed", of(&|_, s| never_observed(s))),
         (
             "set aside, no links",
             of(&|_, s| s.set_aside.len().to_string()),
         ),
+        ("  not covered", of(&|_, s| s.not_covered.len().to_string())),
+        ("hemispheres", of(&|_, s| hemispheres(&s.attributes))),
+        ("also known", of(&|_, s| also_known(&s.attributes))),
+        ("distances", of(&|_, s| distances(s))),
+        ("  with strength", of(&|_, s| over_distance(s))),
         ("profiles compared by", of(&|_, s| affinity(s))),
         ("axes above chance", of(&|_, s| axes_worth(s))),
         ("  first five carry", of(&|_, s| first_five(s))),
     ];
     for (name, cells) in rows {
+        if cells.a == UNKNOWN && cells.b == UNKNOWN {
+            continue;
+        }
         writeln!(
             text,
             "{}",
@@ -145,7 +159,8 @@ fn matrices(text: &mut String, study: &Study, found: &Inspection) -> Result {
         wrapped(text, "", &format!("{name} hubs: {}", hubs.join(", ")))?;
         for (what, parcels) in [
             ("outside the largest part", &species.outside_largest_part),
-            ("set aside", &species.set_aside),
+            ("set aside, no links", &species.set_aside),
+            ("not covered by the data", &species.not_covered),
         ] {
             if !parcels.is_empty() {
                 wrapped(text, "", &format!("{name} {what}: {}", names(parcels)))?;
@@ -304,6 +319,12 @@ fn span(species: &SpeciesFacts) -> String {
 
 fn sums(species: &SpeciesFacts) -> &'static str {
     match species.sums_to_one {
+        SumsToOne::Rows if species.rectangular == Some(RowsAre::Targets) => {
+            "each target (shares of what it receives)"
+        }
+        SumsToOne::Columns if species.rectangular == Some(RowsAre::Targets) => {
+            "each source (shares of what it sends)"
+        }
         SumsToOne::Rows => "each row (shares of a source)",
         SumsToOne::Columns => "each column (shares of a target)",
         SumsToOne::Both => "each row and each column",
@@ -320,13 +341,106 @@ fn because(species: &SpeciesFacts) -> String {
     }
 }
 
+/// What the entries of a profile stand for.
+fn columns(species: &SpeciesFacts) -> String {
+    let Some(parcels_are) = species.rectangular else {
+        return "each other".to_owned();
+    };
+    let traced = species
+        .tracer
+        .map_or_else(String::new, |tracer| format!(", {tracer}"));
+    let others = parcels_are.opposite();
+    match species.columns - species.columns_within {
+        0 => format!("{} of them as {others}{traced}", species.columns),
+        n => format!("{} {others}{traced}, {n} elsewhere", species.columns),
+    }
+}
+
+fn never_observed(species: &SpeciesFacts) -> String {
+    let entries = species.parcels * species.columns;
+    match species.missing {
+        0 => "none".to_owned(),
+        n => format!(
+            "{n} entries ({:.1} %)",
+            100.0 * n as f64 / entries.max(1) as f64
+        ),
+    }
+}
+
 fn direction(species: &SpeciesFacts) -> &'static str {
+    match species.rectangular {
+        Some(RowsAre::Sources) => return "rectangular, parcels are sources",
+        Some(RowsAre::Targets) => return "rectangular, parcels are targets",
+        None => {}
+    }
     match (species.weights, species.directed, species.filled) {
         (WeightKind::Correlations, ..) => "none (mean of both halves)",
         (_, false, _) => "none (symmetric)",
         (_, true, Filled::BothHalves) => "directed, row to column",
         (_, true, Filled::Above) => "directed (upper half only)",
         (_, true, Filled::Below) => "directed (lower half only)",
+    }
+}
+
+fn hemispheres(known: &AttributeFacts) -> String {
+    let sides = [
+        ("left", known.left),
+        ("right", known.right),
+        ("midline", known.midline - known.folded.min(known.midline)),
+        ("folded", known.folded),
+        (UNKNOWN, known.side_unknown),
+    ];
+    let there = sides.iter().filter(|(_, n)| *n > 0);
+    if known.side_unknown > 0 && there.clone().count() == 1 {
+        return UNKNOWN.to_owned();
+    }
+    let said: Vec<String> = there.map(|(side, n)| format!("{n} {side}")).collect();
+    said.join(", ")
+}
+
+fn also_known(known: &AttributeFacts) -> String {
+    let said: Vec<String> = [
+        ("groups", known.groups.len()),
+        ("places", known.coordinates),
+        ("areas", known.areas),
+        ("volumes", known.volumes),
+        ("long names", known.long_names),
+    ]
+    .iter()
+    .filter(|(_, n)| *n > 0)
+    .map(|(what, n)| format!("{n} {what}"))
+    .collect();
+    if said.is_empty() {
+        UNKNOWN.to_owned()
+    } else {
+        said.join(", ")
+    }
+}
+
+fn distances(species: &SpeciesFacts) -> String {
+    species.distances.as_ref().map_or_else(
+        || UNKNOWN.to_owned(),
+        |d| {
+            let from = match d.from {
+                DistanceSource::File => "file",
+                DistanceSource::Coordinates => "straight lines",
+            };
+            format!("{} to {} ({from})", number(d.smallest), number(d.largest))
+        },
+    )
+}
+
+/// Whether connections weaken with distance.
+fn over_distance(species: &SpeciesFacts) -> String {
+    let rho = species
+        .distances
+        .as_ref()
+        .and_then(|d| d.strength_with_distance);
+    match rho {
+        None => UNKNOWN.to_owned(),
+        Some(rho) if rho <= -SLIGHT => format!("falls (Spearman {rho:.2})"),
+        Some(rho) if rho >= SLIGHT => format!("rises (Spearman {rho:.2})"),
+        Some(rho) => format!("hardly changes (Spearman {rho:.2})"),
     }
 }
 

@@ -55,8 +55,16 @@ pub struct Wall {
 struct SpeciesCounts<'s> {
     name: &'s str,
     parcels: usize,
+    #[serde(skip_serializing_if = "is_zero")]
+    folded: usize,
     set_aside: &'s [String],
+    not_covered: &'s [String],
     eigenvalues: Vec<f64>,
+}
+
+/// Nothing is said of folding where nothing was folded.
+fn is_zero(n: &usize) -> bool {
+    *n == 0
 }
 
 /// Everything in `run.json`.
@@ -91,7 +99,9 @@ impl<'s> Record<'s> {
                 SpeciesCounts {
                     name: species.parcels.species(),
                     parcels: species.parcels.len(),
+                    folded: species.parcels.folded(),
                     set_aside: species.parcels.isolated(),
+                    not_covered: species.parcels.uncovered(),
                     eigenvalues: species.embedding.eigenvalues.to_vec(),
                 }
             }),

@@ -3,7 +3,7 @@
 use std::fmt::{Result, Write};
 
 use crate::align::Alignment;
-use crate::domain::{Pair, Side};
+use crate::domain::{Hemispheres, Pair, Side};
 use crate::evidence::Kind;
 use crate::holdout::{Member, Placed};
 use crate::locate::{Counterpart, Located, Placement};
@@ -18,6 +18,8 @@ or dosing defer to histology, local protocols, ethics boards and licensed practi
 const LISTED: usize = 4;
 /// Longest label shown in full.
 const LABEL_WIDTH: usize = 24;
+/// Longest long name shown in full.
+const NAME_WIDTH: usize = 40;
 /// Support from which a first counterpart counts as stable.
 const STABLE: f64 = 0.5;
 
@@ -54,9 +56,14 @@ fn heading(text: &mut String, study: &Study) -> Result {
         format!(" in {blocks} blocks")
     };
     writeln!(text, "{}", study.title)?;
+    let sides = match study.settings.hemispheres {
+        Hemispheres::Ignore => "",
+        Hemispheres::Match => " Candidates on the same side only.",
+        Hemispheres::Fold => " Left and right copies folded.",
+    };
     writeln!(
         text,
-        "{}. {}. {landmarks} landmarks{in_blocks}.\n",
+        "{}. {}. {landmarks} landmarks{in_blocks}.{sides}\n",
         species.a, species.b
     )
 }
@@ -216,10 +223,15 @@ fn outsiders(text: &mut String, study: &Study, located: &Located) -> Result {
             .take(LISTED)
             .map(|(parcel, d)| format!("{} {d:.2}", short(&parcels.labels()[*parcel])))
             .collect();
-        let aside = match parcels.isolated().len() {
-            0 => String::new(),
-            n => format!("; set aside without connections: {n}"),
-        };
+        let mut aside = String::new();
+        for (why, set_aside) in [
+            ("set aside without connections", parcels.isolated()),
+            ("not covered by the data", parcels.uncovered()),
+        ] {
+            if !set_aside.is_empty() {
+                aside += &format!("; {why}: {}", set_aside.len());
+            }
+        }
         let species = short(parcels.species());
         writeln!(text, "  {species}: {}{aside}", named.join(", "))?;
     }
@@ -236,14 +248,32 @@ fn pair(text: &mut String, study: &Study, placement: &Placement, found: &Counter
         label(Side::B, found.parcel),
         found.support,
         found.distance
-    )
+    )?;
+    let named =
+        |side: Side, parcel: usize| study.species[side].attributes[parcel].long_name.as_deref();
+    match (
+        named(Side::A, placement.parcel),
+        named(Side::B, found.parcel),
+    ) {
+        (None, None) => Ok(()),
+        (one, other) => writeln!(
+            text,
+            "    ({} - {})",
+            cut(one.unwrap_or("no long name"), NAME_WIDTH),
+            cut(other.unwrap_or("no long name"), NAME_WIDTH)
+        ),
+    }
 }
 
 /// A label cut to what a terminal line can hold.
 pub(super) fn short(label: &str) -> String {
-    if label.chars().count() <= LABEL_WIDTH {
-        return label.to_owned();
+    cut(label, LABEL_WIDTH)
+}
+
+fn cut(words: &str, width: usize) -> String {
+    if words.chars().count() <= width {
+        return words.to_owned();
     }
-    let head: String = label.chars().take(LABEL_WIDTH - 1).collect();
+    let head: String = words.chars().take(width - 1).collect();
     format!("{head}…")
 }

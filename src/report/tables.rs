@@ -1,7 +1,7 @@
 //! The CSV tables of a run. Every column is described in docs/formats.md.
 
 use crate::align::Alignment;
-use crate::domain::{Landmarks, Pair, Side};
+use crate::domain::{Attributes, Extent, Landmarks, Pair, Side};
 use crate::evidence::Kind;
 use crate::locate::Located;
 use crate::prepare::Study;
@@ -48,6 +48,23 @@ pub fn tables(study: &Study, located: &Located) -> Vec<(&'static str, Vec<u8>)> 
     ]
 }
 
+/// Attributes of a parcel that stand in every table of parcels.
+const ATTRIBUTES: [&str; 3] = ["hemisphere", "group", "long_name"];
+
+/// The cells of [`ATTRIBUTES`]; empty where nothing is known.
+fn attributes(of: &Attributes) -> [String; 3] {
+    [
+        of.hemisphere.map_or_else(String::new, |h| h.to_string()),
+        of.group.clone().unwrap_or_default(),
+        of.long_name.clone().unwrap_or_default(),
+    ]
+}
+
+/// A number, or nothing.
+fn optional(number: Option<f64>) -> String {
+    number.map_or_else(String::new, |x| x.to_string())
+}
+
 fn positions(study: &Study, located: &Located) -> Vec<u8> {
     let mut header: Vec<String> = ["species", "parcel", "landmark", "beyond_landmarks"]
         .map(str::to_owned)
@@ -57,6 +74,8 @@ fn positions(study: &Study, located: &Located) -> Vec<u8> {
         header.extend((1..=axes).map(|k| format!("{alignment}_{k}")));
         header.extend((1..=axes).map(|k| format!("{alignment}_{k}_se_landmarks")));
     }
+    header.extend(ATTRIBUTES.map(str::to_owned));
+    header.extend(["x", "y", "z", "area", "volume"].map(str::to_owned));
     let mut table = Table::new(header);
     for side in Side::BOTH {
         let parcels = &study.species[side].parcels;
@@ -75,6 +94,11 @@ fn positions(study: &Study, located: &Located) -> Vec<u8> {
                     row.extend(values.row(parcel).iter().map(f64::to_string));
                 }
             }
+            let known = &study.species[side].attributes[parcel];
+            row.extend(attributes(known));
+            row.extend((0..3).map(|axis| optional(known.coordinates.map(|c| c[axis]))));
+            row.push(optional(known.extent.and_then(Extent::area)));
+            row.push(optional(known.extent.and_then(Extent::volume)));
             table.row(row);
         }
     }
@@ -82,7 +106,7 @@ fn positions(study: &Study, located: &Located) -> Vec<u8> {
 }
 
 fn counterparts(study: &Study, located: &Located) -> Vec<u8> {
-    let mut table = Table::new([
+    let mut header: Vec<String> = [
         "from",
         "parcel",
         "to",
@@ -95,29 +119,37 @@ fn counterparts(study: &Study, located: &Located) -> Vec<u8> {
         "mutual",
         "kinds_agreeing",
         "chance",
-    ]);
+    ]
+    .map(str::to_owned)
+    .into();
+    for whose in ["parcel", "counterpart"] {
+        header.extend(ATTRIBUTES.map(|attribute| format!("{whose}_{attribute}")));
+    }
+    let mut table = Table::new(header);
     for side in Side::BOTH {
-        let (own, other) = (
-            &study.species[side].parcels,
-            &study.species[side.opposite()].parcels,
-        );
+        let species = [&study.species[side], &study.species[side.opposite()]];
+        let [own, other] = species.map(|s| &s.parcels);
         for placement in &located.placements[side] {
             for found in &placement.counterparts {
                 let kinds: Vec<String> = found.kinds_agreeing.iter().map(Kind::to_string).collect();
-                table.row([
-                    own.species(),
-                    &own.labels()[placement.parcel],
-                    other.species(),
-                    &other.labels()[found.parcel],
-                    &found.rank.to_string(),
-                    &found.rank_interval.0.to_string(),
-                    &found.rank_interval.1.to_string(),
-                    &found.distance.to_string(),
-                    &found.support.to_string(),
-                    &found.mutual.to_string(),
-                    &kinds.join(PARCEL_SEPARATOR),
-                    &found.chance.map_or_else(String::new, |x| x.to_string()),
-                ]);
+                let mut row = vec![
+                    own.species().to_owned(),
+                    own.labels()[placement.parcel].clone(),
+                    other.species().to_owned(),
+                    other.labels()[found.parcel].clone(),
+                    found.rank.to_string(),
+                    found.rank_interval.0.to_string(),
+                    found.rank_interval.1.to_string(),
+                    found.distance.to_string(),
+                    found.support.to_string(),
+                    found.mutual.to_string(),
+                    kinds.join(PARCEL_SEPARATOR),
+                    found.chance.map_or_else(String::new, |x| x.to_string()),
+                ];
+                for (species, parcel) in species.into_iter().zip([placement.parcel, found.parcel]) {
+                    row.extend(attributes(&species.attributes[parcel]));
+                }
+                table.row(row);
             }
         }
     }

@@ -6,7 +6,7 @@ use thiserror::Error;
 
 use super::{Axes, Conduct, EvidenceChoice, Settings, Top};
 use crate::bootstrap::Resampling;
-use crate::domain::{Choice, Seed};
+use crate::domain::{Choice, Hemispheres, Seed};
 use crate::embed;
 use crate::transport::Mass;
 
@@ -109,6 +109,8 @@ request! {
     ridge: f64 = "ridge", |key, text| number(key, text, 0.0..=1e6, "a number of 0 or more");
     /// How landmark blocks are drawn.
     resampling: Resampling = "resampling", choice;
+    /// What hemispheres mean; match and fold need to know them.
+    hemispheres: Hemispheres = "hemispheres", choice;
     /// Counterparts listed for each parcel, or "all".
     top: Top = "top", |key, text| match text {
         "all" => Ok(Top::All),
@@ -169,7 +171,7 @@ impl Request {
                 .min(replicates),
             seed: Seed(self.seed.unwrap_or(SEED)),
             axes: self.axes.unwrap_or(Axes::Auto),
-            embedding: self.embedding.unwrap_or(embed::Method::Diffusion),
+            embedding: self.embedding.unwrap_or(embed::Method::OF_SQUARE),
             density_exponent: self.density_exponent.unwrap_or(DENSITY_EXPONENT),
             diffusion_time: self.diffusion_time.unwrap_or(DIFFUSION_TIME),
             evidence: self.evidence.unwrap_or(EvidenceChoice::Mixture),
@@ -177,6 +179,7 @@ impl Request {
             transport_replicates: self.transport_replicates.unwrap_or(TRANSPORT_REPLICATES),
             ridge: self.ridge.unwrap_or(RIDGE),
             resampling: self.resampling.unwrap_or(Resampling::Bayesian),
+            hemispheres: self.hemispheres.unwrap_or(Hemispheres::Ignore),
             top: self.top.unwrap_or(Top::Number(TOP)),
         };
         let conduct = Conduct {
@@ -265,6 +268,7 @@ mod tests {
             ("transport-replicates", "23"),
             ("ridge", "NaN"),
             ("evidence", "guess"),
+            ("hemispheres", "mirror"),
             ("top", "0"),
             ("quiet", "yes"),
         ] {

@@ -84,7 +84,14 @@ impl Study {
     pub fn demo() -> Study {
         let demo = Path::new(env!("CARGO_MANIFEST_DIR")).join("species-demo");
         let study = Study::new();
-        for name in ["study.toml", "a.csv", "b.csv", "landmarks.csv"] {
+        for name in [
+            "study.toml",
+            "a.csv",
+            "b.csv",
+            "landmarks.csv",
+            "a_parcels.csv",
+            "b_parcels.csv",
+        ] {
             study.write(name, read(&demo.join(name)));
         }
         study

@@ -76,12 +76,34 @@ landmarks = "landmarks.csv"
 name = "Loamick"
 matrix = "a.csv"
 weights = "counts"
+parcels = "a_parcels.csv"
 
 [species.b]
 name = "Pellivane"
 matrix = "b.csv"
 weights = "fractions"
+parcels = "b_parcels.csv"
 "#;
+
+/// What the systems are called in the tables of parcels.
+const SYSTEM_NAMES: [&str; SYSTEMS] = [
+    "sight",
+    "hearing",
+    "touch",
+    "movement",
+    "smell and taste",
+    "memory",
+    "body state",
+];
+/// Added to the seed for the draws of the tables of parcels, which came later and must not change the
+/// others.
+const ATTRIBUTE_SEED: u64 = 1 << 32;
+/// How far the middle of the left hemisphere lies from the midline, in units of the space.
+const LATERAL: f64 = 5.0;
+/// Spread of the log area of a parcel.
+const AREA_SPREAD: f64 = 0.35;
+/// Millimetres to a unit of the space and square millimetres of a middling region, in each species.
+const SIZES: [(f64, f64); 2] = [(3.0, 18.0), (7.5, 110.0)];
 
 /// A landmark of the table before its parcels are drawn, its cells as they are printed.
 struct Proposal {
@@ -244,6 +266,16 @@ pub fn files(seed: u64) -> Vec<(&'static str, String)> {
 
     let raw_a = with_lone_parcels(&expected_weights(&parcels_a, Map::Coarse, rng), rng);
     let raw_b = with_lone_parcels(&expected_weights(&parcels_b, Map::Fine, rng), rng);
+    let attributes = &mut Draws::seed_from_u64(seed.wrapping_add(ATTRIBUTE_SEED));
+    let of_region: Vec<Vec<usize>> = (0..REGIONS).map(|region| vec![region]).collect();
+    let described_a = described(&regions, &of_region, &parcels_a, SIZES[0], attributes);
+    let mut next = 0..parcels_b.len();
+    let halves: Vec<Vec<usize>> = labels
+        .heirs
+        .iter()
+        .map(|heirs| next.by_ref().take(heirs.len()).collect())
+        .collect();
+    let described_b = described(&regions, &halves, &parcels_b, SIZES[1], attributes);
     let counts = counted(&strongest(raw_a, DENSITY_A), rng);
     let fractions = shared_out(strongest(raw_b, DENSITY_B));
 
@@ -257,6 +289,14 @@ pub fn files(seed: u64) -> Vec<(&'static str, String)> {
             matrix(&fractions, &labels.b, &order_b, fraction_cell),
         ),
         ("landmarks.csv", landmark_table(&parts, &labels)),
+        (
+            "a_parcels.csv",
+            parcel_table(&described_a, &labels.a, &order_a),
+        ),
+        (
+            "b_parcels.csv",
+            parcel_table(&described_b, &labels.b, &order_b),
+        ),
         ("truth.csv", truth_table(&labels, &order_a)),
         ("displaced.csv", displaced_table(&parts, &labels)),
         (
@@ -550,6 +590,59 @@ fn matrix(
     rows.extend(order.iter().map(|&row| {
         let cells = order.iter().map(|&column| cell(weights[row][column]));
         std::iter::once(labels[row].clone()).chain(cells).collect()
+    }));
+    table(&rows)
+}
+
+/// What a table of parcels says of one.
+struct Described {
+    coordinates: [f64; 3],
+    area: f64,
+    system: usize,
+}
+
+/// Places the parcels in the left hemisphere by three of the axes of the space, and gives them sizes;
+/// lone parcels get any place and any system.
+fn described(
+    regions: &[Region],
+    members: &[Vec<usize>],
+    parcels: &[Parcel],
+    (unit, middling): (f64, f64),
+    rng: &mut Draws,
+) -> Vec<Described> {
+    let mut all = Vec::new();
+    let mut describe = |place: &Place, system: usize, share: f64| {
+        let lateral = (LATERAL + place[0]).max(0.2);
+        all.push(Described {
+            coordinates: [-lateral * unit, place[1] * unit, place[2] * unit],
+            area: share * middling * (AREA_SPREAD * normal(rng)).exp(),
+            system,
+        });
+    };
+    for (region, members) in regions.iter().zip(members) {
+        for &parcel in members {
+            let share = 1.0 / members.len() as f64;
+            describe(&parcels[parcel].place, region.system, share);
+        }
+    }
+    for lone in 0..LONE {
+        let model = &regions[REGIONS * (2 * lone + 1) / (2 * LONE)];
+        describe(&model.place.map(|x| -x), model.system, 1.0);
+    }
+    all
+}
+
+/// A table of parcels, in the order of the matrix.
+fn parcel_table(described: &[Described], labels: &[String], order: &[usize]) -> String {
+    let mut rows = vec![row(["label", "hemisphere", "x", "y", "z", "area", "group"])];
+    rows.extend(order.iter().map(|&parcel| {
+        let of = &described[parcel];
+        // A zero has no sign.
+        let [x, y, z] = of
+            .coordinates
+            .map(|c| format!("{:.1}", (10.0 * c).round() / 10.0 + 0.0));
+        let (area, group) = (format!("{:.1}", of.area), SYSTEM_NAMES[of.system]);
+        row([&labels[parcel], "left", &x, &y, &z, &area, group])
     }));
     table(&rows)
 }

@@ -1,6 +1,8 @@
 //! Which array of a file is the matrix, and which holds its labels.
 
 use super::{Fault, Wanted};
+use crate::input::error::Place;
+use crate::input::grid::Label;
 use crate::input::nearest::nearest_few;
 
 /// An array as its header describes it.
@@ -74,37 +76,77 @@ pub fn matrix(arrays: &[Listed], wanted: &Wanted<'_>) -> Result<usize, Fault> {
     }
 }
 
-/// The array that holds the labels: the one named, else the only one of the right length, if any.
+/// Labels of rows and of columns, where a file holds them.
+pub type Found = (Option<Vec<Label>>, Option<Vec<Label>>);
+
+/// Labels of the rows and of the columns, as far as the file holds them: the array named, else the
+/// only one of the right length. `read` gives the texts of an array.
 ///
 /// # Errors
-/// [`Fault`] where the one named does not fit, or several fit.
-pub fn labels(arrays: &[Listed], wanted: &Wanted<'_>, rows: usize) -> Result<Option<usize>, Fault> {
-    if let Some(name) = wanted.label_variable {
-        let at = named(arrays, "label-variable", name)?;
-        return match &arrays[at].content {
-            Content::Labels(found) if *found == rows as u64 => Ok(Some(at)),
-            Content::Labels(found) => Err(Fault::LabelArrayCount {
-                name: name.to_owned(),
-                found: usize::try_from(*found).unwrap_or(usize::MAX),
-                rows,
-            }),
-            other => Err(Fault::WrongArray {
+/// [`Fault`] where the one named does not fit, several fit, or the texts cannot be read.
+pub fn labels(
+    arrays: &[Listed],
+    wanted: &Wanted<'_>,
+    (rows, columns): (usize, usize),
+    place: &Place,
+    mut read: impl FnMut(usize) -> Result<Vec<String>, Fault>,
+) -> Result<Found, Fault> {
+    let named = match wanted.label_variable {
+        None => None,
+        Some(name) => Some(labels_named(arrays, name, (rows, columns))?),
+    };
+    let fits = |length: usize| -> Result<Option<usize>, Fault> {
+        let wanted_length = Content::Labels(length as u64);
+        if named.is_some_and(|at| arrays[at].content == wanted_length) {
+            return Ok(named);
+        }
+        let fitting = all(arrays, |c| *c == wanted_length);
+        match fitting[..] {
+            [] => Ok(None),
+            [at] => Ok(Some(at)),
+            _ if wanted.labels.is_some() => Ok(None),
+            _ => Err(Fault::SeveralArrays {
+                what: "lists of labels that fit",
                 key: "label-variable",
-                name: name.to_owned(),
-                found: other.describe(),
-                expected: "a list of texts",
+                names: fitting.iter().map(|&i| arrays[i].name.clone()).collect(),
             }),
+        }
+    };
+    let mut take = |length: usize| -> Result<Option<Vec<Label>>, Fault> {
+        let Some(at) = fits(length)? else {
+            return Ok(None);
         };
-    }
-    let fitting = all(arrays, |c| *c == Content::Labels(rows as u64));
-    match fitting[..] {
-        [] => Ok(None),
-        [at] => Ok(Some(at)),
-        _ if wanted.labels.is_some() => Ok(None),
-        _ => Err(Fault::SeveralArrays {
-            what: "lists of labels that fit",
+        Ok(Some(Label::of_array(read(at)?, place, &arrays[at].name)))
+    };
+    let of_rows = take(rows)?;
+    // Of a square matrix rows and columns are the same parcels.
+    let of_columns = if rows == columns {
+        None
+    } else {
+        take(columns)?
+    };
+    Ok((of_rows, of_columns))
+}
+
+/// The array of labels that is named, if it fits rows or columns.
+fn labels_named(
+    arrays: &[Listed],
+    name: &str,
+    (rows, columns): (usize, usize),
+) -> Result<usize, Fault> {
+    let at = named(arrays, "label-variable", name)?;
+    match &arrays[at].content {
+        Content::Labels(found) if [rows as u64, columns as u64].contains(found) => Ok(at),
+        Content::Labels(found) => Err(Fault::LabelArrayCount {
+            name: name.to_owned(),
+            found: usize::try_from(*found).unwrap_or(usize::MAX),
+            rows,
+        }),
+        other => Err(Fault::WrongArray {
             key: "label-variable",
-            names: fitting.iter().map(|&i| arrays[i].name.clone()).collect(),
+            name: name.to_owned(),
+            found: other.describe(),
+            expected: "a list of texts",
         }),
     }
 }

@@ -17,7 +17,7 @@ pub enum Fault {
         rows: usize,
     },
     /// Rows and columns differ in number, and nothing says which is too much.
-    #[error("expected a square matrix, found {rows} rows and {columns} columns of numbers; every parcel needs a row and a column")]
+    #[error("found {rows} rows and {columns} columns of numbers, and labels for one of the two only; in a square matrix every parcel needs a row and a column. If the table is rectangular, add rows = \"sources\" or rows = \"targets\" to the species in the study file, and column-labels = \"FILE\" if columns are parcels too")]
     NotSquare {
         /// Rows of numbers.
         rows: usize,
@@ -25,12 +25,14 @@ pub enum Fault {
         columns: usize,
     },
     /// Another number of labels than rows.
-    #[error("found {found} labels for the {rows} rows of {}; give one label a line, without a header, in the order of the rows", .matrix.display())]
+    #[error("found {found} labels for the {lines} {axis} of {}; give one label a line, without a header, in the order of the {axis}", .matrix.display())]
     LabelCount {
         /// Labels found.
         found: usize,
-        /// Rows of the matrix.
-        rows: usize,
+        /// Rows or columns of the matrix.
+        lines: usize,
+        /// Which of the two.
+        axis: &'static str,
         /// The matrix.
         matrix: PathBuf,
     },
@@ -44,6 +46,9 @@ pub enum Fault {
         /// The matrix.
         matrix: PathBuf,
     },
+    /// Rows are stated to be targets where each line names its own.
+    #[error("a list of connections says itself which area is the source and which the target; remove rows = \"targets\", or exchange the names of the two columns in its header")]
+    ListKnowsDirection,
     /// Two keys that say where labels are.
     #[error("both labels and label-variable are given; keep the one that holds the labels")]
     TwoLabelKeys,

@@ -10,7 +10,7 @@ use super::mat_array::{Array, Stream};
 use super::numbers::{self, Order};
 use super::{Fault, Inflated, Wanted};
 use crate::input::error::Place;
-use crate::input::grid::{Grid, Label, Origin};
+use crate::input::grid::{Grid, Origin};
 
 /// Bytes of the file's header.
 const HEADER: usize = 128;
@@ -49,21 +49,18 @@ pub fn read(bytes: &[u8], place: &Place, wanted: &Wanted<'_>) -> Result<Grid, Fa
         numbers::matrix(&mut from, coding, shape, Order::Columns)
             .map_err(|e| Fault::Damaged(e.to_string()))?
     };
-    let row_labels = match choose::labels(&listed, wanted, values.nrows())? {
-        None => None,
-        Some(labels) => {
+    let (row_labels, column_labels) =
+        choose::labels(&listed, wanted, values.dim(), place, |labels| {
             let mut from = variables[labels].open();
-            let texts = match Array::read(&mut from)? {
-                Some(array) => array.texts(&mut from)?,
-                None => Vec::new(),
-            };
-            Some(Label::of_array(texts, place, &listed[labels].name))
-        }
-    };
+            match Array::read(&mut from)? {
+                Some(array) => array.texts(&mut from),
+                None => Ok(Vec::new()),
+            }
+        })?;
     Ok(Grid {
         file: place.file.clone(),
         row_labels,
-        column_labels: None,
+        column_labels,
         values,
         origin: Origin::Array(place.clone().array(&listed[matrix].name)),
     })

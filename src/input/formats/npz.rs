@@ -9,7 +9,7 @@ use super::choose::{self, Listed};
 use super::npy::Header;
 use super::{Fault, Inflated, Wanted};
 use crate::input::error::Place;
-use crate::input::grid::{Grid, Label, Origin};
+use crate::input::grid::{Grid, Origin};
 
 type Archive<'b> = ZipArchive<Cursor<&'b [u8]>>;
 
@@ -25,18 +25,15 @@ pub fn read(bytes: &[u8], place: &Place, wanted: &Wanted<'_>) -> Result<Grid, Fa
         let mut array = open(&mut archive, entries[matrix])?;
         array.header.matrix(&mut array.from, array.there)?
     };
-    let row_labels = match choose::labels(&listed, wanted, values.nrows())? {
-        None => None,
-        Some(labels) => {
+    let (row_labels, column_labels) =
+        choose::labels(&listed, wanted, values.dim(), place, |labels| {
             let mut array = open(&mut archive, entries[labels])?;
-            let texts = array.header.texts(&mut array.from, array.there)?;
-            Some(Label::of_array(texts, place, &listed[labels].name))
-        }
-    };
+            array.header.texts(&mut array.from, array.there)
+        })?;
     Ok(Grid {
         file: place.file.clone(),
         row_labels,
-        column_labels: None,
+        column_labels,
         values,
         origin: Origin::Array(place.clone().array(&listed[matrix].name)),
     })

@@ -134,6 +134,9 @@ impl Layout {
             let both_are_ids = are_ids(above.iter().copied()) && are_ids(before.iter().copied());
             return if same && both_are_ids && given != Some(width) {
                 Layout::BOTH
+            } else if given == Some(height) {
+                // A label for every row: none of them is a header.
+                Layout::NEITHER
             } else if height == width + 1 && header_is_ids {
                 Layout::HEADER
             } else if width == height + 1 && column_is_ids {
