@@ -23,7 +23,7 @@ use thiserror::Error;
 use crate::bootstrap::Stream;
 use crate::domain::{Landmarks, Pair};
 use crate::species::Species;
-use crate::transport::Structures;
+use crate::transport::{Structure, Structures};
 
 /// What every kind of evidence may use.
 #[derive(Debug, Clone)]
@@ -38,7 +38,16 @@ pub struct Material<'m> {
     /// Links and affinities, made when a kind first asks for them.
     links: OnceLock<Pair<Links>>,
     /// What transport compares, under each expression.
-    structures: [OnceLock<Structures>; Expression::ALL.len()],
+    compared: [OnceLock<Compared>; Expression::ALL.len()],
+}
+
+/// Both networks under one expression.
+#[derive(Debug, Clone)]
+pub struct Compared {
+    /// Links of each species.
+    pub links: Pair<Structure>,
+    /// The same, ready for transport.
+    pub structures: Structures,
 }
 
 impl<'m> Material<'m> {
@@ -63,7 +72,7 @@ impl<'m> Material<'m> {
             landmarks,
             anchors,
             links: OnceLock::new(),
-            structures: std::array::from_fn(|_| OnceLock::new()),
+            compared: std::array::from_fn(|_| OnceLock::new()),
         }
     }
 
@@ -77,14 +86,17 @@ impl<'m> Material<'m> {
     /// What transport compares under an expression. Where one network is not square both are compared
     /// by their affinities.
     #[must_use]
-    pub fn structures(&self, expression: Expression) -> &Structures {
-        self.structures[expression as usize].get_or_init(|| {
+    pub fn compared(&self, expression: Expression) -> &Compared {
+        self.compared[expression as usize].get_or_init(|| {
             let links = self.links();
             let by_affinity = !(links.a.is_square && links.b.is_square);
-            let structure = links
+            let links = links
                 .as_ref()
                 .map(|links| links.structure(expression, by_affinity));
-            Structures::new(&structure.a, &structure.b)
+            Compared {
+                structures: Structures::new(&links.a, &links.b),
+                links,
+            }
         })
     }
 

@@ -3,7 +3,7 @@
 
 use ndarray::{concatenate, Array1, Array2, ArrayView1, Axis};
 
-use super::{Evidence, Fitted, Kind, Links, Material, Unavailable};
+use super::{Evidence, Expression, Fitted, Kind, Links, Material, Unavailable};
 use crate::bootstrap::Stream;
 use crate::domain::{Pair, Side};
 
@@ -41,7 +41,11 @@ impl Evidence for Fingerprint {
 /// What connections with the landmarks are measured by.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub(super) enum Basis {
+    /// Strengths as they are.
     Strengths,
+    /// The links that transport compares under an expression.
+    Expressed(Expression),
+    /// Affinities.
     Affinity,
 }
 
@@ -90,7 +94,21 @@ fn varies(column: ArrayView1<'_, f64>) -> bool {
 /// parcels that have them; zero, which is the mean, where not observed.
 fn features(material: &Material<'_>, side: Side, kept: &[usize], basis: Basis) -> Array2<f64> {
     let links: &Links = &material.links()[side];
-    let n = links.strengths.nrows();
+    let (values, directed) = match basis {
+        Basis::Strengths => (&links.strengths, true),
+        Basis::Expressed(expression) => (material.compared(expression).links[side].links(), true),
+        // Affinities have no direction.
+        Basis::Affinity => (&links.affinity, false),
+    };
+    let is_seen = |i: usize, j: usize| match basis {
+        Basis::Strengths => links
+            .observed
+            .as_ref()
+            .is_none_or(|mask| mask[(i, j)] > 0.0),
+        Basis::Expressed(expression) => material.compared(expression).links[side].is_observed(i, j),
+        Basis::Affinity => true,
+    };
+    let n = values.nrows();
     let landmarks = material.landmarks.list();
     let one = |sent: bool| {
         let mut features = Array2::zeros((n, kept.len()));
@@ -105,15 +123,8 @@ fn features(material: &Material<'_>, side: Side, kept: &[usize], basis: Basis) -
                     } else {
                         (member, parcel)
                     };
-                    let seen = match (basis, &links.observed) {
-                        (Basis::Strengths, Some(mask)) => mask[(i, j)] > 0.0,
-                        _ => true,
-                    };
-                    if seen {
-                        sum += match basis {
-                            Basis::Strengths => links.strengths[(i, j)],
-                            Basis::Affinity => links.affinity[(i, j)],
-                        };
+                    if is_seen(i, j) {
+                        sum += values[(i, j)];
                         count += 1.0;
                     }
                 }
@@ -126,13 +137,10 @@ fn features(material: &Material<'_>, side: Side, kept: &[usize], basis: Basis) -
         features
     };
     let sent = one(true);
-    match basis {
-        // Affinities have no direction.
-        Basis::Affinity => sent,
-        Basis::Strengths => {
-            concatenate(Axis(1), &[sent.view(), one(false).view()]).expect("as many parcels each")
-        }
+    if !directed {
+        return sent;
     }
+    concatenate(Axis(1), &[sent.view(), one(false).view()]).expect("as many parcels each")
 }
 
 /// Mean 0 and variance 1 over the numbers there are; 0 for the others, and for all where none vary.

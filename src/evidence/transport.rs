@@ -93,7 +93,7 @@ impl Evidence for Transport {
             }
             (Mass::Uniform | Mass::Free, ..) => Masses::uniform(sizes.a, sizes.b),
         };
-        let cost = cost(material, weights);
+        let cost = cost(material, weights, self.expression);
         let mut pulled = cost.clone();
         let pull = -PULL * cost.fold(0.0, |m: f64, x| m.max(*x));
         for (landmark, &weight) in material.landmarks.list().iter().zip(weights) {
@@ -106,7 +106,7 @@ impl Evidence for Transport {
             }
         }
         let fused = chance.gen_range(FUSED);
-        let structures = material.structures(self.expression);
+        let structures = &material.compared(self.expression).structures;
         let plan = |marginals: &Marginals| {
             let problem = Fused {
                 structures,
@@ -156,12 +156,11 @@ fn of_columns(mut plan: Array2<f64>) -> Array2<f64> {
     plan
 }
 
-/// Unlikeness of fingerprints on strengths, where there are any, else on affinities; of mean 1. The
-/// same for all pairs where no connection with a landmark varies.
-fn cost(material: &Material<'_>, weights: &[f64]) -> Array2<f64> {
+/// Unlikeness of fingerprints on the links that are compared; of mean 1. The same for all pairs where
+/// no connection with a landmark varies.
+fn cost(material: &Material<'_>, weights: &[f64], expression: Expression) -> Array2<f64> {
     let sizes = material.sizes();
-    let part = fingerprints(material, weights, Basis::Strengths)
-        .or_else(|| fingerprints(material, weights, Basis::Affinity));
+    let part = fingerprints(material, weights, Basis::Expressed(expression));
     let mut cost = match part {
         Some(part) => {
             let every = |size: usize| (0..size).collect::<Vec<_>>();

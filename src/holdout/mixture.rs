@@ -14,7 +14,7 @@ use crate::evidence::{Fitted, Kind, Material};
 use crate::place::{self, Candidates};
 
 /// How fast weight falls with left-out error, with very many landmarks.
-const SHARPNESS: f64 = 8.0;
+const SHARPNESS: f64 = 12.0;
 /// Number of blocks with which the fall is half as fast: few landmarks judge roughly, so weights are
 /// shrunk towards the odds that the kinds have without them.
 const HALF_SHARP: f64 = 6.0;
@@ -37,7 +37,7 @@ pub struct Member {
 /// Weights of kinds from the errors of each block under each kind:
 ///
 /// ```text
-/// weight = odds exp(-s (error - least error)) / sum,   s = 8 B / (B + 6),   B blocks
+/// weight = odds exp(-s (error - least error)) / sum,   s = 12 B / (B + 6),   B blocks
 /// ```
 #[must_use]
 pub fn weigh(kinds: &[Kind], errors: &[Vec<f64>]) -> Vec<f64> {
@@ -245,8 +245,8 @@ mod tests {
             assert!(weights[0] < weights[1] && weights[1] < weights[2]);
         }
         assert!(many[0] < few[0]);
-        // Odds times exp(-8 * 6 / 12 * 0.6) = exp(-2.4), over 1 + 8 + that.
-        let expected = (-2.4_f64).exp() / (9.0 + (-2.4_f64).exp());
+        // Odds times exp(-12 * 6 / 12 * 0.6) = exp(-3.6), over 1 + 8 + that.
+        let expected = (-3.6_f64).exp() / (9.0 + (-3.6_f64).exp());
         assert!((few[0] - expected).abs() < 1e-12);
     }
 }

@@ -34,6 +34,20 @@ impl Structure {
         Structure { links, observed }
     }
 
+    /// Links `(parcels, parcels)`, zero where not observed.
+    #[must_use]
+    pub fn links(&self) -> &Array2<f64> {
+        &self.links
+    }
+
+    /// Whether a link was observed.
+    #[must_use]
+    pub fn is_observed(&self, source: usize, target: usize) -> bool {
+        self.observed
+            .as_ref()
+            .is_none_or(|mask| mask[(source, target)] > 0.0)
+    }
+
     /// Number of parcels.
     #[must_use]
     pub fn len(&self) -> usize {

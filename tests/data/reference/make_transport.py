@@ -1,11 +1,12 @@
-"""Reference values for transport: linear, fused Gromov-Wasserstein, semi-relaxed.
+"""Reference values for transport (linear, fused Gromov-Wasserstein, semi-relaxed)
+and for landmark fingerprints.
 
 Regenerate with
 
     python3 tests/data/reference/make_transport.py
 
-which overwrites transport.json beside this file.  Needs numpy, scipy and POT
-(Python Optimal Transport); versions are stored under "versions".  Seeds are
+which overwrites transport.json beside this file.  Needs numpy, scipy,
+scikit-learn and POT (Python Optimal Transport); versions are stored under "versions".  Seeds are
 fixed.  Costs are drawn from continuous distributions, so optima are unique.
 
 Plans of fused transport are local minima.  POT starts from the plan of
@@ -21,7 +22,10 @@ from pathlib import Path
 import numpy as np
 import ot
 import scipy
+import sklearn
 from scipy.optimize import linprog
+from scipy.stats import zscore
+from sklearn.metrics.pairwise import cosine_similarity
 
 
 def network(rng, n, symmetric):
@@ -86,12 +90,49 @@ def semirelaxed(rng, n, m, symmetric, alpha):
     }
 
 
+def affinity(links):
+    """Cosines of profiles sent and received, one on the diagonal."""
+    profiles = np.hstack([links, links.T])
+    cosines = cosine_similarity(profiles)
+    np.fill_diagonal(cosines, 1)
+    return np.maximum(cosines, 0)
+
+
+def fingerprint(rng, n, m):
+    """Unlikeness by strengths and by affinities, summed; the last landmark is left out."""
+    links = {"a": network(rng, n, False), "b": network(rng, m, False)}
+    landmarks = {"a": [0, 3, 4, 7], "b": [2, 1, 6, 5]}
+    weights = np.array([1.0, 0.5, 0.8, 0.0])
+    kept = weights > 0
+    roots = np.sqrt(weights[kept] * kept.sum() / weights[kept].sum())
+    total = np.zeros((n, m))
+    for basis in ["strengths", "affinity"]:
+        prints = {}
+        for side in "ab":
+            at = np.array(landmarks[side])[kept]
+            if basis == "strengths":
+                columns = np.hstack([links[side][:, at], links[side][at].T])
+                factors = np.tile(roots, 2)
+            else:
+                columns, factors = affinity(links[side])[:, at], roots
+            prints[side] = zscore(columns, axis=0) * factors
+        total += 1 - cosine_similarity(prints["a"], prints["b"])
+    return {
+        "inputs": {
+            "a": links["a"].tolist(), "b": links["b"].tolist(),
+            "landmarks": landmarks, "weights": weights.tolist(),
+        },
+        "expected": {"unlikeness": total.tolist()},
+    }
+
+
 def main():
     rng = np.random.default_rng(20)
     out = {
         "versions": {
             "python": platform.python_version(), "numpy": np.__version__,
-            "scipy": scipy.__version__, "POT": ot.__version__,
+            "scipy": scipy.__version__, "scikit-learn": sklearn.__version__,
+            "POT": ot.__version__,
         },
         "linear": [
             linear(rng, n, m, uniform)
@@ -108,6 +149,7 @@ def main():
             semirelaxed(rng, n, m, symmetric, 0.4)
             for n, m in [(7, 10), (10, 7)] for symmetric in [True, False]
         ],
+        "fingerprint": [fingerprint(rng, n, m) for n, m in [(9, 11), (12, 8)]],
     }
     here = Path(__file__).parent / "transport.json"
     here.write_text(json.dumps(out, indent=0) + "\n")
