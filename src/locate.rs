@@ -21,7 +21,7 @@ use crate::align::{Alignment, Params, PerAlignment};
 use crate::bootstrap::{interval, Purpose, Stream};
 use crate::domain::Pair;
 use crate::evidence::{Evidence, Expression, Grown, Kind, Material, Transport, Unavailable};
-use crate::holdout::{self, Asked, Choice, Curve, Member, OutOfBag, Trials, Way};
+use crate::holdout::{self, Asked, Choice, Curve, Member, OutOfBag, Questions, Trials, Way};
 use crate::place;
 use crate::prepare::Study;
 use crate::settings::EvidenceChoice;
@@ -129,18 +129,16 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
     }
     let candidates = &study.candidates;
     let asked = Asked::draw(&study.landmarks, candidates, settings.seed);
-    let mut trials = holdout::run(
-        &material,
-        &ways,
-        &open,
+    let questions = Questions {
+        open: &open,
         candidates,
-        &asked,
-        settings.seed,
-        watch,
-    )?;
-    let bagged = match transport(study, &material, &open, &asked, watch)? {
+        asked: &asked,
+        seed: settings.seed,
+    };
+    let mut trials = holdout::run(&material, &ways, &questions, watch)?;
+    let bagged = match transport(study, &material, &questions, watch)? {
         Some(Ok(bagged)) => {
-            let placed = holdout::placed_out_of_bag(&material, &bagged, &open, candidates, &asked);
+            let placed = holdout::placed_out_of_bag(&material, &bagged, &questions);
             ways.push(Way::Transport);
             trials.add(placed);
             Some(bagged)
@@ -171,10 +169,7 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             &trials,
             &members,
             bagged.as_ref(),
-            &open,
-            candidates,
-            &asked,
-            settings.seed,
+            &questions,
         )
     });
     let way = match &mixture {
@@ -197,7 +192,7 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             replicates: bagged
                 .as_ref()
                 .map_or(settings.rank_replicates, |bagged| bagged.each.len()),
-            bagged,
+            bagged: bagged.map(Box::new),
         }
     } else {
         Ranker::One(ways[way])
@@ -298,8 +293,7 @@ fn can_be_fitted(way: &Way, material: &Material<'_>, study: &Study) -> Result<()
 fn transport(
     study: &Study,
     material: &Material<'_>,
-    open: &Pair<Vec<usize>>,
-    asked: &Asked,
+    questions: &Questions<'_>,
     watch: &dyn Watch,
 ) -> Result<Option<Result<OutOfBag, Unavailable>>, Interrupted> {
     let settings = &study.settings;
@@ -316,16 +310,7 @@ fn transport(
     let members: Vec<&dyn Evidence> = members.iter().map(|m| m as &dyn Evidence).collect();
     let parcels = study.species.as_ref().map(|s| s.parcels.len());
     let replicates = Transport::replicates(settings.transport_replicates, parcels);
-    holdout::out_of_bag(
-        material,
-        &members,
-        replicates,
-        open,
-        asked,
-        settings.seed,
-        watch,
-    )
-    .map(Some)
+    holdout::out_of_bag(material, &members, replicates, questions, watch).map(Some)
 }
 
 /// Whether a kind takes part under a setting.

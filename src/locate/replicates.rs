@@ -186,7 +186,6 @@ fn one(
         );
     }
 
-    let open = &ranking.open;
     let ranks_here = replicate < ranking.ranker.replicates(settings.replicates);
     let has_subjects = study.cohorts.a.is_some() || study.cohorts.b.is_some();
     if has_subjects {
@@ -236,27 +235,15 @@ fn one(
         if !ranks_here {
             return;
         }
-        ranking.ranker.replicate(
+        ranking.replicate(
             &material,
             &both,
             replicate,
-            open,
-            &study.candidates,
-            settings.seed,
             Some(settings.mass),
             dissimilarities,
         );
     } else if ranks_here {
-        ranking.ranker.replicate(
-            material,
-            &weights,
-            replicate,
-            open,
-            &study.candidates,
-            settings.seed,
-            None,
-            dissimilarities,
-        );
+        ranking.replicate(material, &weights, replicate, None, dissimilarities);
     } else {
         return;
     }
