@@ -6,11 +6,13 @@ mod left_out;
 mod ranking;
 mod replicates;
 mod span;
+mod weighed;
 
 pub use axes::{AxisEnds, Space, StandardErrors, SubjectErrors};
 pub use left_out::LeftOut;
 pub use replicates::Tally;
 pub use span::beyond_landmarks;
+pub use weighed::Weighed;
 
 use chance::Support;
 use ranking::{Ranker, Ranking};
@@ -18,13 +20,12 @@ use ranking::{Ranker, Ranking};
 use serde::Serialize;
 
 use crate::align::{Alignment, Params, PerAlignment};
-use crate::bootstrap::{interval, Purpose, Stream};
+use crate::bootstrap::interval;
 use crate::domain::Pair;
-use crate::evidence::{Evidence, Expression, Grown, Kind, Material, Transport, Unavailable};
-use crate::holdout::{self, Asked, Choice, Curve, Member, OutOfBag, Questions, Trials, Way};
+use crate::evidence::{Kind, Material};
+use crate::holdout::{Asked, Choice, Curve, Member, Questions};
 use crate::place;
 use crate::prepare::Study;
-use crate::settings::EvidenceChoice;
 use crate::warning::Warning;
 use crate::watch::{Interrupted, Watch};
 
@@ -115,78 +116,32 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         ridge: settings.ridge,
     };
 
-    let mut ways: Vec<Way> = Alignment::BOTH
-        .into_iter()
-        .flat_map(|alignment| study.axes.iter().map(move |&axes| params(alignment, axes)))
-        .map(Way::Joint)
-        .collect();
-    let mut unavailable = Vec::new();
-    for way in further_ways(study) {
-        match can_be_fitted(&way, &material, study) {
-            Ok(()) => ways.push(way),
-            Err(why) => unavailable.push(why),
-        }
-    }
-    let candidates = &study.candidates;
-    let asked = Asked::draw(&study.landmarks, candidates, settings.seed);
+    let asked = Asked::draw(&study.landmarks, &study.candidates, settings.seed);
     let questions = Questions {
         open: &open,
-        candidates,
+        candidates: &study.candidates,
         asked: &asked,
         seed: settings.seed,
     };
-    let mut trials = holdout::run(&material, &ways, &questions, watch)?;
-    let bagged = match transport(study, &material, &questions, watch)? {
-        Some(Ok(bagged)) => {
-            let placed = holdout::placed_out_of_bag(&material, &bagged, &questions);
-            ways.push(Way::Transport);
-            trials.add(placed);
-            Some(bagged)
-        }
-        Some(Err(why)) => {
-            unavailable.push(why);
-            None
-        }
-        None => None,
-    };
-    let alignment = match settings.evidence {
-        EvidenceChoice::Procrustes => Some(Alignment::Procrustes),
-        EvidenceChoice::Canonical => Some(Alignment::Canonical),
-        _ => None,
-    };
-    let choice = holdout::choose(&ways, &trials, alignment, None);
+    let weighed = Weighed::new(settings, &study.axes, &material, &questions, watch)?;
+    let choice = weighed.choice;
     let settled = PerAlignment::from_fn(|alignment| params(alignment, choice.axes[alignment]));
-
-    let members = members(settings.evidence, &ways, &trials, &choice);
-    let mixes = matches!(
-        settings.evidence,
-        EvidenceChoice::Mixture | EvidenceChoice::Transport
-    );
-    let mixture = mixes.then(|| {
-        holdout::leave_out(
-            &material,
-            &ways,
-            &trials,
-            &members,
-            bagged.as_ref(),
-            &questions,
-        )
-    });
-    let way = match &mixture {
-        // To those who judge landmarks the mixture is a way of ranking like any other.
-        Some(found) => trials.add(found.iter().map(|found| found.placed).collect()),
-        None => members[0].way,
-    };
-    let left_out = left_out::summarise(&material, &ways, &trials, way, &choice, alignment, &asked);
-    let support = Support::new(match mixture {
-        Some(found) => found.into_iter().map(|found| found.first).collect(),
-        None => left_out::firsts(&left_out),
-    });
+    let (left_out, firsts) = weighed.leave_out(&material, &questions, &|_, _| ());
+    let support = Support::new(firsts);
     let mut spaces =
         PerAlignment::from_fn(|alignment| Space::fit(&material, settled[alignment], &asked));
 
+    let Weighed {
+        ways,
+        trials,
+        members,
+        bagged,
+        blends,
+        unavailable,
+        ..
+    } = weighed;
     let transport_replicates = bagged.as_ref().map_or(0, |bagged| bagged.each.len());
-    let ranker = if mixes {
+    let ranker = if blends {
         Ranker::Mixture {
             members: members.iter().map(|m| (*m, ways[m.way])).collect(),
             replicates: bagged
@@ -195,7 +150,7 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             bagged: bagged.map(Box::new),
         }
     } else {
-        Ranker::One(ways[way])
+        Ranker::One(ways[members[0].way])
     };
     let ranking = Ranking::new(&material, ranker, &open, study);
     let tally = replicates::run(study, &material, &spaces, &ranking, watch)?;
@@ -263,104 +218,6 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         placements,
         warnings,
     })
-}
-
-/// Cheap ways of ranking beside distances in the joint spaces that the settings ask for.
-fn further_ways(study: &Study) -> Vec<Way> {
-    let grown = Way::Grown(Grown {
-        axes: study.axes.iter().copied().max().unwrap_or(1),
-        ridge: study.settings.ridge,
-    });
-    match study.settings.evidence {
-        EvidenceChoice::Mixture => vec![Way::Fingerprint, grown],
-        EvidenceChoice::Fingerprint => vec![Way::Fingerprint],
-        EvidenceChoice::Grown => vec![grown],
-        _ => Vec::new(),
-    }
-}
-
-/// Whether a study has what a way of ranking needs.
-fn can_be_fitted(way: &Way, material: &Material<'_>, study: &Study) -> Result<(), Unavailable> {
-    let weights = material.weights(|_| 1.0);
-    let mut chance = Stream::new(study.settings.seed, Purpose::Evidence, u64::MAX);
-    match way.evidence() {
-        Some(evidence) => evidence.fit(material, &weights, &mut chance).map(|_| ()),
-        None => Ok(()),
-    }
-}
-
-/// Replicates of transport, where the settings ask for it.
-fn transport(
-    study: &Study,
-    material: &Material<'_>,
-    questions: &Questions<'_>,
-    watch: &dyn Watch,
-) -> Result<Option<Result<OutOfBag, Unavailable>>, Interrupted> {
-    let settings = &study.settings;
-    if !matches!(
-        settings.evidence,
-        EvidenceChoice::Mixture | EvidenceChoice::Transport
-    ) {
-        return Ok(None);
-    }
-    let members = Expression::ALL.map(|expression| Transport {
-        expression,
-        mass: settings.mass,
-    });
-    let members: Vec<&dyn Evidence> = members.iter().map(|m| m as &dyn Evidence).collect();
-    let parcels = study.species.as_ref().map(|s| s.parcels.len());
-    let replicates = Transport::replicates(settings.transport_replicates, parcels);
-    holdout::out_of_bag(material, &members, replicates, questions, watch).map(Some)
-}
-
-/// Whether a kind takes part under a setting.
-fn takes(evidence: EvidenceChoice, kind: Kind) -> bool {
-    let only = match evidence {
-        EvidenceChoice::Mixture => return true,
-        EvidenceChoice::Procrustes => Kind::Procrustes,
-        EvidenceChoice::Canonical => Kind::Canonical,
-        EvidenceChoice::Fingerprint => Kind::Fingerprint,
-        EvidenceChoice::Grown => Kind::Grown,
-        EvidenceChoice::Transport => Kind::Transport,
-    };
-    kind == only
-}
-
-/// The kinds that rank, with their weights.
-fn members(
-    evidence: EvidenceChoice,
-    ways: &[Way],
-    trials: &Trials,
-    choice: &Choice,
-) -> Vec<Member> {
-    let found: Vec<(Kind, usize)> = Kind::ALL
-        .into_iter()
-        .filter(|kind| takes(evidence, *kind))
-        .filter_map(|kind| {
-            let way = match kind {
-                Kind::Procrustes => Some(choice.ways.procrustes),
-                Kind::Canonical => Some(choice.ways.canonical),
-                _ => ways.iter().position(|way| way.kind() == kind),
-            };
-            Some((kind, way?))
-        })
-        .collect();
-    let kinds: Vec<Kind> = found.iter().map(|(kind, _)| *kind).collect();
-    let errors: Vec<Vec<f64>> = found
-        .iter()
-        .map(|(_, way)| trials.errors(*way, None))
-        .collect();
-    holdout::weigh(&kinds, &errors)
-        .into_iter()
-        .zip(found)
-        .zip(errors)
-        .map(|((weight, (kind, way)), errors)| Member {
-            kind,
-            weight,
-            error: errors.iter().sum::<f64>() / errors.len() as f64,
-            way,
-        })
-        .collect()
 }
 
 /// Intervals of ranks, one for each listed pair in order.

@@ -4,11 +4,9 @@ use ndarray::Array2;
 use rayon::prelude::*;
 use serde::Serialize;
 
-use super::choose::choose;
 use super::out_of_bag::OutOfBag;
-use super::trials::{Placed, Questions, Trials, Way};
-use crate::align::Alignment;
-use crate::bootstrap::{Purpose, Stream};
+use super::trials::{Placed, Questions};
+use super::without::{Compared, Ranked};
 use crate::domain::{Pair, Side};
 use crate::evidence::{Fitted, Kind, Material};
 use crate::place;
@@ -99,89 +97,34 @@ pub struct LeftOutOfMixture {
     pub first: Pair<FirstOf>,
 }
 
-/// Every landmark left out of a mixture of the kinds named by their ways. Weights come from the
-/// errors of the other blocks alone, joint spaces have the axes that the other blocks favour.
+/// Every landmark left out of a mixture (see [`Ranked::without`]). `also` looks at each ranking without
+/// a landmark before it is dropped.
 ///
 /// # Panics
 /// If a way cannot be fitted though the trials could.
 #[must_use]
 pub fn leave_out(
-    material: &Material<'_>,
-    ways: &[Way],
-    trials: &Trials,
-    members: &[Member],
-    bagged: Option<&OutOfBag>,
-    questions: &Questions<'_>,
+    ranked: &Ranked<'_>,
+    also: &(dyn Fn(usize, &Compared) + Sync),
 ) -> Vec<LeftOutOfMixture> {
-    let Questions {
-        open,
-        candidates: admissible,
-        asked,
-        seed,
-    } = *questions;
-    let landmarks = material.landmarks;
+    let landmarks = ranked.material.landmarks;
     (0..landmarks.len())
         .into_par_iter()
         .map(|at| {
             let landmark = &landmarks.list()[at];
-            let block = landmark.block;
-            let joint = choose(ways, trials, None, Some(block));
-            let way_of = |member: &Member| match member.kind {
-                Kind::Procrustes => joint.ways[Alignment::Procrustes],
-                Kind::Canonical => joint.ways[Alignment::Canonical],
-                _ => member.way,
-            };
-            let kinds: Vec<Kind> = members.iter().map(|member| member.kind).collect();
-            let errors: Vec<Vec<f64>> = members
-                .iter()
-                .map(|member| trials.errors(way_of(member), Some(block)))
-                .collect();
-            let candidates = Pair::from_fn(|side| {
-                let mut all = [&open[side][..], &landmark.parcels[side][..]].concat();
-                all.sort_unstable();
-                all
-            });
-            let shape = (candidates.a.len(), candidates.b.len());
-            let weights = material.weights(|b| if b == block { 0.0 } else { 1.0 });
-            let mut blend = Blend::new(shape);
-            let mut scores = Array2::zeros(shape);
-            for (member, weight) in members.iter().zip(weigh(&kinds, &errors)) {
-                match ways[way_of(member)].evidence() {
-                    Some(evidence) => {
-                        let index = (block * landmarks.blocks() + block) as u64;
-                        let mut chance = Stream::new(seed, Purpose::EvidenceLeftOut, index);
-                        // A kind that has nothing to say without the landmark ranks nothing.
-                        let Ok(fitted) = evidence.fit(material, &weights, &mut chance) else {
-                            continue;
-                        };
-                        fitted.dissimilarities(&candidates.a, &candidates.b, &mut scores);
-                    }
-                    None => {
-                        let all = &bagged.expect("costly kinds have replicates").without[block];
-                        scores = Array2::from_shape_fn(shape, |(i, j)| {
-                            all[(candidates.a[i], candidates.b[j])]
-                        });
-                    }
-                }
-                admissible.close(&candidates.a, &candidates.b, &mut scores);
-                blend.add(weight, &scores);
-            }
-            admissible.close(&candidates.a, &candidates.b, &mut blend.score);
+            let without = ranked.without(at);
+            also(at, &without);
             let found = Pair::from_fn(|from: Side| {
                 let to = from.opposite();
-                let question = candidates[from]
-                    .binary_search(&asked.of(at)[from])
-                    .expect("the asked member is a candidate");
-                let row: Vec<f64> = match from {
-                    Side::A => blend.score.row(question).to_vec(),
-                    Side::B => blend.score.column(question).to_vec(),
-                };
+                let asked = ranked.questions.asked.of(at)[from];
+                let row = without.row(from, asked);
                 let first = (0..row.len())
                     .min_by(|&i, &j| row[i].total_cmp(&row[j]).then(i.cmp(&j)))
-                    .map(|first| candidates[to][first])
+                    .map(|first| without.candidates[to][first])
                     .expect("the landmark itself has a parcel");
-                let placed = Placed::of(&row, &candidates[to], &landmark.parcels[to]);
-                let share = bagged
+                let placed = without.placed(from, asked, &landmark.parcels[to]);
+                let share = ranked
+                    .bagged
                     .filter(|bagged| bagged.shares.is_some())
                     .map(|bagged| bagged.asked[at][from][first]);
                 (
