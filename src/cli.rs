@@ -12,11 +12,12 @@ use clap::Parser;
 use kinmark::draft::draft;
 use kinmark::error::Error;
 use kinmark::paint;
-use kinmark::pipeline::{self, Finished};
+use kinmark::pipeline::{self, Answered, Finished};
 use kinmark::prepare::prepare;
+use kinmark::reopen::reopen;
 use kinmark::report::{self, CAUTION};
 
-use args::{Cli, Command, Inspect, Locate, New, Paint};
+use args::{Cli, Command, Holdout, Inspect, Locate, New, Paint};
 use progress::Progress;
 
 /// Exit code after Ctrl-C: 128 and the number of the signal.
@@ -28,6 +29,7 @@ pub fn run() -> Result<(), Error> {
         Command::New(options) => new(&options),
         Command::Inspect(options) => inspect(&options),
         Command::Locate(options) => locate(&options),
+        Command::Holdout(options) => holdout(&options),
         Command::Paint(options) => paint(options),
     }
 }
@@ -58,6 +60,36 @@ fn inspect(options: &Inspect) -> Result<(), Error> {
     } else {
         say(report::inspection(&study, &found).as_bytes());
         say(format!("\n{CAUTION}\n").as_bytes());
+    }
+    Ok(())
+}
+
+fn holdout(options: &Holdout) -> Result<(), Error> {
+    let started = Instant::now();
+    let interrupted = stop_on_interrupt();
+    let plan = options.plan()?;
+    let asked = reopen(&options.asked, options.request())?;
+    let quiet = asked.study.conduct.quiet;
+    let progress = Progress::new(quiet, interrupted);
+    let out = options.out.as_deref();
+    let permutations = options.permutations();
+    let found = pipeline::hold_out(asked, &plan, permutations, out, &progress, started)?;
+    answer(found, quiet)
+}
+
+/// Shows an answer, then writes what goes with it, so that nothing is lost where a folder refuses.
+fn answer(found: Answered, quiet: bool) -> Result<(), Error> {
+    say(format!("{}\n{CAUTION}\n", found.text).as_bytes());
+    let mut err = std::io::stderr();
+    if !quiet {
+        for warning in &found.warnings {
+            let _ = writeln!(err, "warning: {warning}");
+        }
+    }
+    if let Some(folder) = found.destination.write()? {
+        if !quiet {
+            let _ = writeln!(err, "Tables: {}", folder.display());
+        }
     }
     Ok(())
 }

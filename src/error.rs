@@ -5,7 +5,9 @@ use thiserror::Error;
 use crate::draft::DraftError;
 use crate::input::InputError;
 use crate::paint::PaintError;
-use crate::report::FolderError;
+use crate::questions::PlanError;
+use crate::reopen::ReopenError;
+use crate::report::{FolderError, MapsError};
 use crate::watch::Interrupted;
 
 /// Anything that stops a run.
@@ -23,6 +25,15 @@ pub enum Error {
     /// A run or a surface that cannot be painted.
     #[error(transparent)]
     Paint(#[from] PaintError),
+    /// A run that cannot be asked anything.
+    #[error(transparent)]
+    Reopen(#[from] ReopenError),
+    /// Landmarks that cannot be held out.
+    #[error(transparent)]
+    Plan(#[from] PlanError),
+    /// Tables that cannot be added to a run.
+    #[error(transparent)]
+    Files(#[from] MapsError),
     /// Told to stop.
     #[error("interrupted; nothing was written")]
     Interrupted(#[from] Interrupted),
@@ -46,6 +57,9 @@ impl Error {
             | Error::Folder(_)
             | Error::Draft(_)
             | Error::Paint(_)
+            | Error::Reopen(_)
+            | Error::Plan(_)
+            | Error::Files(_)
             | Error::Threads { .. } => 2,
             Error::Interrupted(_) => 130,
         }

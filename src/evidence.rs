@@ -76,6 +76,15 @@ impl<'m> Material<'m> {
         }
     }
 
+    /// The same species with other landmarks; links that were made already are kept.
+    #[must_use]
+    pub fn with_landmarks(&self, landmarks: &'m Landmarks) -> Material<'m> {
+        Material {
+            links: self.links.clone(),
+            ..Material::new(self.species, landmarks)
+        }
+    }
+
     /// Links and affinities of both species.
     #[must_use]
     pub fn links(&self) -> &Pair<Links> {

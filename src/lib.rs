@@ -34,6 +34,8 @@ pub mod paint;
 pub mod pipeline;
 pub mod place;
 pub mod prepare;
+pub mod questions;
+pub mod reopen;
 pub mod report;
 pub mod settings;
 pub mod species;

@@ -1,4 +1,4 @@
-//! Locate, then report: in that order, nothing else.
+//! Locate, or ask a question, then report: in that order, nothing else.
 
 use std::path::{Path, PathBuf};
 use std::time::Instant;
@@ -6,7 +6,9 @@ use std::time::Instant;
 use crate::error::Error;
 use crate::locate::locate;
 use crate::prepare::Study;
-use crate::report::{self, Identity, Record, RunFolder, Survey, Wall};
+use crate::questions::{self, PlanRequest};
+use crate::reopen::Reopened;
+use crate::report::{self, AnswerRecord, Identity, Record, RunFolder, Survey, Wall};
 use crate::warning::Warning;
 use crate::watch::{Interrupted, Watch};
 
@@ -48,11 +50,7 @@ pub fn run(
 ) -> Result<Finished, Error> {
     let survey = Survey::of(out, study.conduct.replace)?;
     let folder: RunFolder = survey.open(&Identity::of(&study).json())?;
-    let threads = study.conduct.threads;
-    let pool = rayon::ThreadPoolBuilder::new()
-        .num_threads(threads)
-        .build()
-        .map_err(|source| Error::Threads { threads, source })?;
+    let pool = workers(&study)?;
     let located = pool.install(|| locate(&study, watch))?;
     if watch.interrupted() {
         return Err(Interrupted.into());
@@ -67,5 +65,135 @@ pub fn run(
         summary: report::summary(&study, &located),
         warnings: study.warnings.into_iter().chain(located.warnings).collect(),
         folder,
+    })
+}
+
+/// Worker threads for a study.
+fn workers(study: &Study) -> Result<rayon::ThreadPool, Error> {
+    let threads = study.conduct.threads;
+    rayon::ThreadPoolBuilder::new()
+        .num_threads(threads)
+        .build()
+        .map_err(|source| Error::Threads { threads, source })
+}
+
+/// A question that was answered.
+#[derive(Debug)]
+pub struct Answered {
+    /// The answer, for people.
+    pub text: String,
+    /// Every warning.
+    pub warnings: Vec<Warning>,
+    /// What is to be written, and where to.
+    pub destination: Destination,
+}
+
+/// Where tables go that answer a question. They are complete, and nothing is written before
+/// [`Destination::write`], so that the answer can be shown first.
+#[derive(Debug)]
+pub enum Destination {
+    /// Nowhere.
+    Nowhere,
+    /// To the folder of the run that was asked.
+    Run {
+        /// The folder.
+        folder: PathBuf,
+        /// The tables.
+        tables: Vec<(&'static str, Vec<u8>)>,
+        /// Whether others may be replaced.
+        replace: bool,
+    },
+    /// To a folder of their own.
+    Folder {
+        /// The folder.
+        folder: Box<RunFolder>,
+        /// The tables.
+        tables: Vec<(&'static str, Vec<u8>)>,
+        /// The record beside them.
+        record: Vec<u8>,
+    },
+}
+
+impl Destination {
+    /// Writes the tables; returns the folder that holds them.
+    ///
+    /// # Errors
+    /// [`Error`] where the folder does not take them; nothing that was there has then changed.
+    pub fn write(self) -> Result<Option<PathBuf>, Error> {
+        match self {
+            Destination::Nowhere => Ok(None),
+            Destination::Run {
+                folder,
+                tables,
+                replace,
+            } => {
+                report::add_to_run(&folder, &tables, replace)?;
+                Ok(Some(folder))
+            }
+            Destination::Folder {
+                folder,
+                tables,
+                record,
+            } => Ok(Some(folder.finish(&tables, &record)?)),
+        }
+    }
+}
+
+/// Holds landmarks out as `plan` says, and judges the pairing against `permutations` others. Tables go
+/// to `out`; without it to the run that was asked, if one was.
+///
+/// # Errors
+/// [`Error`] for landmarks that cannot be held out, a folder that cannot take the tables, or an
+/// interruption.
+pub fn hold_out(
+    asked: Reopened,
+    plan: &PlanRequest,
+    permutations: usize,
+    out: Option<&Path>,
+    watch: &dyn Watch,
+    started: Instant,
+) -> Result<Answered, Error> {
+    let Reopened { study, run } = asked;
+    let sets = plan.sets(&study.landmarks, study.settings.axes, study.settings.seed)?;
+    let folder = match out {
+        Some(out) => {
+            let survey = Survey::of(out, study.conduct.replace)?;
+            Some(survey.open(&Identity::of(&study).json())?)
+        }
+        None => None,
+    };
+    let pool = workers(&study)?;
+    let found = pool.install(|| questions::hold_out(&study, plan, sets, permutations, watch))?;
+    if watch.interrupted() {
+        return Err(Interrupted.into());
+    }
+    let inspection = crate::inspect::inspect(&study);
+    let text = report::held_out(&study, &found, &inspection);
+    let tables = report::held_out_tables(&study, &found);
+    let destination = match (folder, run) {
+        (Some(folder), _) => {
+            let wall = Wall {
+                threads: pool.current_num_threads(),
+                wall_seconds: started.elapsed().as_secs_f64(),
+            };
+            let asked = report::held_out_json(&study, &found);
+            let record = AnswerRecord::new(&study, asked, &found.warnings, &tables, wall).json();
+            Destination::Folder {
+                folder: Box::new(folder),
+                tables,
+                record,
+            }
+        }
+        (None, Some(folder)) => Destination::Run {
+            folder,
+            tables,
+            replace: study.conduct.replace,
+        },
+        (None, None) => Destination::Nowhere,
+    };
+    Ok(Answered {
+        text,
+        warnings: study.warnings.into_iter().chain(found.warnings).collect(),
+        destination,
     })
 }

@@ -236,8 +236,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
                     });
                 }
             }
-            let most = most.min(available);
-            (2.min(most)..=most).collect()
+            axes_to_try(settings.axes, landmarks.blocks(), available)
         }
     };
     Ok(Study {
@@ -329,8 +328,25 @@ fn most_axes(axes: Axes, landmarks: &Landmarks, table: &Source) -> Result<usize,
             axes,
         }),
         Axes::Number(axes) => Ok(axes),
-        // Two blocks are left out at a time, and the rest must still span the axes.
-        Axes::Auto => Ok(blocks.saturating_sub(3).clamp(1, MOST_AXES)),
+        Axes::Auto => Ok(most_of(blocks)),
+    }
+}
+
+/// Most axes that so many blocks of landmarks can judge: two are left out at a time, and the rest must
+/// still span the axes.
+fn most_of(blocks: usize) -> usize {
+    blocks.saturating_sub(3).clamp(1, MOST_AXES)
+}
+
+/// Numbers of axes to try with `blocks` blocks of landmarks, where embeddings have `available`.
+#[must_use]
+pub fn axes_to_try(asked: Axes, blocks: usize, available: usize) -> Vec<usize> {
+    match asked {
+        Axes::Number(axes) => vec![axes],
+        Axes::Auto => {
+            let most = most_of(blocks).min(available);
+            (2.min(most)..=most).collect()
+        }
     }
 }
 

@@ -1,7 +1,10 @@
 //! Results to bytes: tables, the run record, the summary, and the folder they go into. Computes
 //! nothing that a table does not show.
 
+mod answers;
+mod finished;
 mod gifti;
+mod held_out;
 mod inspection;
 mod map_folder;
 mod record;
@@ -9,10 +12,14 @@ mod run_folder;
 mod summary;
 mod tables;
 
+pub use answers::{add_to_run, AnswerRecord};
+pub use finished::{read_record, RecordError};
 pub use gifti::{gifti, SurfaceMap};
+
+pub use held_out::{held_out, held_out_json, held_out_tables};
 pub use inspection::{inspection, inspection_json};
 pub use map_folder::{keep_out_of_run, write_maps, MapsError};
 pub use record::{Identity, Record, Wall};
-pub use run_folder::{FolderError, RunFolder, Survey, RECORD, TABLES, UNFINISHED};
+pub use run_folder::{FolderError, RunFolder, Survey, ANSWERS, RECORD, TABLES, UNFINISHED};
 pub use summary::{summary, CAUTION};
 pub use tables::tables;

@@ -26,6 +26,12 @@ pub enum Purpose {
     OutOfBagWeights,
     /// Chance inside it, in a replicate.
     OutOfBagFit,
+    /// Which landmark is paired with which, where pairings are permuted.
+    PermutedPairs,
+    /// Which sets of landmark blocks are held out.
+    HeldOutSets,
+    /// Which landmark stands for its block where blocks are counted.
+    StandsForBlock,
 }
 
 impl Purpose {
@@ -39,6 +45,9 @@ impl Purpose {
             Purpose::OutOfBag => "out of bag",
             Purpose::OutOfBagWeights => "out of bag weights",
             Purpose::OutOfBagFit => "out of bag fit",
+            Purpose::PermutedPairs => "permuted pairs",
+            Purpose::HeldOutSets => "held-out sets",
+            Purpose::StandsForBlock => "stands for block",
         }
     }
 }

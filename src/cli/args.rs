@@ -3,7 +3,9 @@
 use std::path::PathBuf;
 
 use clap::{Args, Parser, Subcommand};
+use kinmark::input::{InputError, Source};
 use kinmark::paint::PaintRequest;
+use kinmark::questions::PlanRequest;
 use kinmark::settings::Request;
 
 /// Map homologous brain parcels between two species.
@@ -34,6 +36,8 @@ pub enum Command {
     Inspect(Inspect),
     /// Place every parcel of either species in the other's space and write the tables
     Locate(Locate),
+    /// Hold landmarks out: what they are worth, whether the pairing matters, how much each moves the rest
+    Holdout(Holdout),
     /// Paint a finished run onto a species' surfaces: maps over vertices for a viewer
     Paint(Paint),
 }
@@ -121,6 +125,88 @@ pub struct Inspect {
 
     #[command(flatten)]
     settings: SettingOptions,
+}
+
+/// Options of `holdout`. On a finished run the settings are those of the run.
+#[derive(Debug, Args)]
+#[command(after_help = kinmark::report::CAUTION)]
+pub struct Holdout {
+    /// Study file, or folder of a finished run, whose inputs are then read again and must not have
+    /// changed
+    #[arg(value_name = "STUDY|RUN")]
+    pub asked: PathBuf,
+
+    /// Hold out every landmark block by itself [the default]
+    #[arg(long, conflicts_with_all = ["leave", "leave_file", "subsets"])]
+    each: bool,
+
+    /// Hold out these landmarks or blocks together, separated by commas; whole blocks go
+    #[arg(long, value_name = "NAMES", conflicts_with = "subsets")]
+    leave: Vec<String>,
+
+    /// Hold out the landmarks or blocks named in a file, one a line
+    #[arg(long, value_name = "FILE", conflicts_with = "subsets")]
+    leave_file: Option<PathBuf>,
+
+    /// Hold out sets of K blocks in turn: all of them, or as many as --budget allows
+    #[arg(long, value_name = "K")]
+    subsets: Option<usize>,
+
+    /// Most sets of --subsets; each is a rerun. Drawn by the seed where there are more [default: 20]
+    #[arg(long, value_name = "N", requires = "subsets", value_parser = clap::value_parser!(u32).range(1..=100_000))]
+    budget: Option<u32>,
+
+    /// Permuted landmark pairings to compare with; 0 for none [default: 999]
+    #[arg(long, value_name = "N", value_parser = clap::value_parser!(u32).range(0..=1_000_000))]
+    permutations: Option<u32>,
+
+    /// Folder for the tables and a record, as for locate [default: RUN gets the tables; for a STUDY
+    /// nothing is written]
+    #[arg(long, value_name = "DIR")]
+    pub out: Option<PathBuf>,
+
+    #[command(flatten)]
+    settings: SettingOptions,
+}
+
+/// Sets that are held out unless asked otherwise.
+const BUDGET: u32 = 20;
+/// Permutations unless asked otherwise: p-values go down to 0.001.
+const PERMUTATIONS: u32 = 999;
+
+impl Holdout {
+    /// The settings asked for.
+    pub fn request(&self) -> Request {
+        self.settings.request()
+    }
+
+    /// What is to be held out.
+    ///
+    /// # Errors
+    /// A file of names that cannot be read.
+    pub fn plan(&self) -> Result<PlanRequest, InputError> {
+        if let Some(size) = self.subsets {
+            let budget = self.budget.unwrap_or(BUDGET) as usize;
+            return Ok(PlanRequest::Subsets { size, budget });
+        }
+        if self.leave.is_empty() && self.leave_file.is_none() {
+            return Ok(PlanRequest::Each);
+        }
+        let mut names: Vec<String> = Vec::new();
+        let given = self.leave.iter().flat_map(|list| list.split(','));
+        names.extend(given.map(str::to_owned));
+        if let Some(file) = &self.leave_file {
+            let source = Source::read(file)?;
+            names.extend(source.text.lines().map(str::to_owned));
+        }
+        let names = names.iter().map(|name| name.trim().to_owned());
+        Ok(PlanRequest::Named(names.filter(|n| !n.is_empty()).collect()))
+    }
+
+    /// Permuted pairings.
+    pub fn permutations(&self) -> usize {
+        self.permutations.unwrap_or(PERMUTATIONS) as usize
+    }
 }
 
 /// Settings as text, checked by the same rules as in a study file.
@@ -293,7 +379,7 @@ mod tests {
     #[test]
     fn every_setting_has_an_option() {
         let command = Cli::command();
-        for name in ["locate", "inspect"] {
+        for name in ["locate", "inspect", "holdout"] {
             let command = command.find_subcommand(name).unwrap();
             for key in Request::KEYS {
                 assert!(

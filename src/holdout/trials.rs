@@ -309,7 +309,7 @@ pub fn run(
 }
 
 /// Rank of a left-out landmark's counterpart, both ways; `at` is its place in the list.
-pub(super) fn place_one(
+pub fn place_one(
     fitted: &dyn Fitted,
     landmark: &Landmark,
     at: usize,
@@ -336,6 +336,34 @@ pub(super) fn place_one(
         };
         Placed::of(&dissimilarities, &candidates, &landmark.parcels[to])
     })
+}
+
+/// Every landmark placed by one kind that is cheap to fit, without its block.
+#[must_use]
+pub fn place_each(
+    material: &Material<'_>,
+    evidence: &dyn Evidence,
+    questions: &Questions<'_>,
+) -> Vec<Pair<Placed>> {
+    let landmarks = material.landmarks;
+    let blocks = landmarks.blocks();
+    let mut placed = vec![None; landmarks.len()];
+    for block in 0..blocks {
+        let weights = material.weights(|b| if b == block { 0.0 } else { 1.0 });
+        let index = (block * blocks + block) as u64;
+        let mut chance = Stream::new(questions.seed, Purpose::EvidenceLeftOut, index);
+        let fitted = evidence.fit(material, &weights, &mut chance);
+        for (at, landmark) in landmarks.list().iter().enumerate() {
+            if landmark.block == block {
+                placed[at] = Some(match &fitted {
+                    Ok(fitted) => place_one(&**fitted, landmark, at, questions),
+                    Err(_) => last_of_all(landmark, at, questions),
+                });
+            }
+        }
+    }
+    let all: Option<Vec<Pair<Placed>>> = placed.into_iter().collect();
+    all.expect("every landmark has a block")
 }
 
 /// The worst rank that a landmark's counterpart can have.

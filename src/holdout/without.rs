@@ -9,7 +9,7 @@ use super::trials::{Placed, Questions, Trials, Way};
 use crate::align::Alignment;
 use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{Pair, Side};
-use crate::evidence::{Kind, Material};
+use crate::evidence::{Evidence, Kind, Material};
 
 /// What ranks, and the figures by which it was chosen and weighed.
 #[derive(Clone, Copy)]
@@ -109,6 +109,29 @@ impl Ranked<'_> {
             costly: self.bagged.map(|bagged| &bagged.mean),
         };
         self.compare(candidates, &fit)
+    }
+
+    /// Ranks any parcels by one kind alone with all landmarks; a kind that has nothing to say finds all
+    /// alike.
+    #[must_use]
+    pub fn alone(&self, candidates: Pair<Vec<usize>>, evidence: &dyn Evidence) -> Compared {
+        let Questions {
+            candidates: admissible,
+            seed,
+            ..
+        } = self.questions;
+        let mut score = Array2::zeros((candidates.a.len(), candidates.b.len()));
+        let mut chance = Stream::new(seed, Purpose::Evidence, u64::MAX);
+        let weights = self.material.weights(|_| 1.0);
+        if let Ok(fitted) = evidence.fit(self.material, &weights, &mut chance) {
+            fitted.dissimilarities(&candidates.a, &candidates.b, &mut score);
+        }
+        admissible.close(&candidates.a, &candidates.b, &mut score);
+        Compared {
+            candidates,
+            kinds: Vec::new(),
+            score,
+        }
     }
 
     fn compare(&self, candidates: Pair<Vec<usize>>, fit: &Fit<'_>) -> Compared {

@@ -5,7 +5,7 @@ use std::path::PathBuf;
 use thiserror::Error;
 
 use crate::input::{InputError, Place};
-use crate::report::MapsError;
+use crate::report::{MapsError, RecordError};
 
 /// Labels named in a message before the rest is only counted.
 const NAMED: usize = 4;
@@ -19,17 +19,9 @@ pub enum PaintError {
     /// Maps that cannot be written.
     #[error(transparent)]
     Maps(#[from] MapsError),
-    /// A folder without a run.
-    #[error("{}: expected the folder of a finished run, but {why}; name the folder that kinmark locate wrote with --out", folder.display())]
-    NotARun {
-        /// The folder.
-        folder: PathBuf,
-        /// What is wrong with it.
-        why: String,
-    },
-    /// A run in progress, or one that was killed.
-    #[error("{}: the run in it is not finished; wait for it, or run kinmark locate again", .0.display())]
-    Unfinished(PathBuf),
+    /// A folder without a finished run.
+    #[error(transparent)]
+    Record(#[from] RecordError),
     /// A table without a column that is needed.
     #[error("{place}: the table lacks the column {column:?}{}; run kinmark locate again", hint(.near))]
     NoColumn {

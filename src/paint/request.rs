@@ -3,6 +3,7 @@
 use std::path::{Path, PathBuf};
 
 use super::PaintError;
+use crate::report::RecordError;
 
 /// What is to be painted, of which run, and where to.
 #[derive(Debug, Clone, PartialEq, Eq)]
@@ -36,9 +37,9 @@ impl PaintRequest {
         // A path such as `.` gets its name from the system.
         named(&self.run)
             .or_else(|| named(&self.run.canonicalize().ok()?))
-            .ok_or_else(|| PaintError::NotARun {
+            .ok_or_else(|| RecordError::NotARun {
                 folder: self.run.clone(),
                 why: "there is no such folder".to_owned(),
-            })
+            }.into())
     }
 }

@@ -8,7 +8,7 @@ use serde_json::Value;
 use super::table::Table;
 use super::PaintError;
 use crate::domain::{Pair, Side};
-use crate::report::{RECORD, UNFINISHED};
+use crate::report::{read_record, RecordError, RECORD};
 
 /// A finished run.
 #[derive(Debug)]
@@ -48,14 +48,14 @@ impl Run {
     /// # Errors
     /// [`PaintError`] for a folder that holds no finished run, or tables that were changed.
     pub fn read(folder: &Path) -> Result<Run, PaintError> {
-        let record = record(folder)?;
-        let not_a_run = |what: &str| PaintError::NotARun {
+        let record = read_record(folder)?;
+        let not_a_run = |what: &str| RecordError::NotARun {
             folder: folder.to_owned(),
             why: format!("its {RECORD} does not say {what}"),
         };
         let text = |value: &Value, what: &str| {
             let text = value.as_str().map(str::to_owned);
-            text.ok_or_else(|| not_a_run(what))
+            text.ok_or_else(|| not_a_run(what)).map_err(PaintError::from)
         };
         let positions = Table::read(&folder.join("positions.csv"))?;
         let counterparts = Table::read(&folder.join("counterparts.csv"))?;
@@ -97,35 +97,6 @@ impl Run {
                 b: self.species.b.name.clone(),
             })
     }
-}
-
-/// The record of a folder with a finished run of this program.
-fn record(folder: &Path) -> Result<Value, PaintError> {
-    let not_a_run = |why: String| PaintError::NotARun {
-        folder: folder.to_owned(),
-        why,
-    };
-    if !folder.exists() {
-        return Err(not_a_run("there is no such folder".to_owned()));
-    }
-    if !folder.is_dir() {
-        return Err(not_a_run("it is a file".to_owned()));
-    }
-    let path = folder.join(RECORD);
-    if !path.exists() {
-        return Err(match folder.join(UNFINISHED).exists() {
-            true => PaintError::Unfinished(folder.to_owned()),
-            false => not_a_run(format!("it holds no {RECORD}")),
-        });
-    }
-    let bytes = std::fs::read(&path)
-        .map_err(|e| not_a_run(format!("its {RECORD} cannot be read ({e})")))?;
-    let record: Value = serde_json::from_slice(&bytes)
-        .map_err(|e| not_a_run(format!("its {RECORD} is no JSON ({e})")))?;
-    if record["program"] != env!("CARGO_PKG_NAME") {
-        return Err(not_a_run(format!("its {RECORD} is of another program")));
-    }
-    Ok(record)
 }
 
 impl Species {

@@ -23,7 +23,7 @@ pub enum MapsError {
     #[error("{} is there already and differs; name another folder with --out, or add --replace to replace it", .0.display())]
     Exists(PathBuf),
     /// A file that is none of this program's.
-    #[error("{} is there already and was not painted by this program; it is left untouched. Name another folder with --out", .0.display())]
+    #[error("{} is there already and is none that this program would write; it is left untouched. Name another folder with --out", .0.display())]
     Foreign(PathBuf),
     /// The operating system said no.
     #[error("cannot {doing} {}: {source}; check permissions and free space", .path.display())]
@@ -78,6 +78,17 @@ pub fn write_maps(
     files: &[(String, Vec<u8>)],
     replace: bool,
 ) -> Result<Vec<PathBuf>, MapsError> {
+    write_files(folder, files, replace, &|there, _| is_ours(there))
+}
+
+/// Writes files, all of them complete before the first takes its place. One that is there with the
+/// same bytes stays; `is_ours(there, new)` says whether one that differs may be replaced at all.
+pub(super) fn write_files(
+    folder: &Path,
+    files: &[(String, Vec<u8>)],
+    replace: bool,
+    is_ours: &dyn Fn(&[u8], &[u8]) -> bool,
+) -> Result<Vec<PathBuf>, MapsError> {
     if folder.exists() && !folder.is_dir() {
         return Err(MapsError::NotAFolder(folder.to_owned()));
     }
@@ -87,7 +98,7 @@ pub fn write_maps(
         let path = folder.join(name);
         match fs::read(&path) {
             Ok(there) if there == *bytes => {}
-            Ok(there) if !is_ours(&there) => return Err(MapsError::Foreign(path)),
+            Ok(there) if !is_ours(&there, bytes) => return Err(MapsError::Foreign(path)),
             Ok(_) if !replace => return Err(MapsError::Exists(path)),
             Ok(_) => new.push((path.clone(), bytes)),
             Err(e) if e.kind() == io::ErrorKind::NotFound => new.push((path.clone(), bytes)),

@@ -22,6 +22,9 @@ pub const TABLES: [&str; 4] = [
     "axes.csv",
 ];
 
+/// Tables that answers to questions about a finished run add to its folder, or that are written alone.
+pub const ANSWERS: [&str; 4] = ["holdout.csv", "influence.csv", "rank.csv", "checks.csv"];
+
 /// Why a folder cannot take a run.
 #[derive(Debug, Error)]
 pub enum FolderError {
@@ -278,12 +281,12 @@ fn state(target: &Path) -> Result<State, FolderError> {
     }
     names.sort();
     let has = |name: &str| names.iter().any(|n| n == name);
-    let (state, ours): (State, &[&str]) = if names.is_empty() {
-        (State::Empty, &[])
+    let (state, ours): (State, Vec<&str>) = if names.is_empty() {
+        (State::Empty, vec![])
     } else if has(UNFINISHED) && !has(RECORD) {
-        (State::Unfinished, &[UNFINISHED])
+        (State::Unfinished, vec![UNFINISHED])
     } else {
-        (State::Finished, &TABLES)
+        (State::Finished, [&TABLES[..], &ANSWERS[..]].concat())
     };
     let foreign = names
         .iter()

@@ -7,19 +7,19 @@ use crate::locate::{Located, SubjectErrors};
 use crate::prepare::Study;
 
 /// Separates several parcels in one cell, as in the landmark table.
-const PARCEL_SEPARATOR: &str = ";";
+pub(super) const PARCEL_SEPARATOR: &str = ";";
 
 /// One table being written.
-struct Table(csv::Writer<Vec<u8>>);
+pub(super) struct Table(csv::Writer<Vec<u8>>);
 
 impl Table {
-    fn new(header: impl IntoIterator<Item = impl AsRef<str>>) -> Table {
+    pub(super) fn new(header: impl IntoIterator<Item = impl AsRef<str>>) -> Table {
         let mut table = Table(csv::Writer::from_writer(Vec::new()));
         table.row(header);
         table
     }
 
-    fn row(&mut self, cells: impl IntoIterator<Item = impl AsRef<str>>) {
+    pub(super) fn row(&mut self, cells: impl IntoIterator<Item = impl AsRef<str>>) {
         for cell in cells {
             self.0
                 .write_field(cell.as_ref())
@@ -30,7 +30,7 @@ impl Table {
             .expect("every row has as many cells as the header");
     }
 
-    fn bytes(self) -> Vec<u8> {
+    pub(super) fn bytes(self) -> Vec<u8> {
         self.0
             .into_inner()
             .expect("writing to memory does not fail")
