@@ -17,7 +17,7 @@ use kinmark::prepare::prepare;
 use kinmark::reopen::reopen;
 use kinmark::report::{self, CAUTION};
 
-use args::{Cli, Command, Holdout, Inspect, Locate, New, Paint};
+use args::{Cli, Command, Holdout, Inspect, Locate, New, Paint, Rank};
 use progress::Progress;
 
 /// Exit code after Ctrl-C: 128 and the number of the signal.
@@ -30,6 +30,7 @@ pub fn run() -> Result<(), Error> {
         Command::Inspect(options) => inspect(&options),
         Command::Locate(options) => locate(&options),
         Command::Holdout(options) => holdout(&options),
+        Command::Rank(options) => rank(&options),
         Command::Paint(options) => paint(options),
     }
 }
@@ -74,6 +75,16 @@ fn holdout(options: &Holdout) -> Result<(), Error> {
     let out = options.out.as_deref();
     let permutations = options.permutations();
     let found = pipeline::hold_out(asked, &plan, permutations, out, &progress, started)?;
+    answer(found, quiet)
+}
+
+fn rank(options: &Rank) -> Result<(), Error> {
+    let started = Instant::now();
+    let interrupted = stop_on_interrupt();
+    let asked = reopen(&options.asked, options.request())?;
+    let quiet = asked.study.conduct.quiet;
+    let progress = Progress::new(quiet, interrupted);
+    let found = pipeline::rank(asked, options.out.as_deref(), &progress, started)?;
     answer(found, quiet)
 }
 

@@ -1,7 +1,9 @@
 //! The main job: where every parcel of either species falls in the other's space.
 
 mod axes;
+mod candidate_sets;
 mod chance;
+mod false_discovery;
 mod left_out;
 mod ranking;
 mod replicates;
@@ -9,11 +11,14 @@ mod span;
 mod weighed;
 
 pub use axes::{AxisEnds, Space, StandardErrors, SubjectErrors};
+pub use candidate_sets::SetLevel;
+pub use false_discovery::q_values;
 pub use left_out::LeftOut;
 pub use replicates::Tally;
 pub use span::beyond_landmarks;
 pub use weighed::Weighed;
 
+use candidate_sets::Calibration;
 use chance::Support;
 use ranking::{Ranker, Ranking};
 
@@ -48,6 +53,8 @@ pub struct Counterpart {
     pub kinds_agreeing: Vec<Kind>,
     /// Of first candidates, the estimated chance of being right.
     pub chance: Option<f64>,
+    /// Whether it is in the parcel's candidate set.
+    pub in_candidate_set: bool,
 }
 
 /// What the ranking rests on.
@@ -73,6 +80,15 @@ pub struct Placement {
     pub parcel: usize,
     /// Its candidates.
     pub counterparts: Vec<Counterpart>,
+    /// All candidates in its set, best first, listed or not.
+    pub candidate_set: Vec<usize>,
+    /// How many candidates there are.
+    pub candidates: usize,
+    /// Share of the parcel's mass on its first candidate, of that on all candidates.
+    pub strength: f64,
+    /// p-value for "no counterpart among the candidates", by left-out landmarks whose counterpart is
+    /// taken away.
+    pub p_of_none: f64,
 }
 
 /// Everything `locate` finds.
@@ -86,6 +102,8 @@ pub struct Located {
     pub evidence: Rests,
     /// Both joint spaces.
     pub spaces: PerAlignment<Space>,
+    /// Level of the candidate sets.
+    pub set_level: SetLevel,
     /// Every landmark, left out.
     pub left_out: Vec<LeftOut>,
     /// How far outside the landmarks' span each parcel lies; above 1 is beyond every landmark.
@@ -126,7 +144,12 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
     let weighed = Weighed::new(settings, &study.axes, &material, &questions, watch)?;
     let choice = weighed.choice;
     let settled = PerAlignment::from_fn(|alignment| params(alignment, choice.axes[alignment]));
-    let (left_out, firsts) = weighed.leave_out(&material, &questions, &|_, _| ());
+    let calibration = Calibration::new(&study.landmarks, &questions, settings.level);
+    let (left_out, firsts) = weighed.leave_out(&material, &questions, &|at, compared| {
+        calibration.look(at, compared);
+    });
+    let sets = calibration.finish();
+    let compared = weighed.ranked(&material, &questions).full(open.clone());
     let support = Support::new(firsts);
     let mut spaces =
         PerAlignment::from_fn(|alignment| Space::fit(&material, settled[alignment], &asked));
@@ -159,7 +182,15 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
     }
 
     let placements = Pair::from_fn(|side| {
-        ranking.placements(side, study, &tally, &spaces[choice.evidence], &support)
+        ranking.placements(
+            side,
+            study,
+            &tally,
+            &spaces[choice.evidence],
+            &support,
+            &sets,
+            &compared,
+        )
     });
     let mut warnings = Vec::new();
     for why in &unavailable {
@@ -214,6 +245,7 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             subject_replicates: tally.drawn.then_some(tally.drawn_again),
         },
         spaces,
+        set_level: sets.level,
         left_out,
         placements,
         warnings,

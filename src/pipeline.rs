@@ -155,13 +155,7 @@ pub fn hold_out(
 ) -> Result<Answered, Error> {
     let Reopened { study, run } = asked;
     let sets = plan.sets(&study.landmarks, study.settings.axes, study.settings.seed)?;
-    let folder = match out {
-        Some(out) => {
-            let survey = Survey::of(out, study.conduct.replace)?;
-            Some(survey.open(&Identity::of(&study).json())?)
-        }
-        None => None,
-    };
+    let folder = folder_for(&study, out)?;
     let pool = workers(&study)?;
     let found = pool.install(|| questions::hold_out(&study, plan, sets, permutations, watch))?;
     if watch.interrupted() {
@@ -194,6 +188,57 @@ pub fn hold_out(
     Ok(Answered {
         text,
         warnings: study.warnings.into_iter().chain(found.warnings).collect(),
+        destination,
+    })
+}
+
+/// A folder of its own for an answer, where one was named.
+fn folder_for(study: &Study, out: Option<&Path>) -> Result<Option<RunFolder>, Error> {
+    out.map(|out| {
+        let survey = Survey::of(out, study.conduct.replace)?;
+        Ok(survey.open(&Identity::of(study).json())?)
+    })
+    .transpose()
+}
+
+/// Ranks all parcels by how surely they correspond. The table goes to `out`, where that is given.
+///
+/// # Errors
+/// [`Error`] for a folder that cannot take the table, or an interruption.
+pub fn rank(
+    asked: Reopened,
+    out: Option<&Path>,
+    watch: &dyn Watch,
+    started: Instant,
+) -> Result<Answered, Error> {
+    let study = asked.study;
+    let folder = folder_for(&study, out)?;
+    let pool = workers(&study)?;
+    let located = pool.install(|| locate(&study, watch))?;
+    if watch.interrupted() {
+        return Err(Interrupted.into());
+    }
+    let text = report::ranked(&study, &located);
+    let destination = match folder {
+        Some(folder) => {
+            let tables = report::ranked_tables(&study, &located);
+            let wall = Wall {
+                threads: pool.current_num_threads(),
+                wall_seconds: started.elapsed().as_secs_f64(),
+            };
+            let asked = serde_json::json!({"command": "rank", "candidate-sets": located.set_level});
+            let record = AnswerRecord::new(&study, asked, &located.warnings, &tables, wall).json();
+            Destination::Folder {
+                folder: Box::new(folder),
+                tables,
+                record,
+            }
+        }
+        None => Destination::Nowhere,
+    };
+    Ok(Answered {
+        text,
+        warnings: study.warnings.into_iter().chain(located.warnings).collect(),
         destination,
     })
 }

@@ -110,6 +110,8 @@ pub struct Settings {
     pub hemispheres: Hemispheres,
     /// Counterparts listed for each parcel.
     pub top: Top,
+    /// Level of candidate sets.
+    pub level: f64,
 }
 
 /// How a run behaves; nothing here changes a number.

@@ -38,6 +38,8 @@ pub enum Command {
     Locate(Locate),
     /// Hold landmarks out: what they are worth, whether the pairing matters, how much each moves the rest
     Holdout(Holdout),
+    /// Rank all parcels by how surely they correspond, with their candidate sets
+    Rank(Rank),
     /// Paint a finished run onto a species' surfaces: maps over vertices for a viewer
     Paint(Paint),
 }
@@ -127,6 +129,30 @@ pub struct Inspect {
     settings: SettingOptions,
 }
 
+/// Options of `rank`. On a finished run the settings are those of the run.
+#[derive(Debug, Args)]
+#[command(after_help = kinmark::report::CAUTION)]
+pub struct Rank {
+    /// Study file, or folder of a finished run, whose inputs are then read again and must not have
+    /// changed
+    #[arg(value_name = "STUDY|RUN")]
+    pub asked: PathBuf,
+
+    /// Folder for rank.csv and a record, as for locate [default: nothing is written]
+    #[arg(long, value_name = "DIR")]
+    pub out: Option<PathBuf>,
+
+    #[command(flatten)]
+    settings: SettingOptions,
+}
+
+impl Rank {
+    /// The settings asked for.
+    pub fn request(&self) -> Request {
+        self.settings.request()
+    }
+}
+
 /// Options of `holdout`. On a finished run the settings are those of the run.
 #[derive(Debug, Args)]
 #[command(after_help = kinmark::report::CAUTION)]
@@ -200,7 +226,9 @@ impl Holdout {
             names.extend(source.text.lines().map(str::to_owned));
         }
         let names = names.iter().map(|name| name.trim().to_owned());
-        Ok(PlanRequest::Named(names.filter(|n| !n.is_empty()).collect()))
+        Ok(PlanRequest::Named(
+            names.filter(|n| !n.is_empty()).collect(),
+        ))
     }
 
     /// Permuted pairings.
@@ -288,6 +316,11 @@ struct SettingOptions {
     #[arg(long, value_name = "N|all", value_parser = checked("top"))]
     top: Option<String>,
 
+    /// Level of candidate sets, 0.5 to 0.99: the share of parcels whose set is to hold the counterpart
+    /// [default: 0.9]
+    #[arg(long, value_name = "X", value_parser = checked("level"))]
+    level: Option<String>,
+
     /// Show no progress and no warnings on the terminal; the warnings stay in run.json
     #[arg(long)]
     quiet: bool,
@@ -342,6 +375,7 @@ impl SettingOptions {
             ("resampling", &given.resampling),
             ("hemispheres", &given.hemispheres),
             ("top", &given.top),
+            ("level", &given.level),
             ("quiet", &quiet),
             ("replace", &replace),
             ("no-report", &no_report),
@@ -379,7 +413,7 @@ mod tests {
     #[test]
     fn every_setting_has_an_option() {
         let command = Cli::command();
-        for name in ["locate", "inspect", "holdout"] {
+        for name in ["locate", "inspect", "holdout", "rank"] {
             let command = command.find_subcommand(name).unwrap();
             for key in Request::KEYS {
                 assert!(

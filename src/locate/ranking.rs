@@ -2,12 +2,13 @@
 
 use ndarray::{Array2, ArrayView1};
 
+use super::candidate_sets::{CandidateSets, Seen};
 use super::chance::Support;
 use super::{Counterpart, Placement, Space, Tally};
 use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{Pair, Seed, Side};
 use crate::evidence::{Evidence, Expression, Kind, Material, Transport};
-use crate::holdout::{Blend, Member, OutOfBag, Way};
+use crate::holdout::{Blend, Compared, Member, OutOfBag, Way};
 use crate::place::{self, Candidates};
 use crate::prepare::Study;
 use crate::transport::Mass;
@@ -221,12 +222,29 @@ impl Ranking {
         tally: &Tally,
         space: &Space,
         landmarks: &Support,
+        sets: &CandidateSets,
+        compared: &Compared,
     ) -> Vec<Placement> {
         let other = side.opposite();
+        let seen = Seen::new(compared, side);
         let mut rank_intervals = tally.rank_intervals(side);
         let mut placements: Vec<Option<Placement>> = vec![None; study.species[side].parcels.len()];
         for (at, listed) in self.listed[side].iter().enumerate() {
             let parcel = self.open[side][at];
+            let row = compared.row(side, parcel);
+            let order = place::order(ArrayView1::from(&row));
+            let admissible: Vec<usize> = order
+                .into_iter()
+                .filter(|&c| row[c] < f64::INFINITY)
+                .collect();
+            let in_set: Vec<usize> = admissible
+                .iter()
+                .enumerate()
+                .filter(|(place, &c)| sets.holds(side, at, c, *place == 0))
+                .map(|(_, &c)| c)
+                .collect();
+            let mut is_in_set = vec![false; row.len()];
+            in_set.iter().for_each(|&c| is_in_set[c] = true);
             let counterparts = listed
                 .iter()
                 .enumerate()
@@ -249,12 +267,17 @@ impl Ranking {
                             let share = self.share(side, at, candidate);
                             landmarks.chance(share, support)
                         }),
+                        in_candidate_set: is_in_set[candidate],
                     }
                 })
                 .collect();
             placements[parcel] = Some(Placement {
                 parcel,
                 counterparts,
+                candidate_set: in_set.iter().map(|&c| self.open[other][c]).collect(),
+                candidates: admissible.len(),
+                strength: seen.first_share(at, |_| true),
+                p_of_none: sets.p_of_none(side, at),
             });
         }
         let as_listed = study.species[side].parcels.as_listed();

@@ -37,9 +37,12 @@ impl PaintRequest {
         // A path such as `.` gets its name from the system.
         named(&self.run)
             .or_else(|| named(&self.run.canonicalize().ok()?))
-            .ok_or_else(|| RecordError::NotARun {
-                folder: self.run.clone(),
-                why: "there is no such folder".to_owned(),
-            }.into())
+            .ok_or_else(|| {
+                RecordError::NotARun {
+                    folder: self.run.clone(),
+                    why: "there is no such folder".to_owned(),
+                }
+                .into()
+            })
     }
 }

@@ -55,7 +55,8 @@ impl Run {
         };
         let text = |value: &Value, what: &str| {
             let text = value.as_str().map(str::to_owned);
-            text.ok_or_else(|| not_a_run(what)).map_err(PaintError::from)
+            text.ok_or_else(|| not_a_run(what))
+                .map_err(PaintError::from)
         };
         let positions = Table::read(&folder.join("positions.csv"))?;
         let counterparts = Table::read(&folder.join("counterparts.csv"))?;

@@ -134,7 +134,11 @@ pub fn hold_out(
         }
         if let Some(full) = &full {
             for set in &sets.sets {
-                let first = study.landmarks.list().iter().position(|l| l.block == set[0]);
+                let first = study
+                    .landmarks
+                    .list()
+                    .iter()
+                    .position(|l| l.block == set[0]);
                 let without = ranked.without(first.expect("every block has a landmark"));
                 moved.push(influence(&ranked, full, set, &without));
             }
@@ -214,7 +218,9 @@ pub fn hold_out(
 
 /// The landmarks of other blocks, these numbered anew.
 fn kept(landmarks: &Landmarks, out: &[usize]) -> Landmarks {
-    let stay: Vec<usize> = (0..landmarks.blocks()).filter(|b| !out.contains(b)).collect();
+    let stay: Vec<usize> = (0..landmarks.blocks())
+        .filter(|b| !out.contains(b))
+        .collect();
     let list = landmarks
         .list()
         .iter()

@@ -165,7 +165,11 @@ fn shuffled(
 ) -> Option<Landmarks> {
     let list = landmarks.list();
     let blocks: Vec<Vec<usize>> = (0..landmarks.blocks())
-        .map(|block| (0..list.len()).filter(|&at| list[at].block == block).collect())
+        .map(|block| {
+            (0..list.len())
+                .filter(|&at| list[at].block == block)
+                .collect()
+        })
         .collect();
     let largest = blocks.iter().map(Vec::len).max().unwrap_or(0);
     for _ in 0..TRIES {
@@ -193,7 +197,8 @@ fn shuffled(
             .collect();
         let is_admissible = |l: &Landmark| {
             let Pair { a, b } = &l.parcels;
-            a.iter().any(|&a| b.iter().any(|&b| questions.candidates.admit(Side::A, a, b)))
+            a.iter()
+                .any(|&a| b.iter().any(|&b| questions.candidates.admit(Side::A, a, b)))
         };
         if paired.iter().all(is_admissible) {
             let names = (0..landmarks.blocks()).map(|b| landmarks.block_name(b).to_owned());

@@ -140,7 +140,10 @@ fn named(landmarks: &Landmarks, names: &[String]) -> Result<Vec<usize>, PlanErro
                 let known: BTreeSet<&str> = known.collect();
                 return Err(PlanError::Unknown {
                     found: name.clone(),
-                    near: nearest_few(name, known).into_iter().map(str::to_owned).collect(),
+                    near: nearest_few(name, known)
+                        .into_iter()
+                        .map(str::to_owned)
+                        .collect(),
                 });
             }
         };
@@ -204,7 +207,10 @@ mod tests {
         assert_eq!(some.drawn_of, Some(220));
         let different: BTreeSet<_> = some.sets.iter().collect();
         assert_eq!(different.len(), 50);
-        assert!(some.sets.iter().all(|s| s.len() == 3 && s[0] < s[1] && s[1] < s[2]));
+        assert!(some
+            .sets
+            .iter()
+            .all(|s| s.len() == 3 && s[0] < s[1] && s[1] < s[2]));
         assert_eq!(some, subsets(12, 3, 50, Seed(1)));
         assert_ne!(some, subsets(12, 3, 50, Seed(2)));
     }

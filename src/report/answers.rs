@@ -69,9 +69,8 @@ pub fn add_to_run(
         .iter()
         .map(|(name, bytes)| ((*name).to_owned(), bytes.clone()))
         .collect();
-    let header = |bytes: &[u8]| -> Vec<u8> {
-        bytes.iter().copied().take_while(|b| *b != b'\n').collect()
-    };
+    let header =
+        |bytes: &[u8]| -> Vec<u8> { bytes.iter().copied().take_while(|b| *b != b'\n').collect() };
     write_files(run, &files, replace, &|there, new| {
         header(there) == header(new)
     })

@@ -50,7 +50,10 @@ fn heading(text: &mut String, study: &Study, found: &HeldOut) -> Result {
             format!("All {sets} sets of {size} of {blocks} landmark blocks held out in turn")
         }
     };
-    writeln!(text, "{how}.\nEvery choice made again without them (axes, alignment, weights of kinds).\n")
+    writeln!(
+        text,
+        "{how}.\nEvery choice made again without them (axes, alignment, weights of kinds).\n"
+    )
 }
 
 fn blocks_in_words(study: &Study, set: &[usize]) -> String {
@@ -101,8 +104,8 @@ fn figures(text: &mut String, study: &Study, found: &HeldOut) -> Result {
 }
 
 fn cut(words: &str) -> String {
-    match words.chars().count() > 13 {
-        true => words.chars().take(12).chain(['…']).collect(),
+    match words.chars().count() > 12 {
+        true => words.chars().take(11).chain(['…']).collect(),
         false => words.to_owned(),
     }
 }
@@ -112,7 +115,10 @@ fn permuted(text: &mut String, found: &HeldOut) -> Result {
         return Ok(());
     };
     let kinds: Vec<String> = permuted.kinds.iter().map(ToString::to_string).collect();
-    let left_out = found.kinds.iter().any(|m| !permuted.kinds.contains(&m.kind));
+    let left_out = found
+        .kinds
+        .iter()
+        .any(|m| !permuted.kinds.contains(&m.kind));
     writeln!(
         text,
         "Does the pairing matter? Mean reciprocal rank by {} ({} axes), each block left out:\n  \
@@ -153,7 +159,11 @@ fn poorly_found(text: &mut String, study: &Study, found: &HeldOut) -> Result {
     // The mean over sets, for each landmark.
     let mut means: Vec<(usize, f64, Pair<usize>)> = (0..list.len())
         .filter_map(|at| {
-            let own: Vec<_> = found.landmarks.iter().filter(|h| h.landmark == at).collect();
+            let own: Vec<_> = found
+                .landmarks
+                .iter()
+                .filter(|h| h.landmark == at)
+                .collect();
             let percentile = own
                 .iter()
                 .map(|h| (h.placed.a.percentile() + h.placed.b.percentile()) / 2.0)
@@ -167,14 +177,21 @@ fn poorly_found(text: &mut String, study: &Study, found: &HeldOut) -> Result {
     means.sort_by(|x, y| x.1.total_cmp(&y.1));
     let many_sets = !found.each && found.sets.sets.len() > 1;
     if !means.is_empty() {
-        writeln!(text, "Poorly found (counterpart behind more than a tenth of the candidates):")?;
+        writeln!(
+            text,
+            "Poorly found (counterpart behind more than a tenth of the candidates):"
+        )?;
     }
     for (at, percentile, ranks) in means.iter().take(LISTED) {
         let ranks = match many_sets {
             true => String::new(),
             false => format!("  ranks {} and {}", ranks.a, ranks.b),
         };
-        writeln!(text, "  {:<26} percentile {percentile:.2}{ranks}", short(&list[*at].name))?;
+        writeln!(
+            text,
+            "  {:<26} percentile {percentile:.2}{ranks}",
+            short(&list[*at].name)
+        )?;
     }
     if means.len() > LISTED {
         writeln!(text, "  and {} more in holdout.csv", means.len() - LISTED)?;
@@ -198,7 +215,10 @@ fn influence(text: &mut String, study: &Study, found: &HeldOut) -> Result {
         })
         .collect();
     summaries.sort_by(|x, y| y.1.total_cmp(&x.1));
-    writeln!(text, "What everyone else does without them (parcels that are no landmark):")?;
+    writeln!(
+        text,
+        "What everyone else does without them (parcels that are no landmark):"
+    )?;
     for (name, moved, changed) in summaries.iter().take(LISTED) {
         writeln!(
             text,
@@ -215,7 +235,12 @@ fn influence(text: &mut String, study: &Study, found: &HeldOut) -> Result {
             short(name)
         )?;
     }
-    if found.each && found.kinds.iter().any(|m| m.kind == crate::evidence::Kind::Transport) {
+    if found.each
+        && found
+            .kinds
+            .iter()
+            .any(|m| m.kind == crate::evidence::Kind::Transport)
+    {
         writeln!(
             text,
             "  Without a block transport is averaged over a third of its replicates, so some firsts change by that alone."
@@ -310,7 +335,10 @@ fn landmarks(study: &Study, found: &HeldOut) -> Vec<u8> {
         row.push(held.distance.to_string());
         row.push(held.space.alignment.to_string());
         row.push(held.space.axes.to_string());
-        row.push(held.contradicted.map_or_else(String::new, |c| c.to_string()));
+        row.push(
+            held.contradicted
+                .map_or_else(String::new, |c| c.to_string()),
+        );
         table.row(row);
     }
     table.bytes()

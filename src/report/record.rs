@@ -4,7 +4,7 @@ use serde::Serialize;
 
 use crate::domain::{Pair, Side};
 use crate::holdout::{Choice, Curve};
-use crate::locate::{Located, Rests};
+use crate::locate::{Located, Rests, SetLevel};
 use crate::prepare::{Inputs, Study, Treatment};
 use crate::settings::Settings;
 use crate::warning::Warning;
@@ -90,6 +90,7 @@ pub struct Record<'s> {
     landmark_blocks: usize,
     choice: Choice,
     evidence: &'s Rests,
+    candidate_sets: SetLevel,
     left_out_error: &'s [Curve],
     warnings: Vec<&'s Warning>,
     files: Vec<&'static str>,
@@ -126,6 +127,7 @@ impl<'s> Record<'s> {
             landmark_blocks: study.landmarks.blocks(),
             choice: located.choice,
             evidence: &located.evidence,
+            candidate_sets: located.set_level,
             left_out_error: &located.curves,
             warnings: study.warnings.iter().chain(&located.warnings).collect(),
             files: super::TABLES.to_vec(),

@@ -148,6 +148,7 @@ fn counterparts(study: &Study, located: &Located) -> Vec<u8> {
     for whose in ["parcel", "counterpart"] {
         header.extend(ATTRIBUTES.map(|attribute| format!("{whose}_{attribute}")));
     }
+    header.push("in_candidate_set".to_owned());
     let mut table = Table::new(header);
     for side in Side::BOTH {
         let species = [&study.species[side], &study.species[side.opposite()]];
@@ -172,6 +173,7 @@ fn counterparts(study: &Study, located: &Located) -> Vec<u8> {
                 for (species, parcel) in species.into_iter().zip([placement.parcel, found.parcel]) {
                     row.extend(attributes(&species.attributes[parcel]));
                 }
+                row.push(found.in_candidate_set.to_string());
                 table.row(row);
             }
         }

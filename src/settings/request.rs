@@ -118,6 +118,8 @@ request! {
         "all" => Ok(Top::All),
         _ => whole(key, text, 1..=usize::MAX, "all or a whole number of 1 or more").map(Top::Number),
     };
+    /// Level of candidate sets, 0.5 to 0.99: the share of parcels whose set is to hold the counterpart.
+    level: f64 = "level", |key, text| number(key, text, 0.5..=0.99, "a number from 0.5 to 0.99");
     /// No progress and no warnings on the terminal; the warnings are in run.json all the same.
     quiet: bool = "quiet", flag;
     /// Replace a finished run in the output folder, once the new one is complete.
@@ -145,6 +147,8 @@ const RIDGE: f64 = 0.4;
 const TRANSPORT_REPLICATES: usize = 120;
 /// Counterparts listed unless asked otherwise.
 const TOP: usize = 10;
+/// Level of candidate sets unless asked otherwise: nine landmark blocks reach it.
+const LEVEL: f64 = 0.9;
 
 impl Request {
     /// The default of a key, as it is written in a study file; of `threads`, which has none, a value
@@ -189,6 +193,7 @@ impl Request {
             resampling: self.resampling.unwrap_or(Resampling::Bayesian),
             hemispheres: self.hemispheres.unwrap_or(Hemispheres::Ignore),
             top: self.top.unwrap_or(Top::Number(TOP)),
+            level: self.level.unwrap_or(LEVEL),
         };
         let conduct = Conduct {
             threads: self.threads.unwrap_or(0),
@@ -278,6 +283,8 @@ mod tests {
             ("evidence", "guess"),
             ("hemispheres", "mirror"),
             ("top", "0"),
+            ("level", "0.4"),
+            ("level", "1"),
             ("quiet", "yes"),
         ] {
             let mut request = Request::default();
