@@ -8,7 +8,9 @@ use std::io::BufReader;
 
 use kinmark::affinity::{Likeness, Params as Affinity, Profiles};
 use kinmark::bootstrap::{Purpose, Stream};
-use kinmark::domain::{Connectivity, Landmark, Landmarks, Pair, Parcels, Seed, Share};
+use kinmark::domain::{
+    Attributes, Connectivity, Geometry, Landmark, Landmarks, Pair, Parcels, Seed, Share, Standing,
+};
 use kinmark::embed::{diffusion_map, DiffusionTime};
 use kinmark::evidence::{
     Evidence, Expression, Fingerprint, Grown, Kind, Material, Transport, MOST_PAIRS,
@@ -33,7 +35,7 @@ fn species(
         at.map(|i| format!("p{i:02}")).collect()
     };
     let rows = labels(&mut (0..links.nrows()));
-    let parcels = Parcels::new(name, &rows, &vec![true; rows.len()]);
+    let parcels = Parcels::new(name, &rows, &vec![Standing::Placed; rows.len()]);
     let columns = labels(&mut columns.iter().copied());
     let network = Connectivity::new(rows, columns, links, missing).unwrap();
     let profiles = Affinity {
@@ -43,6 +45,8 @@ fn species(
     let affinity = Profiles::of(&network, profiles.strongest).affinity(profiles.likeness);
     let embedding = diffusion_map(affinity, 0.5, DiffusionTime::from_number(1.0), 4).unwrap();
     Species {
+        attributes: vec![Attributes::default(); parcels.len()],
+        geometry: Geometry::default(),
         parcels,
         network,
         profiles,

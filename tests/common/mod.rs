@@ -22,10 +22,11 @@ pub const RUN: [&str; 5] = [
     "run.json",
 ];
 /// The tables among them.
-pub const TABLES: [&str; 4] = [
+pub const TABLES: [&str; 5] = [
     "axes.csv",
     "counterparts.csv",
     "landmarks.csv",
+    "parcels.csv",
     "positions.csv",
 ];
 
