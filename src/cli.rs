@@ -11,11 +11,12 @@ use std::time::Instant;
 use clap::Parser;
 use kinmark::draft::draft;
 use kinmark::error::Error;
+use kinmark::paint;
 use kinmark::pipeline::{self, Finished};
 use kinmark::prepare::prepare;
 use kinmark::report::{self, CAUTION};
 
-use args::{Cli, Command, Inspect, Locate, New};
+use args::{Cli, Command, Inspect, Locate, New, Paint};
 use progress::Progress;
 
 /// Exit code after Ctrl-C: 128 and the number of the signal.
@@ -27,6 +28,7 @@ pub fn run() -> Result<(), Error> {
         Command::New(options) => new(&options),
         Command::Inspect(options) => inspect(&options),
         Command::Locate(options) => locate(&options),
+        Command::Paint(options) => paint(options),
     }
 }
 
@@ -57,6 +59,16 @@ fn inspect(options: &Inspect) -> Result<(), Error> {
         say(report::inspection(&study, &found).as_bytes());
         say(format!("\n{CAUTION}\n").as_bytes());
     }
+    Ok(())
+}
+
+fn paint(options: Paint) -> Result<(), Error> {
+    let painted = paint::paint(&options.request())?;
+    let mut err = std::io::stderr();
+    for warning in &painted.warnings {
+        let _ = writeln!(err, "warning: {warning}");
+    }
+    say(format!("{}\n{CAUTION}\n", painted.account()).as_bytes());
     Ok(())
 }
 

@@ -2,6 +2,7 @@
 
 mod account;
 mod guess;
+mod labels;
 mod names;
 mod roles;
 mod text;
@@ -14,7 +15,7 @@ use std::path::{Path, PathBuf};
 use thiserror::Error;
 
 use crate::domain::{Pair, Transform};
-use crate::input::InputError;
+use crate::input::{Form, InputError, Pick};
 
 /// The file that is written.
 pub const STUDY_FILE: &str = "study.toml";
@@ -42,11 +43,11 @@ pub enum DraftError {
     #[error("{}: there is a study file already, which is left as it is; look at it with kinmark inspect, or remove it first", .0.display())]
     Exists(PathBuf),
     /// Nothing that looks like a matrix.
-    #[error("{}: found no matrix; expected square tables (.csv, .tsv, .txt) whose first row and first column name the same parcels{}", folder.display(), reasons(looked_at))]
+    #[error("{}: found no matrix; expected square matrices as tables (.csv, .tsv, .txt), lists of connections, NumPy (.npy, .npz), MATLAB (.mat) or .pconn.nii files{}", folder.display(), reasons(looked_at))]
     NoMatrix {
         /// The folder.
         folder: PathBuf,
-        /// Tables in it and why each is no matrix.
+        /// Files in it and why each is no matrix.
         looked_at: Vec<(String, String)>,
     },
     /// The file could not be written.
@@ -66,7 +67,7 @@ fn reasons(looked_at: &[(String, String)]) -> String {
         .map(|(name, why)| format!("{name:?}: {why}"))
         .collect();
     match looked_at.len() {
-        0 => ", and found no table at all".to_owned(),
+        0 => ", and found no such file at all".to_owned(),
         n if n > NAMED => format!(". {}. And {} more", named.join(". "), n - NAMED),
         _ => format!(". {}", named.join(". ")),
     }
@@ -77,14 +78,37 @@ fn reasons(looked_at: &[(String, String)]) -> String {
 pub struct FoundMatrix {
     /// Name of the file in the folder.
     pub file: String,
-    /// Labels of its rows.
+    /// How it is stored.
+    pub form: Form,
+    /// Its rows.
+    pub rows: usize,
+    /// Labels of its rows, its own or from a file; none where there are none.
     pub labels: Vec<String>,
+    /// The file of its labels, where it needs one and one was found.
+    pub label_file: Option<FoundLabels>,
+    /// Whether it needs a file of labels that was not found.
+    pub lacks_labels: bool,
+    /// Array that is the matrix, where the file must be told.
+    pub variable: Option<Pick>,
+    /// Array that holds the labels, where the file must be told.
+    pub label_variable: Option<Pick>,
     /// What its weights seem to be.
     pub guess: Guess,
     /// How such weights are transformed by default; unknown where it cannot be read yet.
     pub transform: Option<Transform>,
     /// What keeps it from being read.
     pub fault: Option<InputError>,
+}
+
+/// A file of labels that was found.
+#[derive(Debug, Clone, PartialEq, Eq)]
+pub struct FoundLabels {
+    /// Name of the file in the folder.
+    pub file: String,
+    /// The labels.
+    pub labels: Vec<String>,
+    /// Files that fit as well, where only their order decided.
+    pub others: Vec<String>,
 }
 
 /// A landmark table that was found.
@@ -125,11 +149,11 @@ pub struct Draft {
     pub species: Pair<DraftSpecies>,
     /// The landmark table, where one was found.
     pub landmarks: Option<FoundLandmarks>,
-    /// Tables that are not used, and why.
+    /// Files that are not used, and why.
     pub unused: Vec<(String, String)>,
 }
 
-/// Looks at the tables of a folder and guesses their roles. Writes nothing.
+/// Looks at the files of a folder and guesses their roles. Writes nothing.
 ///
 /// # Errors
 /// [`DraftError`] for a folder that is none, that has a study file already, or without a matrix.

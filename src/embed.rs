@@ -2,9 +2,11 @@
 
 mod components;
 mod diffusion;
+mod matching;
 
 pub use components::components;
 pub use diffusion::{diffusion_map, DiffusionError, DiffusionTime};
+pub use matching::matched;
 
 use ndarray::{Array1, Array2};
 

@@ -4,6 +4,7 @@ use thiserror::Error;
 
 use crate::draft::DraftError;
 use crate::input::InputError;
+use crate::paint::PaintError;
 use crate::report::FolderError;
 use crate::watch::Interrupted;
 
@@ -19,6 +20,9 @@ pub enum Error {
     /// A folder for which no study file can be drafted.
     #[error(transparent)]
     Draft(#[from] DraftError),
+    /// A run or a surface that cannot be painted.
+    #[error(transparent)]
+    Paint(#[from] PaintError),
     /// Told to stop.
     #[error("interrupted; nothing was written")]
     Interrupted(#[from] Interrupted),
@@ -38,7 +42,11 @@ impl Error {
     #[must_use]
     pub fn exit_code(&self) -> u8 {
         match self {
-            Error::Input(_) | Error::Folder(_) | Error::Draft(_) | Error::Threads { .. } => 2,
+            Error::Input(_)
+            | Error::Folder(_)
+            | Error::Draft(_)
+            | Error::Paint(_)
+            | Error::Threads { .. } => 2,
             Error::Interrupted(_) => 130,
         }
     }

@@ -79,8 +79,7 @@ impl<'m> Material<'m> {
     /// Links and affinities of both species.
     #[must_use]
     pub fn links(&self) -> &Pair<Links> {
-        self.links
-            .get_or_init(|| self.species.map(|species| Links::of(species)))
+        self.links.get_or_init(|| self.species.map(Links::of))
     }
 
     /// What transport compares under an expression. Where one network is not square both are compared

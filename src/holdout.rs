@@ -10,4 +10,4 @@ pub use choose::{choose, Choice, Curve, Point};
 pub use contradiction::contradicted;
 pub use mixture::{leave_out, placed_out_of_bag, weigh, Blend, FirstOf, LeftOutOfMixture, Member};
 pub use out_of_bag::{out_of_bag, OutOfBag, FEWEST_REPLICATES};
-pub use trials::{run, Asked, Placed, Trials, Way};
+pub use trials::{run, Asked, Placed, Questions, Trials, Way};

@@ -8,7 +8,8 @@
 //! Data flow one way: [`input`] reads files into [`domain`] types; [`prepare`] checks, transforms
 //! ([`transform`], [`affinity`]) and embeds ([`mod@embed`]) them; [`mod@locate`] aligns
 //! ([`mod@align`]), ranks ([`evidence`], [`place`]), leaves landmarks out ([`holdout`]) and
-//! bootstraps ([`bootstrap`]); [`report`] writes. [`pipeline`] runs these in order.
+//! bootstraps ([`bootstrap`]); [`report`] writes. [`pipeline`] runs these in order, and [`mod@paint`]
+//! puts a finished run back onto surfaces.
 //!
 //! Everything found is a statistical hypothesis about homology, never a target for stimulation or
 //! surgery.
@@ -29,6 +30,7 @@ pub mod input;
 pub mod inspect;
 pub mod linalg;
 pub mod locate;
+pub mod paint;
 pub mod pipeline;
 pub mod place;
 pub mod prepare;

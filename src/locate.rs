@@ -8,7 +8,7 @@ mod ranking;
 mod replicates;
 mod span;
 
-pub use axes::{AxisEnds, Space};
+pub use axes::{AxisEnds, Space, StandardErrors, SubjectErrors};
 pub use doubt::{Doubt, Judged};
 pub use left_out::LeftOut;
 pub use replicates::Tally;
@@ -23,7 +23,7 @@ use crate::align::{Alignment, Params, PerAlignment};
 use crate::bootstrap::{interval, Purpose, Stream};
 use crate::domain::Pair;
 use crate::evidence::{Evidence, Expression, Grown, Kind, Material, Transport, Unavailable};
-use crate::holdout::{self, Asked, Choice, Curve, Member, OutOfBag, Trials, Way};
+use crate::holdout::{self, Asked, Choice, Curve, Member, OutOfBag, Questions, Trials, Way};
 use crate::place;
 use crate::prepare::Study;
 use crate::settings::EvidenceChoice;
@@ -63,6 +63,8 @@ pub struct Rests {
     pub transport_replicates: usize,
     /// Replicates that support and rank intervals come from.
     pub ranking_replicates: usize,
+    /// Replicates that drew subjects again; `None` where no subjects were given.
+    pub subject_replicates: Option<usize>,
 }
 
 /// A parcel that is no landmark, and its candidates, best first.
@@ -131,18 +133,16 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
     }
     let candidates = &study.candidates;
     let asked = Asked::draw(&study.landmarks, candidates, settings.seed);
-    let mut trials = holdout::run(
-        &material,
-        &ways,
-        &open,
+    let questions = Questions {
+        open: &open,
         candidates,
-        &asked,
-        settings.seed,
-        watch,
-    )?;
-    let bagged = match transport(study, &material, &open, &asked, watch)? {
+        asked: &asked,
+        seed: settings.seed,
+    };
+    let mut trials = holdout::run(&material, &ways, &questions, watch)?;
+    let bagged = match transport(study, &material, &questions, watch)? {
         Some(Ok(bagged)) => {
-            let placed = holdout::placed_out_of_bag(&material, &bagged, &open, candidates, &asked);
+            let placed = holdout::placed_out_of_bag(&material, &bagged, &questions);
             ways.push(Way::Transport);
             trials.add(placed);
             Some(bagged)
@@ -173,10 +173,7 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             &trials,
             &members,
             bagged.as_ref(),
-            &open,
-            candidates,
-            &asked,
-            settings.seed,
+            &questions,
         )
     });
     let way = match &mixture {
@@ -200,12 +197,11 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             replicates: bagged
                 .as_ref()
                 .map_or(settings.rank_replicates, |bagged| bagged.each.len()),
-            bagged,
+            bagged: bagged.map(Box::new),
         }
     } else {
         Ranker::One(ways[way])
     };
-    let ranking_replicates = ranker.replicates(settings.replicates);
     let ranking = Ranking::new(&material, ranker, &open, study);
     let tally = replicates::run(study, &material, &spaces, &ranking, watch)?;
     for alignment in Alignment::BOTH {
@@ -247,6 +243,12 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             of: settings.replicates,
         });
     }
+    if tally.unusable > 0 {
+        warnings.push(Warning::SubjectsNotEmbedded {
+            replicates: tally.unusable,
+            of: settings.subject_replicates,
+        });
+    }
     Ok(Located {
         curves: Alignment::BOTH
             .into_iter()
@@ -258,7 +260,8 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             kinds: members,
             unavailable: unavailable.iter().map(ToString::to_string).collect(),
             transport_replicates,
-            ranking_replicates,
+            ranking_replicates: tally.ranking,
+            subject_replicates: tally.drawn.then_some(tally.drawn_again),
         },
         spaces,
         left_out,
@@ -296,8 +299,7 @@ fn can_be_fitted(way: &Way, material: &Material<'_>, study: &Study) -> Result<()
 fn transport(
     study: &Study,
     material: &Material<'_>,
-    open: &Pair<Vec<usize>>,
-    asked: &Asked,
+    questions: &Questions<'_>,
     watch: &dyn Watch,
 ) -> Result<Option<Result<OutOfBag, Unavailable>>, Interrupted> {
     let settings = &study.settings;
@@ -314,16 +316,7 @@ fn transport(
     let members: Vec<&dyn Evidence> = members.iter().map(|m| m as &dyn Evidence).collect();
     let parcels = study.species.as_ref().map(|s| s.parcels.len());
     let replicates = Transport::replicates(settings.transport_replicates, parcels);
-    holdout::out_of_bag(
-        material,
-        &members,
-        replicates,
-        open,
-        asked,
-        settings.seed,
-        watch,
-    )
-    .map(Some)
+    holdout::out_of_bag(material, &members, replicates, questions, watch).map(Some)
 }
 
 /// Whether a kind takes part under a setting.

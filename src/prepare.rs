@@ -1,17 +1,13 @@
 //! From files to two species ready for comparison: read, check, transform, embed.
 
-use std::collections::BTreeMap;
 use std::path::Path;
 
 use serde::Serialize;
 
-use crate::affinity::{self, Profiles};
+use crate::affinity;
 use crate::bootstrap::{Purpose, Stream};
-use crate::domain::{
-    Attributes, Connectivity, Geometry, Hemispheres, Landmarks, Pair, Parcels, RowsAre, Side,
-    Standing, Tracer, Transform, WeightKind,
-};
-use crate::embed::{self, DiffusionTime, Embedding};
+use crate::domain::{Hemispheres, Landmarks, Pair, RowsAre, Side, Tracer, Transform, WeightKind};
+use crate::embed::{self, DiffusionError};
 use crate::evidence::{Evidence, Fingerprint, Material, Transport};
 use crate::input::{self, InputError, InputFile, ParcelFault, Place, Problem, Source, SpeciesFile};
 use crate::place::Candidates;
@@ -21,22 +17,25 @@ use crate::transform;
 use crate::transport::Mass;
 use crate::warning::Warning;
 
+mod again;
 mod arrange;
+mod cohort;
+mod embedding;
 mod fold;
+mod measured;
 mod parts;
 mod raw_facts;
+mod reading;
 mod sides;
 mod suspicion;
 
-use arrange::{standing, Arranged};
-use fold::Folding;
+pub use again::{drawn_again, Again};
+pub use cohort::Cohort;
+use embedding::embed_strengths;
 pub use parts::Parts;
 pub use raw_facts::{Filled, RawFacts, SumsToOne};
+use reading::{read_species, Raw};
 
-/// Fewest parcels that make an embedding.
-const FEWEST_PARCELS: usize = 4;
-/// Fewest entries of a profile by which parcels can be compared.
-const FEWEST_COLUMNS: usize = 3;
 /// Most axes that are tried when left-out landmarks choose.
 const MOST_AXES: usize = 12;
 
@@ -65,8 +64,11 @@ pub struct Inputs {
     pub study: InputFile,
     /// The landmark table.
     pub landmarks: InputFile,
-    /// The matrices.
-    pub matrix: Pair<InputFile>,
+    /// The matrices; `None` where a species' connectivity is the mean of its subjects.
+    pub matrix: Pair<Option<InputFile>>,
+    /// The matrices of subjects, where there are any.
+    #[serde(skip_serializing_if = "none")]
+    pub subjects: Pair<Vec<InputFile>>,
     /// Files of labels, where matrices have them.
     #[serde(skip_serializing_if = "none")]
     pub labels: Pair<Vec<InputFile>>,
@@ -104,6 +106,8 @@ pub struct Study {
     pub raw: Pair<RawFacts>,
     /// What was read.
     pub inputs: Inputs,
+    /// Individuals, where their matrices were given.
+    pub cohorts: Pair<Option<Cohort>>,
     /// Which parcels may be counterparts.
     pub candidates: Candidates,
     /// What was asked for, before defaults.
@@ -114,20 +118,6 @@ pub struct Study {
     pub conduct: Conduct,
     /// What is legal but suspicious.
     pub warnings: Vec<Warning>,
-}
-
-/// One species' matrix as read, with what its parcels are.
-struct Raw {
-    file: InputFile,
-    labels: Vec<InputFile>,
-    table: Option<InputFile>,
-    distances: Option<InputFile>,
-    warnings: Vec<Warning>,
-    network: Connectivity,
-    parcels: Parcels,
-    attributes: Vec<Attributes>,
-    geometry: Geometry,
-    facts: RawFacts,
 }
 
 /// Reads a study and everything it names. `asked` wins over the study file's own settings.
@@ -183,19 +173,26 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
     let inputs = Inputs {
         study: description.file,
         landmarks: table.file,
-        matrix: raw.as_ref().map(|raw| raw.file.clone()),
+        matrix: raw.as_ref().map(|raw| raw.matrix.clone()),
+        subjects: raw.as_ref().map(|raw| raw.subjects.clone()),
         labels: raw.as_ref().map(|raw| raw.labels.clone()),
         parcels: raw.as_ref().map(|raw| raw.table.clone()),
         distances: raw.as_ref().map(|raw| raw.distances.clone()),
     };
     let facts = raw.as_ref().map(|raw| raw.facts.clone());
+    let places = raw.as_ref().map(|raw| raw.place.clone());
+    let mut raw = raw;
+    let cohorts = Pair {
+        a: raw.a.cohort.take(),
+        b: raw.b.cohort.take(),
+    };
     let species = raw.try_map_at_once(conduct.threads, |side, raw| {
         embed_species(raw, side, &treatment[side], &settings, most)
     })?;
 
     for side in Side::BOTH {
         if species[side].embedding.axes() == 0 {
-            let place = Place::file(&inputs.matrix[side].path);
+            let place = Place::file(&places[side]);
             return Err(InputError::new(place, Problem::NoAxes { side }));
         }
     }
@@ -213,7 +210,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
                 .find(|side| species[*side].embedding.axes() < axes)
             {
                 return Err(InputError::new(
-                    Place::file(&inputs.matrix[side].path),
+                    Place::file(&places[side]),
                     Problem::TooManyAxes {
                         side,
                         axes,
@@ -251,6 +248,7 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         treatment,
         raw: facts,
         inputs,
+        cohorts,
         candidates,
         asked,
         settings,
@@ -294,156 +292,6 @@ fn check_evidence(
         kind: unavailable.kind,
         why: unavailable.why,
     })
-}
-
-/// What is known of a species besides its connections, for the labels of its matrix.
-struct Known {
-    attributes: Vec<Attributes>,
-    geometry: Geometry,
-    table: Option<InputFile>,
-    distances: Option<InputFile>,
-}
-
-fn read_known(
-    described: &SpeciesFile,
-    labels: &[String],
-    warnings: &mut Vec<Warning>,
-) -> Result<Known, InputError> {
-    let table = match &described.parcels {
-        None => None,
-        Some(path) => {
-            let source = Source::read(path)?;
-            let table = input::read_parcels(&source, labels, &described.name)?;
-            warnings.extend(table.warnings);
-            Some((table.file, table.attributes))
-        }
-    };
-    let distances = match &described.distances {
-        None => None,
-        Some(path) => {
-            let own = described.labels.as_deref();
-            let read = input::read_distances(path, own, labels, &described.name)?;
-            warnings.extend(read.warnings);
-            Some((read.file, read.values))
-        }
-    };
-    let (table, attributes) = table.unzip();
-    let (file, distances) = distances.unzip();
-    let attributes: Vec<Attributes> =
-        attributes.unwrap_or_else(|| vec![Attributes::default(); labels.len()]);
-    let coordinates = attributes.iter().map(|a| a.coordinates).collect();
-    Ok(Known {
-        geometry: Geometry::new(coordinates, distances),
-        attributes,
-        table,
-        distances: file,
-    })
-}
-
-/// Reads and checks one matrix and what is said of its parcels, folds it where that is asked for, and
-/// finds the parcels that take part.
-fn read_species(described: &SpeciesFile, hemispheres: Hemispheres) -> Result<Raw, InputError> {
-    let matrix = input::read_matrix_of(described)?;
-    let mut warnings = matrix.warnings;
-    let fail = |problem| Err(InputError::new(Place::file(&described.matrix), problem));
-    suspicion::look_over(&matrix.network, described, &mut warnings);
-    let filled = raw_facts::filled(&matrix.network);
-    let arranged = Arranged::of(matrix.network, matrix.rows_are, described.weights);
-    if arranged.missing > 0 {
-        warnings.push(Warning::MissingEntries {
-            species: described.name.clone(),
-            entries: arranged.missing,
-            mirrored: arranged.mirrored,
-            columns: arranged.unobserved_columns,
-        });
-    }
-    let mut network = arranged.network;
-    let mut labels = network.row_labels().to_vec();
-    let mut known = read_known(described, &labels, &mut warnings)?;
-    let mut copies = BTreeMap::new();
-    let folding = (hemispheres == Hemispheres::Fold)
-        .then(|| Folding::of(&labels, &known.attributes))
-        .flatten();
-    if let Some(folding) = folding {
-        network = folding.network(&network, described.weights);
-        if !network.weights().iter().all(|w| w.is_finite()) {
-            return fail(ParcelFault::FoldOverflows.into());
-        }
-        let attributes = folding.attributes(&known.attributes);
-        known.geometry = folding.geometry(&known.geometry, &attributes);
-        known.attributes = attributes;
-        labels = folding.labels();
-        copies = folding.copies();
-        let alone = folding.without_copy();
-        if !alone.is_empty() {
-            warnings.push(Warning::NoCopy {
-                species: described.name.clone(),
-                parcels: alone,
-            });
-        }
-    }
-    suspicion::components(&network, described, &mut warnings);
-    let standing = standing(&network, described.weights, arranged.missing > 0);
-    if standing.iter().all(|s| *s == Standing::Uncovered) {
-        return fail(Problem::AllMissing);
-    }
-    if !standing.contains(&Standing::Placed) {
-        return fail(Problem::AllZero);
-    }
-    let parcels = Parcels::new(&described.name, &labels, &standing).made_of(copies);
-    if parcels.len() < FEWEST_PARCELS {
-        return fail(Problem::TooFewParcels {
-            found: parcels.len(),
-            needed: FEWEST_PARCELS,
-        });
-    }
-    let (rows, columns) = in_order(&network, &standing);
-    if columns.len() < FEWEST_COLUMNS {
-        return fail(Problem::TooFewColumns {
-            found: columns.len(),
-            needed: FEWEST_COLUMNS,
-        });
-    }
-    for (parcels, observed) in [(parcels.isolated(), true), (parcels.uncovered(), false)] {
-        if !parcels.is_empty() {
-            warnings.push(Warning::SetAside {
-                species: described.name.clone(),
-                parcels: parcels.to_vec(),
-                observed,
-            });
-        }
-    }
-    let selected = network.select(&rows, &columns);
-    // A large network is dear to keep twice.
-    drop(network);
-    Ok(Raw {
-        file: matrix.file,
-        labels: matrix.labels,
-        table: known.table,
-        distances: known.distances,
-        attributes: rows.iter().map(|&i| known.attributes[i].clone()).collect(),
-        geometry: known.geometry.select(&rows),
-        warnings,
-        facts: RawFacts::of(&selected, arranged.rows_are, described.weights, filled),
-        network: selected,
-        parcels,
-    })
-}
-
-/// The rows that take part, in bytewise order of their labels, and the columns likewise, without those
-/// of parcels that do not take part.
-fn in_order(network: &Connectivity, standing: &[Standing]) -> (Vec<usize>, Vec<usize>) {
-    let in_order = |labels: &[String], kept: &dyn Fn(usize) -> bool| -> Vec<usize> {
-        let mut order: Vec<usize> = (0..labels.len()).filter(|&at| kept(at)).collect();
-        order.sort_by(|&i, &j| labels[i].as_bytes().cmp(labels[j].as_bytes()));
-        order
-    };
-    let takes_part = |row: usize| standing[row] == Standing::Placed;
-    let rows = in_order(network.row_labels(), &takes_part);
-    let columns = in_order(network.column_labels(), &|column| {
-        network.row_of_column(column).is_none_or(takes_part)
-    });
-    (rows, columns)
 }
 
 fn treatment(described: &SpeciesFile, raw: &Raw) -> Treatment {
@@ -494,25 +342,11 @@ fn embed_species(
     axes: usize,
 ) -> Result<Species, InputError> {
     let network = transform::apply(raw.network, treatment.weights, treatment.transform);
-    let profiles = Profiles::of(&network, treatment.affinity.strongest);
-    let embedding: Embedding = match settings.embedding {
-        embed::Method::Components => {
-            embed::components(&profiles.standardised(treatment.affinity.likeness), axes)
-        }
-        embed::Method::Diffusion => {
-            let affinity = profiles.affinity(treatment.affinity.likeness);
-            drop(profiles);
-            embed::diffusion_map(
-                affinity,
-                settings.density_exponent,
-                DiffusionTime::from_number(settings.diffusion_time),
-                axes,
-            )
-            .map_err(|embed::DiffusionError::Disconnected| {
-                InputError::new(Place::file(&raw.file.path), Problem::Disconnected { side })
-            })?
-        }
-    };
+    let embedding = embed_strengths(&network, treatment, settings, axes).map_err(
+        |DiffusionError::Disconnected| {
+            InputError::new(Place::file(&raw.place), Problem::Disconnected { side })
+        },
+    )?;
     let areas = raw.attributes.iter().map(|a| a.extent?.area()).collect();
     Ok(Species {
         areas,

@@ -84,6 +84,8 @@ pub struct Settings {
     pub replicates: usize,
     /// How many of them also rank, for rank intervals.
     pub rank_replicates: usize,
+    /// How many of them also draw subjects again, where a species has any.
+    pub subject_replicates: usize,
     /// Seed of every random draw.
     pub seed: Seed,
     /// Axes of the joint spaces.

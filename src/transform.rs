@@ -112,3 +112,39 @@ fn ranks(mut sorted: Vec<f64>) -> Box<dyn Fn(f64) -> f64> {
     let no_connection = if zero_is_least { share(0.0) } else { 0.0 };
     Box::new(move |w| share(w) - no_connection)
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use ndarray::Array2;
+
+    /// Fractions from one in a million to all, as tracer studies find them, ten parcels that each send
+    /// one weak link to another: under the default transform the weakest link is no closer to no link
+    /// than to one of ten times its weight, and every one keeps its place in the order.
+    #[test]
+    fn fractions_over_six_orders_keep_their_weak_connections() {
+        let n = 10;
+        let labels: Vec<String> = (0..n).map(|i| format!("p{i}")).collect();
+        let fraction = |i: usize, j: usize| match (i + 2 * j) % 9 {
+            0..=1 => 0.0,
+            order => 10.0_f64.powi(order as i32 - 8),
+        };
+        let weights =
+            Array2::from_shape_fn((n, n), |(i, j)| if i == j { 0.0 } else { fraction(i, j) });
+        let network = Connectivity::new(labels.clone(), labels, weights.clone(), None).unwrap();
+        let transform = default_for(&network, WeightKind::Fractions);
+        assert_eq!(transform, Transform::LogFloor);
+        let strengths = apply(network, WeightKind::Fractions, transform);
+        for (at, strength) in strengths.weights().indexed_iter() {
+            let expected = if weights[at] > 0.0 {
+                weights[at].log10() + 7.0
+            } else {
+                0.0
+            };
+            assert!((strength - expected).abs() < 1e-9, "{at:?}: {strength}");
+        }
+        // What `log1p` would have made of the same weakest link, for comparison.
+        let lost = (1e-6_f64 / 1e-3).ln_1p() / (1.0_f64 / 1e-3).ln_1p();
+        assert!(lost < 1e-3 && 1.0 / 7.0 > 100.0 * lost);
+    }
+}

@@ -72,6 +72,29 @@ pub enum Warning {
         /// Whether they were observed, so that they have no connection; else too little of them was.
         observed: bool,
     },
+    /// Individuals that cannot be used.
+    SubjectsSetAside {
+        /// The species.
+        species: String,
+        /// Their names, and why.
+        subjects: Vec<(String, String)>,
+        /// Individuals that are left.
+        kept: usize,
+    },
+    /// A group matrix that is not much like the mean of its individuals.
+    MatrixIsNotMean {
+        /// The species.
+        species: String,
+        /// Their correlation over all entries.
+        correlation: f64,
+    },
+    /// Draws of individuals that could not be embedded.
+    SubjectsNotEmbedded {
+        /// How many.
+        replicates: usize,
+        /// Of how many.
+        of: usize,
+    },
     /// Landmark parcels that cannot be placed, so that nothing can be anchored to them.
     LandmarksReduced {
         /// The parcels, in words.
@@ -113,6 +136,49 @@ pub enum Warning {
         mirrored: usize,
         /// Lines without any observed entry.
         columns: usize,
+    },
+    /// Labels of a surface that the run does not know.
+    SurfaceUnknown {
+        /// The file.
+        file: String,
+        /// The labels, each with near spellings that the run knows.
+        labels: Vec<(String, Vec<String>)>,
+        /// Vertices that bear them.
+        vertices: usize,
+    },
+    /// Keys of a surface without a label.
+    SurfaceNameless {
+        /// The file.
+        file: String,
+        /// The keys.
+        keys: Vec<String>,
+        /// Vertices that bear them.
+        vertices: usize,
+    },
+    /// Parcels of a surface that the run has set aside.
+    SurfaceSetAside {
+        /// The file.
+        file: String,
+        /// Their labels.
+        parcels: Vec<String>,
+        /// Vertices that belong to them.
+        vertices: usize,
+    },
+    /// A file with more arrays of labels than the one that is read.
+    SurfaceMoreArrays {
+        /// The file.
+        file: String,
+        /// Arrays of labels in it.
+        arrays: usize,
+    },
+    /// Parcels of a run that no surface shows.
+    SurfaceLacks {
+        /// The species.
+        species: String,
+        /// Their labels.
+        parcels: Vec<String>,
+        /// Parcels of the species.
+        of: usize,
     },
     /// Two landmarks that are the two sides of one area but may be left out one at a time.
     SidesNotBlocked {
@@ -308,6 +374,32 @@ impl fmt::Display for Warning {
                 },
                 listed(parcels)
             ),
+            Warning::SubjectsSetAside {
+                species,
+                subjects,
+                kept,
+            } => {
+                let named: Vec<String> = subjects
+                    .iter()
+                    .map(|(name, why)| format!("{name} ({why})"))
+                    .collect();
+                write!(
+                    f,
+                    "{species}: subjects set aside: {}; {kept} are left",
+                    listed(&named)
+                )
+            }
+            Warning::MatrixIsNotMean {
+                species,
+                correlation,
+            } => write!(
+                f,
+                "{species}: the matrix correlates with the mean of the subjects by only {correlation:.2}; replicates average subjects, so intervals may not surround what the matrix shows: check that both were processed alike, or leave out the matrix"
+            ),
+            Warning::SubjectsNotEmbedded { replicates, of } => write!(
+                f,
+                "{replicates} of {of} draws of subjects could not be used: too few landmarks kept their connections, or the affinity fell apart"
+            ),
             Warning::LandmarksReduced { parcels, landmarks } => {
                 write!(
                     f,
@@ -451,6 +543,62 @@ impl fmt::Display for Warning {
                 f,
                 "landmark {landmark} is contradicted by the others: left out, its counterpart ranks {} of {} and {} of {} in the joint space; check it, or run again without it",
                 from_a.0, from_a.1, from_b.0, from_b.1
+            ),
+            Warning::SurfaceUnknown {
+                file,
+                labels,
+                vertices,
+            } => {
+                let named: Vec<String> = labels
+                    .iter()
+                    .map(|(label, near)| match near.first() {
+                        Some(near) => format!("{label:?} (near {near:?})"),
+                        None => format!("{label:?}"),
+                    })
+                    .collect();
+                write!(
+                    f,
+                    "{file}: {} no parcel of the run, so {} without a value: {}; if these are parcels, give them the labels of the matrix",
+                    counted(labels.len(), "label", "labels"),
+                    counted(*vertices, "vertex", "vertices"),
+                    listed(&named)
+                )
+            }
+            Warning::SurfaceNameless {
+                file,
+                keys,
+                vertices,
+            } => write!(
+                f,
+                "{file}: {} without a label in the table, so {} without a value: {}",
+                counted(keys.len(), "key", "keys"),
+                counted(*vertices, "vertex", "vertices"),
+                listed(keys)
+            ),
+            Warning::SurfaceSetAside {
+                file,
+                parcels,
+                vertices,
+            } => write!(
+                f,
+                "{file}: {} set aside in the run for want of connections, so {} without a value: {}",
+                counted(parcels.len(), "parcel", "parcels"),
+                counted(*vertices, "vertex", "vertices"),
+                listed(parcels)
+            ),
+            Warning::SurfaceMoreArrays { file, arrays } => write!(
+                f,
+                "{file}: it holds {arrays} arrays of labels, of which the first is painted; save the one you mean in a file of its own"
+            ),
+            Warning::SurfaceLacks {
+                species,
+                parcels,
+                of,
+            } => write!(
+                f,
+                "{species}: {} of {of} parcels of the run lie on no vertex of the label files: {}; give the files of both hemispheres in one command, or compare the labels",
+                parcels.len(),
+                listed(parcels)
             ),
             Warning::LeftOutUnderdetermined { axes, blocks } => write!(
                 f,

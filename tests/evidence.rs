@@ -44,9 +44,10 @@ fn species(
     };
     let affinity = Profiles::of(&network, profiles.strongest).affinity(profiles.likeness);
     let embedding = diffusion_map(affinity, 0.5, DiffusionTime::from_number(1.0), 4).unwrap();
+    let known = vec![Attributes::default(); parcels.len()];
     Species {
-        attributes: vec![Attributes::default(); parcels.len()],
-        geometry: Geometry::default(),
+        geometry: Geometry::new(vec![None; parcels.len()], None),
+        attributes: known,
         parcels,
         network,
         profiles,

@@ -18,33 +18,18 @@ fn data(name: &str) -> PathBuf {
 
 /// A species whose matrix is a file beside the script that made it.
 fn species(matrix: &str) -> SpeciesFile {
-    SpeciesFile {
-        name: "Vole".to_owned(),
-        matrix: data(matrix),
-        labels: None,
-        column_labels: None,
-        rows: None,
-        tracer: None,
-        variable: None,
-        label_variable: None,
-        parcels: None,
-        distances: None,
-        weights: WeightKind::Counts,
-        transform: None,
-        likeness: None,
-        strongest: None,
-    }
+    SpeciesFile::new("Vole", &data(matrix), WeightKind::Counts)
 }
 
 fn read(species: &SpeciesFile) -> Connectivity {
-    let matrix = read_matrix_of(species).unwrap_or_else(|e| panic!("{e}"));
-    assert_eq!(matrix.warnings, [], "{}", species.matrix.display());
-    assert_eq!(matrix.file.path, species.matrix);
+    let matrix = read_matrix_of(species, species.source()).unwrap_or_else(|e| panic!("{e}"));
+    assert_eq!(matrix.warnings, [], "{}", species.source().display());
+    assert_eq!(matrix.file.path, species.source());
     assert_eq!(
         matrix.labels.first().map(|l| &l.path),
         species.labels.as_ref(),
         "{}",
-        species.matrix.display()
+        species.source().display()
     );
     matrix.network
 }
@@ -57,7 +42,7 @@ fn with_labels(matrix: &str) -> SpeciesFile {
 }
 
 fn error(species: &SpeciesFile) -> InputError {
-    read_matrix_of(species).expect_err("it must be refused")
+    read_matrix_of(species, species.source()).expect_err("it must be refused")
 }
 
 /// The matrix that all files hold.
@@ -373,7 +358,7 @@ fn missing_entries_are_told_from_zeros() {
     let matrix = folder.path().join("x");
     std::fs::write(&matrix, one_entry(f32::NAN)).unwrap();
     let array = SpeciesFile {
-        matrix: matrix.clone(),
+        matrix: Some(matrix.clone()),
         ..with_labels("labels.txt")
     };
     let network = read(&array);
@@ -667,7 +652,7 @@ fn broken_texts() {
 fn no_damage_makes_it_panic() {
     let folder = tempfile::tempdir().unwrap();
     let damaged = SpeciesFile {
-        matrix: folder.path().join("x"),
+        matrix: Some(folder.path().join("x")),
         ..species("f8.npy")
     };
     let mut tried = 0;
@@ -685,12 +670,13 @@ fn no_damage_makes_it_panic() {
             let mut changed = whole.clone();
             changed[at] ^= [0xff, 0x01, 0x80][at % 3];
             for bytes in [changed.as_slice(), &whole[..at]] {
-                std::fs::write(&damaged.matrix, bytes).unwrap();
+                std::fs::write(damaged.source(), bytes).unwrap();
                 for variable in [None, Some("weights".to_owned())] {
-                    let _ = read_matrix_of(&SpeciesFile {
+                    let described = SpeciesFile {
                         variable,
                         ..damaged.clone()
-                    });
+                    };
+                    let _ = read_matrix_of(&described, described.source());
                     tried += 1;
                 }
             }
@@ -705,7 +691,7 @@ fn gzip_may_hold_any_format() {
     let matrix = folder.path().join("x.pconn.nii.gz");
     std::fs::write(&matrix, gzip(&file("f4.pconn.nii"))).unwrap();
     let packed = SpeciesFile {
-        matrix,
+        matrix: Some(matrix),
         ..species("f8.npy")
     };
     assert_eq!(read(&packed), expected());
@@ -760,7 +746,7 @@ fn counterparts(rewrite: impl Fn(&[String], &[Vec<f64>], &str) -> Vec<u8>, keys:
         .args(["--replicates", "20", "--quiet"]);
     Run::of(&mut command).succeeded();
     let inputs = &common::record(&out)["inputs"];
-    let recorded = inputs["labels"]["b"]["path"].as_str();
+    let recorded = inputs["labels"]["b"][0]["path"].as_str();
     assert_eq!(recorded.is_some(), keys.contains("labels"), "{inputs}");
     common::read(&out.join("counterparts.csv"))
 }

@@ -737,6 +737,7 @@ fn the_record_says_what_was_done() {
         json!({
             "replicates": 20,
             "rank-replicates": 20,
+            "subject-replicates": 20,
             "seed": u64::MAX,
             "axes": "auto",
             "embedding": "diffusion",

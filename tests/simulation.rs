@@ -171,7 +171,8 @@ fn standard_errors_match_the_spread_over_other_landmarks() {
                     let gap = positions[(parcel, axis)] - there.positions.a[(parcel, axis)];
                     sums.gaps[(row, axis)] += gap;
                     sums.squares[(row, axis)] += gap * gap;
-                    sums.claimed[(row, axis)] += space.standard_errors.a[(parcel, axis)].powi(2);
+                    sums.claimed[(row, axis)] +=
+                        space.standard_errors.landmarks.a[(parcel, axis)].powi(2);
                 }
             }
         }

@@ -18,6 +18,8 @@ pub enum Purpose {
     Evidence,
     /// Chance inside a kind of evidence, with landmarks left out.
     EvidenceLeftOut,
+    /// Which individuals are drawn, in a replicate of one species.
+    Subjects,
     /// Which blocks of landmarks costly evidence does without, in three replicates.
     OutOfBag,
     /// Weights of the blocks it keeps, in a replicate.
@@ -33,6 +35,7 @@ impl Purpose {
             Purpose::AskedMember => "asked member",
             Purpose::Evidence => "evidence",
             Purpose::EvidenceLeftOut => "evidence left out",
+            Purpose::Subjects => "subjects",
             Purpose::OutOfBag => "out of bag",
             Purpose::OutOfBagWeights => "out of bag weights",
             Purpose::OutOfBagFit => "out of bag fit",

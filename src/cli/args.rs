@@ -3,6 +3,7 @@
 use std::path::PathBuf;
 
 use clap::{Args, Parser, Subcommand};
+use kinmark::paint::PaintRequest;
 use kinmark::settings::Request;
 
 /// Map homologous brain parcels between two species.
@@ -33,6 +34,8 @@ pub enum Command {
     Inspect(Inspect),
     /// Place every parcel of either species in the other's space and write the tables
     Locate(Locate),
+    /// Paint a finished run onto a species' surfaces: maps over vertices for a viewer
+    Paint(Paint),
 }
 
 /// Options of `locate`. Each is also a key in the study file's [settings]; the command line wins.
@@ -56,6 +59,53 @@ pub struct New {
     /// Folder with the matrices and the landmark table; study.toml is written to it, never over
     /// another
     pub folder: PathBuf,
+}
+
+/// Options of `paint`.
+#[derive(Debug, Args)]
+#[command(after_help = kinmark::report::CAUTION)]
+pub struct Paint {
+    /// Folder of a finished run, as locate wrote it
+    pub run: PathBuf,
+
+    /// Species whose surfaces the label files describe: its name, or a or b
+    #[arg(long, value_name = "NAME")]
+    species: String,
+
+    /// GIFTI label file (.label.gii) of the species' parcellation; once for each hemisphere
+    #[arg(long, value_name = "FILE", required = true)]
+    labels: Vec<PathBuf>,
+
+    /// Parcel of the other species: paint where it falls; may be given several times
+    #[arg(long, value_name = "LABEL")]
+    parcel: Vec<String>,
+
+    /// Alignment whose axes are painted [default: the one whose distances the run shows]
+    #[arg(long, value_name = "procrustes|canonical")]
+    alignment: Option<String>,
+
+    /// Folder for the maps; not inside RUN [default: RUN with -maps behind its name]
+    #[arg(long, value_name = "DIR")]
+    out: Option<PathBuf>,
+
+    /// Replace maps that are there already and differ
+    #[arg(long)]
+    replace: bool,
+}
+
+impl Paint {
+    /// What is asked for.
+    pub fn request(self) -> PaintRequest {
+        PaintRequest {
+            run: self.run,
+            species: self.species,
+            labels: self.labels,
+            parcels: self.parcel,
+            alignment: self.alignment,
+            out: self.out,
+            replace: self.replace,
+        }
+    }
 }
 
 /// Options of `inspect`. It takes the settings of `locate`, so that a command line can be tried.
@@ -83,6 +133,10 @@ struct SettingOptions {
     /// How many of them also rank, for the rank intervals [default: 200]
     #[arg(long, value_name = "N", value_parser = checked("rank-replicates"))]
     rank_replicates: Option<String>,
+
+    /// How many of them also draw subjects again, where there are any [default: 200]
+    #[arg(long, value_name = "N", value_parser = checked("subject-replicates"))]
+    subject_replicates: Option<String>,
 
     /// Seed of every random draw; the same seed gives the same tables [default: 1]
     #[arg(long, value_name = "N", value_parser = checked("seed"))]
@@ -188,6 +242,7 @@ impl SettingOptions {
         for (key, value) in [
             ("replicates", &given.replicates),
             ("rank-replicates", &given.rank_replicates),
+            ("subject-replicates", &given.subject_replicates),
             ("seed", &given.seed),
             ("threads", &given.threads),
             ("axes", &given.axes),

@@ -21,8 +21,36 @@ pub fn account(draft: &Draft, file: &Path) -> String {
                     "  species {letter}  {}: {}, {} parcels",
                     species.name,
                     plain(&matrix.file),
-                    matrix.labels.len()
+                    matrix.labels.len().max(matrix.rows)
                 ));
+                for (key, pick) in [
+                    ("variable", &matrix.variable),
+                    ("label-variable", &matrix.label_variable),
+                ] {
+                    let Some(pick) = pick else { continue };
+                    lines.push(format!("             {key} {}", plain(&pick.name)));
+                    if !pick.others.is_empty() {
+                        to_do.push(format!(
+                            "check {key} of species {letter}; {} might be meant as well",
+                            listed(&pick.others)
+                        ));
+                    }
+                }
+                if let Some(found) = &matrix.label_file {
+                    lines.push(format!("             labels {}", plain(&found.file)));
+                    if !found.others.is_empty() {
+                        to_do.push(format!(
+                            "check labels of species {letter}; {} would fit as well",
+                            listed(&found.others)
+                        ));
+                    }
+                }
+                if matrix.lacks_labels {
+                    to_do.push(format!(
+                        "write the {} labels of species {letter}, one a line in the order of the rows, and name their file in the study file",
+                        matrix.rows
+                    ));
+                }
                 lines.push(format!(
                     "             weights {}: {}",
                     matrix.guess.kind, matrix.guess.because
@@ -96,6 +124,11 @@ fn plain(name: &str) -> String {
     } else {
         name.to_owned()
     }
+}
+
+fn listed(names: &[String]) -> String {
+    let names: Vec<String> = names.iter().map(|name| plain(name)).collect();
+    names.join(", ")
 }
 
 /// A path as a shell takes it.

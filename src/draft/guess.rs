@@ -74,15 +74,17 @@ pub fn guess(matrix: &MatrixLooks) -> Guess {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::domain::Connectivity;
+    use crate::input::Form;
 
     fn kind(values: &[f64]) -> WeightKind {
-        let network = Connectivity::new(vec![], vec![], ndarray::Array2::zeros((0, 0)), None);
         let looks = MatrixLooks {
-            labels: Vec::new(),
+            form: Form::Table,
+            rows: 0,
+            labels: None,
+            variable: None,
+            label_variable: None,
             off_diagonal: values.to_vec(),
             ones_on_diagonal: false,
-            read: Ok(network.unwrap()),
         };
         guess(&looks).kind
     }

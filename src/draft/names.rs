@@ -1,11 +1,12 @@
 //! Names of species from names of files.
 
+use std::collections::HashSet;
 use std::path::Path;
 
 use crate::domain::{Pair, Side};
 
 /// Words of a file name that say what it is and not whose.
-const FILLERS: [&str; 8] = [
+const FILLERS: [&str; 18] = [
     "matrix",
     "connectivity",
     "connectome",
@@ -14,7 +15,47 @@ const FILLERS: [&str; 8] = [
     "weights",
     "adjacency",
     "species",
+    "relmat",
+    "edges",
+    "edgelist",
+    "labels",
+    "label",
+    "names",
+    "parcels",
+    "regions",
+    "rois",
+    "atlas",
 ];
+/// Endings of names of files, of which several may stand one behind the other.
+const ENDINGS: [&str; 17] = [
+    "csv", "tsv", "tab", "txt", "dat", "lst", "edges", "edgelist", "labels", "names", "gz", "npy",
+    "npz", "mat", "nii", "pconn", "dpconn",
+];
+
+/// The name of a file without what tells its format.
+fn stem(file: &str) -> &str {
+    let mut stem = Path::new(file)
+        .file_name()
+        .and_then(|name| name.to_str())
+        .unwrap_or(file);
+    while let Some((before, ending)) = stem.rsplit_once('.') {
+        if before.is_empty() || !ENDINGS.contains(&ending.to_lowercase().as_str()) {
+            break;
+        }
+        stem = before;
+    }
+    stem
+}
+
+/// The telling words of a file name, in lower case.
+pub fn words(file: &str) -> HashSet<String> {
+    telling(stem(file)).map(str::to_lowercase).collect()
+}
+
+fn telling(stem: &str) -> impl Iterator<Item = &str> {
+    stem.split(|c: char| !c.is_alphanumeric())
+        .filter(|word| !word.is_empty() && !FILLERS.contains(&word.to_lowercase().as_str()))
+}
 
 /// Different names for both species; where a file says nothing, by the side.
 pub fn names(files: &Pair<Option<String>>) -> Pair<String> {
@@ -34,11 +75,7 @@ pub fn names(files: &Pair<Option<String>>) -> Pair<String> {
 
 /// The telling words of a file name, the first one capitalised.
 fn name_of(file: &str) -> Option<String> {
-    let stem = Path::new(file).file_stem()?.to_str()?;
-    let words: Vec<&str> = stem
-        .split(|c: char| !c.is_alphanumeric())
-        .filter(|word| !word.is_empty() && !FILLERS.contains(&word.to_lowercase().as_str()))
-        .collect();
+    let words: Vec<&str> = telling(stem(file)).collect();
     let name = words.join(" ");
     let mut letters = name.chars();
     let first = letters.next()?;
@@ -74,5 +111,9 @@ mod tests {
             pair("Tree shrew 2", "Species B")
         );
         assert_eq!(of("vole.csv", "vole.tsv"), pair("Vole A", "Vole B"));
+        assert_eq!(
+            of("vole.csv.gz", "shrew_relmat.pconn.nii"),
+            pair("Vole", "Shrew")
+        );
     }
 }

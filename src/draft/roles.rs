@@ -4,29 +4,35 @@ use std::collections::HashSet;
 use std::path::Path;
 
 use super::guess::guess;
+use super::labels;
 use super::names::names;
-use super::{Draft, DraftError, DraftSpecies, FoundLandmarks, FoundMatrix, FoundParcels};
+use super::{
+    Draft, DraftError, DraftSpecies, FoundLabels, FoundLandmarks, FoundMatrix, FoundParcels,
+};
 use crate::domain::{Pair, Side};
-use crate::input::{recognise, LandmarkLooks, Looks, MatrixLooks, ParcelLooks, Source};
+use crate::input::{
+    is_binary, read_matrix_of, recognise, LandmarkLooks, Looks, MatrixLooks, ParcelLooks,
+    SpeciesFile,
+};
 use crate::transform;
 
-/// Endings of tables.
-const ENDINGS: [&str; 4] = ["csv", "tsv", "tab", "txt"];
+/// Endings of texts that are looked at. What is binary tells by its first bytes what it is.
+const ENDINGS: [&str; 10] = [
+    "csv", "tsv", "tab", "txt", "dat", "lst", "edges", "edgelist", "labels", "names",
+];
 
-/// Looks at every table of a folder and settles on the likeliest three.
+/// Looks at every file of a folder that may hold a table and settles on the likeliest three.
 pub fn assign(folder: &Path) -> Result<Draft, DraftError> {
     let mut matrices = Vec::new();
     let mut tables = Vec::new();
+    let mut lists = Vec::new();
     let mut described = Vec::new();
     let mut unused = Vec::new();
     for name in files(folder)? {
-        let looks = match Source::read(&folder.join(&name)) {
-            Ok(source) => recognise(&source),
-            Err(fault) => Looks::Neither(fault.problem.to_string()),
-        };
-        match looks {
-            Looks::Matrix(looks) => matrices.push(found(name, *looks)),
+        match recognise(&folder.join(&name)) {
+            Looks::Matrix(looks) => matrices.push((name, *looks)),
             Looks::Landmarks(looks) => tables.push((name, looks)),
+            Looks::Labels(labels) => lists.push((name, labels)),
             Looks::Parcels(looks) => described.push((name, looks)),
             Looks::Neither(why) => unused.push((name, why)),
         }
@@ -35,7 +41,15 @@ pub fn assign(folder: &Path) -> Result<Draft, DraftError> {
     for (name, _) in tables {
         unused.push((name, "another landmark table has more rows".to_owned()));
     }
+    let given = labels::assign(&matrices, &lists, landmarks.as_ref().map(|(_, l)| l));
+    let matrices: Vec<FoundMatrix> = matrices
+        .into_iter()
+        .zip(given)
+        .map(|((name, looks), labels)| found(folder, name, looks, labels))
+        .collect();
     if matrices.is_empty() {
+        unused.extend(lists.iter().map(of_list));
+        unused.sort();
         return Err(DraftError::NoMatrix {
             folder: folder.to_path_buf(),
             looked_at: unused,
@@ -44,6 +58,15 @@ pub fn assign(folder: &Path) -> Result<Draft, DraftError> {
     let chosen = likeliest_pair(&matrices, landmarks.as_ref().map(|(_, looks)| looks));
     let mut matrices: Vec<Option<FoundMatrix>> = matrices.into_iter().map(Some).collect();
     let chosen = chosen.map(|at| at.and_then(|at| matrices[at].take()));
+    for list in &lists {
+        let is_used = |m: &FoundMatrix| m.label_file.as_ref().is_some_and(|l| l.file == list.0);
+        if !Side::BOTH
+            .iter()
+            .any(|side| chosen[*side].as_ref().is_some_and(is_used))
+        {
+            unused.push(of_list(list));
+        }
+    }
     for matrix in matrices.into_iter().flatten() {
         unused.push((matrix.file, "two other matrices were taken".to_owned()));
     }
@@ -60,7 +83,7 @@ pub fn assign(folder: &Path) -> Result<Draft, DraftError> {
         file,
         rows: looks.rows,
         known: Pair::from_fn(|side| {
-            let asked = column(&looks, side);
+            let asked = looks.column(side);
             let known = chosen[side].as_ref().map_or(0, |m| hits(asked, m));
             (known, asked.len())
         }),
@@ -84,7 +107,15 @@ pub fn assign(folder: &Path) -> Result<Draft, DraftError> {
     })
 }
 
-/// Names of the tables in a folder, in order; those no study file can spell are passed over.
+/// Why a list of labels is not used.
+fn of_list((name, labels): &(String, Vec<String>)) -> (String, String) {
+    let count = labels.len();
+    let why = format!("{count} labels, one a line, but no matrix without labels has {count} rows");
+    (name.clone(), why)
+}
+
+/// Names of the files in a folder that may hold a table, in order; those no study file can spell are
+/// passed over.
 fn files(folder: &Path) -> Result<Vec<String>, DraftError> {
     let unlisted = |e: std::io::Error| DraftError::Unlisted {
         folder: folder.to_path_buf(),
@@ -93,31 +124,60 @@ fn files(folder: &Path) -> Result<Vec<String>, DraftError> {
     let mut names = Vec::new();
     for entry in std::fs::read_dir(folder).map_err(unlisted)? {
         let path = entry.map_err(unlisted)?.path();
-        let ending = path.extension().and_then(|e| e.to_str());
-        let is_table = ending.is_some_and(|e| ENDINGS.contains(&e.to_lowercase().as_str()));
-        if let (true, true, Some(name)) = (
-            is_table,
-            path.is_file(),
-            path.file_name().and_then(|n| n.to_str()),
-        ) {
-            if !name.starts_with('.') {
-                names.push(name.to_owned());
-            }
+        let Some(name) = path.file_name().and_then(|n| n.to_str()) else {
+            continue;
+        };
+        if name.starts_with('.') || !path.is_file() {
+            continue;
+        }
+        if is_called_text(name) || is_binary(&path).unwrap_or(false) {
+            names.push(name.to_owned());
         }
     }
     names.sort();
     Ok(names)
 }
 
-fn found(file: String, looks: MatrixLooks) -> FoundMatrix {
+/// Whether a file is called as tables of text are, compressed or not.
+fn is_called_text(name: &str) -> bool {
+    let name = name.to_lowercase();
+    let plain = name.strip_suffix(".gz").unwrap_or(&name);
+    let ending = plain.rsplit_once('.').map(|(_, ending)| ending);
+    ending.is_some_and(|ending| ENDINGS.contains(&ending))
+}
+
+/// Reads a matrix as a run would, with the labels and the weights that were guessed.
+fn found(
+    folder: &Path,
+    file: String,
+    looks: MatrixLooks,
+    label_file: Option<FoundLabels>,
+) -> FoundMatrix {
     let guess = guess(&looks);
-    let (transform, fault) = match looks.read {
-        Ok(network) => (Some(transform::default_for(&network, guess.kind)), None),
-        Err(fault) => (None, Some(fault)),
-    };
+    let lacks_labels = looks.labels.is_none() && label_file.is_none();
+    let (mut transform, mut fault) = (None, None);
+    if !lacks_labels {
+        let described = SpeciesFile {
+            labels: label_file.as_ref().map(|l| folder.join(&l.file)),
+            variable: looks.variable.as_ref().map(|pick| pick.name.clone()),
+            label_variable: looks.label_variable.as_ref().map(|pick| pick.name.clone()),
+            ..SpeciesFile::new("", &folder.join(&file), guess.kind)
+        };
+        match read_matrix_of(&described, described.source()) {
+            Ok(read) => transform = Some(transform::default_for(&read.network, guess.kind)),
+            Err(e) => fault = Some(e),
+        }
+    }
+    let of_file = label_file.as_ref().map(|l| l.labels.clone());
     FoundMatrix {
         file,
-        labels: looks.labels,
+        form: looks.form,
+        rows: looks.rows,
+        labels: of_file.or(looks.labels).unwrap_or_default(),
+        label_file,
+        lacks_labels,
+        variable: looks.variable,
+        label_variable: looks.label_variable,
         guess,
         transform,
         fault,
@@ -169,9 +229,12 @@ fn likeliest_pair(
     landmarks: Option<&LandmarkLooks>,
 ) -> Pair<Option<usize>> {
     let known = |side: Side, at: usize| {
-        landmarks.map_or(0, |looks| hits(column(looks, side), &matrices[at]))
+        landmarks.map_or(0, |looks| hits(looks.column(side), &matrices[at]))
     };
-    let sound = |at: usize| usize::from(matrices[at].fault.is_none());
+    let sound = |at: usize| {
+        let matrix = &matrices[at];
+        usize::from(matrix.fault.is_none() && !matrix.lacks_labels)
+    };
     if matrices.len() < 2 {
         let is_b = known(Side::B, 0) > known(Side::A, 0);
         return Pair::from_fn(|side| ((side == Side::B) == is_b).then_some(0));
@@ -194,13 +257,6 @@ fn likeliest_pair(
     Pair {
         a: best.map(|(a, _)| a),
         b: best.map(|(_, b)| b),
-    }
-}
-
-fn column(looks: &LandmarkLooks, side: Side) -> &[String] {
-    match side {
-        Side::A => &looks.a,
-        Side::B => &looks.b,
     }
 }
 

@@ -1,10 +1,11 @@
 //! The study file as text: every guess explained, every setting in a comment.
 
-use super::{Draft, DraftSpecies, FoundLandmarks};
+use super::{Draft, DraftSpecies, FoundLandmarks, FoundMatrix};
 use crate::affinity::{Likeness, Params};
 use crate::bootstrap::Resampling;
 use crate::domain::{Choice, Hemispheres, Side, Transform, WeightKind};
 use crate::embed;
+use crate::input::Form;
 use crate::settings::{EvidenceChoice, Request};
 use crate::transport::Mass;
 
@@ -43,7 +44,7 @@ pub fn study_file(draft: &Draft) -> String {
     settings(&mut lines);
     if !draft.unused.is_empty() {
         lines.push(String::new());
-        lines.push("# Tables of this folder that are not used:".to_owned());
+        lines.push("# Files of this folder that are not used:".to_owned());
         for (name, why) in &draft.unused {
             lines.push(comment(&format!("  {}: {why}", text(name))));
         }
@@ -87,14 +88,13 @@ fn species(lines: &mut Vec<String>, side: Side, species: &DraftSpecies) {
                 "From the name of the file as far as that tells; used in every table.",
             ));
             lines.push(format!("name = {}", text(&species.name)));
-            lines.push(comment(&format!(
-                "A square table of {} parcels. Row = source, column = target, 0 = no connection.",
-                matrix.labels.len()
-            )));
+            lines.push(comment(&stored(matrix)));
             if let Some(fault) = &matrix.fault {
                 lines.push(comment(&format!("TO DO: {}", fault.problem)));
             }
             lines.push(format!("matrix = {}", text(&matrix.file)));
+            arrays(lines, matrix);
+            labels(lines, side, matrix);
             lines.push(comment(&format!(
                 "What the entries measure. Guessed {}, because {}.",
                 matrix.guess.kind, matrix.guess.because
@@ -153,6 +153,73 @@ fn species(lines: &mut Vec<String>, side: Side, species: &DraftSpecies) {
     lines.push(comment(
         "So may distances between them, a matrix of any format: distances = \"FILE\".",
     ));
+}
+
+/// What a matrix is, in a sentence.
+fn stored(matrix: &FoundMatrix) -> String {
+    let rows = matrix.labels.len().max(matrix.rows);
+    let direction = "Row = source, column = target, 0 = no connection.";
+    match matrix.form {
+        Form::Table => format!("A square table of {rows} parcels. {direction}"),
+        Form::Connections => format!(
+            "A list of connections among {rows} parcels; a pair that is not in it has the weight 0."
+        ),
+        Form::Npy => format!("A NumPy array of {rows} parcels. {direction}"),
+        Form::Npz => format!("A matrix of {rows} parcels among NumPy arrays. {direction}"),
+        Form::Mat => format!("A matrix of {rows} parcels in a MATLAB file. {direction}"),
+        Form::Cifti => format!("A CIFTI-2 matrix of {rows} parcels. {direction}"),
+    }
+}
+
+/// Which arrays of the file are meant, where it must be told.
+fn arrays(lines: &mut Vec<String>, matrix: &FoundMatrix) {
+    for (key, pick, what) in [
+        ("variable", &matrix.variable, "square matrices"),
+        (
+            "label-variable",
+            &matrix.label_variable,
+            "lists of as many texts",
+        ),
+    ] {
+        let Some(pick) = pick else { continue };
+        if pick.others.is_empty() {
+            lines.push(comment(
+                "The only square matrix among the matrices of the file.",
+            ));
+        } else {
+            let others: Vec<String> = pick.others.iter().map(|name| text(name)).collect();
+            lines.push(comment(&format!(
+                "TO DO: check; the file holds other {what} as well: {}.",
+                others.join(", ")
+            )));
+        }
+        lines.push(format!("{key} = {}", text(&pick.name)));
+    }
+}
+
+/// Where the labels are, if not in the matrix itself.
+fn labels(lines: &mut Vec<String>, side: Side, matrix: &FoundMatrix) {
+    if let Some(found) = &matrix.label_file {
+        lines.push(comment(&format!(
+            "Its {} labels, one a line; their order must be that of the rows.",
+            found.labels.len()
+        )));
+        if !found.others.is_empty() {
+            let others: Vec<String> = found.others.iter().map(|name| text(name)).collect();
+            lines.push(comment(&format!(
+                "TO DO: check; these have as many labels: {}.",
+                others.join(", ")
+            )));
+        }
+        lines.push(format!("labels = {}", text(&found.file)));
+    } else if matrix.lacks_labels {
+        lines.push(comment(&format!(
+            "TO DO: it holds no labels. Write its {} labels, one a line in the order of its rows,",
+            matrix.rows
+        )));
+        lines.push(comment("without a header, to this file:"));
+        lines.push(format!("labels = \"species-{}-labels.txt\"", side.letter()));
+    }
 }
 
 fn settings(lines: &mut Vec<String>) {

@@ -6,12 +6,12 @@ use serde::Serialize;
 
 use super::choose::choose;
 use super::out_of_bag::OutOfBag;
-use super::trials::{Asked, Placed, Trials, Way};
+use super::trials::{Placed, Questions, Trials, Way};
 use crate::align::Alignment;
 use crate::bootstrap::{Purpose, Stream};
-use crate::domain::{Pair, Seed, Side};
+use crate::domain::{Pair, Side};
 use crate::evidence::{Fitted, Kind, Material};
-use crate::place::{self, Candidates};
+use crate::place;
 
 /// How fast weight falls with left-out error, with very many landmarks.
 const SHARPNESS: f64 = 12.0;
@@ -111,11 +111,14 @@ pub fn leave_out(
     trials: &Trials,
     members: &[Member],
     bagged: Option<&OutOfBag>,
-    open: &Pair<Vec<usize>>,
-    admissible: &Candidates,
-    asked: &Asked,
-    seed: Seed,
+    questions: &Questions<'_>,
 ) -> Vec<LeftOutOfMixture> {
+    let Questions {
+        open,
+        candidates: admissible,
+        asked,
+        seed,
+    } = *questions;
     let landmarks = material.landmarks;
     (0..landmarks.len())
         .into_par_iter()
@@ -202,9 +205,7 @@ pub fn leave_out(
 pub fn placed_out_of_bag(
     material: &Material<'_>,
     bagged: &OutOfBag,
-    open: &Pair<Vec<usize>>,
-    admissible: &Candidates,
-    asked: &Asked,
+    questions: &Questions<'_>,
 ) -> Vec<Pair<Placed>> {
     struct Mean<'o>(&'o Array2<f64>);
     impl Fitted for Mean<'_> {
@@ -223,7 +224,7 @@ pub fn placed_out_of_bag(
         .enumerate()
         .map(|(at, landmark)| {
             let mean = Mean(&bagged.without[landmark.block]);
-            super::trials::place_one(&mean, landmark, asked.of(at), open, admissible)
+            super::trials::place_one(&mean, landmark, at, questions)
         })
         .collect()
 }

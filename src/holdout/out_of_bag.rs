@@ -6,7 +6,7 @@ use ndarray::Array2;
 use rand::seq::SliceRandom;
 use rayon::prelude::*;
 
-use super::trials::Asked;
+use super::trials::Questions;
 use crate::bootstrap::{steady, Purpose, Stream};
 use crate::domain::{Pair, Seed};
 use crate::evidence::{Evidence, Material, Unavailable};
@@ -57,11 +57,12 @@ pub fn out_of_bag(
     material: &Material<'_>,
     members: &[&dyn Evidence],
     replicates: usize,
-    open: &Pair<Vec<usize>>,
-    asked: &Asked,
-    seed: Seed,
+    questions: &Questions<'_>,
     watch: &dyn Watch,
 ) -> Result<Result<OutOfBag, Unavailable>, Interrupted> {
+    let Questions {
+        open, asked, seed, ..
+    } = *questions;
     let landmarks = material.landmarks;
     let blocks = landmarks.blocks();
     let every = material

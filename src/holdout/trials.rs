@@ -107,6 +107,19 @@ impl Asked {
     }
 }
 
+/// What left-out landmarks are asked, and what may be answered.
+#[derive(Debug, Clone, Copy)]
+pub struct Questions<'q> {
+    /// Parcels that are no landmark.
+    pub open: &'q Pair<Vec<usize>>,
+    /// Which parcels may be counterparts.
+    pub candidates: &'q Candidates,
+    /// The member of each landmark that is asked for.
+    pub asked: &'q Asked,
+    /// Seed of every draw.
+    pub seed: Seed,
+}
+
 /// Where the counterpart of a left-out landmark comes, seen from one species.
 #[derive(Debug, Clone, Copy, PartialEq, Eq)]
 pub struct Placed {
@@ -213,10 +226,7 @@ impl Trials {
 pub fn run(
     material: &Material<'_>,
     ways: &[Way],
-    open: &Pair<Vec<usize>>,
-    candidates: &Candidates,
-    asked: &Asked,
-    seed: Seed,
+    questions: &Questions<'_>,
     watch: &dyn Watch,
 ) -> Result<Trials, Interrupted> {
     let landmarks = material.landmarks;
@@ -241,7 +251,8 @@ pub fn run(
                             return Found::new();
                         };
                         let index = (i * blocks + j) as u64;
-                        let mut chance = Stream::new(seed, Purpose::EvidenceLeftOut, index);
+                        let mut chance =
+                            Stream::new(questions.seed, Purpose::EvidenceLeftOut, index);
                         let fitted = evidence.fit(material, &weights, &mut chance);
                         landmarks
                             .list()
@@ -249,12 +260,9 @@ pub fn run(
                             .enumerate()
                             .filter(|(_, l)| l.block == i || l.block == j)
                             .map(|(at, l)| match &fitted {
-                                Ok(fitted) => {
-                                    let asked = asked.of(at);
-                                    (at, place_one(&**fitted, l, asked, open, candidates))
-                                }
+                                Ok(fitted) => (at, place_one(&**fitted, l, at, questions)),
                                 // Without the landmark there is nothing to go by.
-                                Err(_) => (at, last_of_all(l, asked.of(at), open, candidates)),
+                                Err(_) => (at, last_of_all(l, at, questions)),
                             })
                             .collect()
                     })
@@ -300,14 +308,14 @@ pub fn run(
     })
 }
 
-/// Rank of a left-out landmark's counterpart, both ways.
+/// Rank of a left-out landmark's counterpart, both ways; `at` is its place in the list.
 pub(super) fn place_one(
     fitted: &dyn Fitted,
     landmark: &Landmark,
-    asked: Pair<usize>,
-    open: &Pair<Vec<usize>>,
-    admissible: &Candidates,
+    at: usize,
+    questions: &Questions<'_>,
 ) -> Pair<Placed> {
+    let (asked, open, admissible) = (questions.asked.of(at), questions.open, questions.candidates);
     Pair::from_fn(|from| {
         let to = from.opposite();
         let mut candidates = [&open[to][..], &landmark.parcels[to][..]].concat();
@@ -331,12 +339,8 @@ pub(super) fn place_one(
 }
 
 /// The worst rank that a landmark's counterpart can have.
-fn last_of_all(
-    landmark: &Landmark,
-    asked: Pair<usize>,
-    open: &Pair<Vec<usize>>,
-    admissible: &Candidates,
-) -> Pair<Placed> {
+fn last_of_all(landmark: &Landmark, at: usize, questions: &Questions<'_>) -> Pair<Placed> {
+    let (asked, open, admissible) = (questions.asked.of(at), questions.open, questions.candidates);
     Pair::from_fn(|from| {
         let to = from.opposite();
         let admitted = |parcels: &[usize]| {

@@ -4,6 +4,7 @@ use std::fmt;
 use std::path::{Path, PathBuf};
 
 use super::formats::Fault;
+use super::gifti::GiftiFault;
 use super::parcel_fault::ParcelFault;
 use crate::domain::Side;
 
@@ -139,6 +140,9 @@ pub enum Problem {
     /// A fault of one format of matrices.
     #[error(transparent)]
     Format(#[from] Fault),
+    /// A fault of a file of labels of a surface.
+    #[error(transparent)]
+    Gifti(#[from] GiftiFault),
     /// A fault in what is said of parcels.
     #[error(transparent)]
     Parcels(#[from] ParcelFault),
@@ -339,6 +343,24 @@ pub enum Problem {
     /// Nothing observed.
     #[error("of no parcel were enough entries observed to compare it with others; expected numbers, so check what was exported")]
     AllMissing,
+    /// A folder or pattern without files.
+    #[error("no matrices of subjects there; name a folder that holds them, a pattern such as \"subjects/*.csv\", a list of files, or one .npy of three axes")]
+    NoSubjects,
+    /// A pattern that cannot be understood.
+    #[error(
+        "this pattern of file names is not understood: {0}; use * for any characters and ? for one"
+    )]
+    BadPattern(String),
+    /// Too few individuals to draw again.
+    #[error("found {found} subjects with the same parcels, at least {needed} are needed to tell how much they differ{}; give more subjects, or a group matrix alone as matrix", aside(set_aside))]
+    TooFewSubjects {
+        /// Subjects that can be used.
+        found: usize,
+        /// Subjects needed.
+        needed: usize,
+        /// Those that cannot, and why.
+        set_aside: Vec<(String, String)>,
+    },
     /// Too few columns to compare parcels by.
     #[error("found {found} columns of data to compare parcels by, at least {needed} are needed; give links with more areas")]
     TooFewColumns {
@@ -485,6 +507,15 @@ pub(super) fn hint(near: &[String]) -> String {
     }
     let words: Vec<String> = near.iter().map(|w| format!("{w:?}")).collect();
     format!(" (did you mean {}?)", words.join(" or "))
+}
+
+/// Subjects that cannot be used, in words.
+fn aside(subjects: &[(String, String)]) -> String {
+    subjects
+        .iter()
+        .take(3)
+        .map(|(name, why)| format!(" ({name}: {why})"))
+        .collect()
 }
 
 fn blocks(landmarks: usize, blocks: usize) -> String {

@@ -1,6 +1,9 @@
 //! Formats of matrices, recognised by what the file holds. Each reader gives a [`Grid`]; nothing is
 //! checked here but the format itself.
 
+use std::io::Read;
+use std::path::Path;
+
 use super::error::{InputError, Place};
 use super::grid::{Grid, Label};
 use super::source::{Bytes, Source};
@@ -9,7 +12,7 @@ use crate::domain::WeightKind;
 mod choose;
 mod cifti;
 mod cifti_labels;
-mod edges;
+pub(super) mod edges;
 mod fault;
 mod gzip;
 mod magic;
@@ -17,12 +20,14 @@ mod mat;
 mod mat_array;
 mod npy;
 mod npz;
-mod numbers;
+pub(super) mod numbers;
+pub mod stack;
 mod text;
 
+pub use choose::{Content, Listed};
 pub use fault::Fault;
 pub use gzip::Inflated;
-use magic::Kind;
+pub use magic::Kind;
 pub use text::read as text;
 
 /// What a study says about a matrix, as far as a reader must know it.
@@ -58,15 +63,55 @@ impl Wanted<'_> {
 /// # Errors
 /// [`InputError`] where the file is damaged, of an unknown kind, or does not hold what is wanted.
 pub fn read(file: Bytes, wanted: &Wanted<'_>) -> Result<Grid, InputError> {
+    let (kind, file) = plain(file)?;
+    read_plain(kind, file, wanted)
+}
+
+/// The kind of a file, and its bytes without compression by gzip.
+///
+/// # Errors
+/// [`InputError`] where it cannot be inflated, or is compressed twice.
+pub fn plain(file: Bytes) -> Result<(Kind, Bytes), InputError> {
+    let kind = Kind::of(&file.bytes);
+    if kind != Kind::Gzip {
+        return Ok((kind, file));
+    }
+    let file = gzip::inflate(file)?;
     match Kind::of(&file.bytes) {
-        Kind::Gzip => {
-            let file = gzip::inflate(file)?;
-            match Kind::of(&file.bytes) {
-                Kind::Gzip => Err(refuse(&file, Fault::GzipTwice)),
-                kind => read_plain(kind, file, wanted),
-            }
-        }
-        kind => read_plain(kind, file, wanted),
+        Kind::Gzip => Err(refuse(&file, Fault::GzipTwice)),
+        kind => Ok((kind, file)),
+    }
+}
+
+/// The kind of a file by its first bytes, inside gzip if need be; `None` where it cannot be read.
+#[must_use]
+pub fn kind_of_file(path: &Path) -> Option<Kind> {
+    // The magic bytes that stand furthest behind are those of HDF5 in MATLAB files.
+    const ENOUGH: u64 = 1024;
+    let mut start = Vec::new();
+    let file = std::fs::File::open(path).ok()?;
+    (&file).take(ENOUGH).read_to_end(&mut start).ok()?;
+    let kind = Kind::of(&start);
+    if kind != Kind::Gzip {
+        return Some(kind);
+    }
+    let file = std::fs::File::open(path).ok()?;
+    let mut inside = Vec::new();
+    let mut inflated =
+        flate2::read::MultiGzDecoder::new(std::io::BufReader::new(file)).take(ENOUGH);
+    inflated.read_to_end(&mut inside).ok()?;
+    Some(Kind::of(&inside))
+}
+
+/// The arrays of a file that holds several; none for other kinds.
+///
+/// # Errors
+/// [`Fault`] where the file is damaged.
+pub fn arrays(kind: Kind, bytes: &[u8]) -> Result<Vec<Listed>, Fault> {
+    match kind {
+        Kind::Zip => npz::arrays(bytes),
+        Kind::Mat => mat::arrays(bytes),
+        _ => Ok(Vec::new()),
     }
 }
 

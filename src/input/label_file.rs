@@ -22,20 +22,25 @@ pub struct LabelFile {
 /// [`InputError`] where the file is no text.
 pub fn read(path: &Path) -> Result<LabelFile, InputError> {
     let source = Source::read(path)?;
-    let labels = source
+    Ok(LabelFile {
+        labels: labels_of(&source),
+        file: source.file,
+    })
+}
+
+/// The labels in a text.
+#[must_use]
+pub fn labels_of(source: &Source) -> Vec<Label> {
+    source
         .text
         .trim_end()
         .lines()
         .zip(1..)
         .map(|(line, at)| Label {
             text: unquoted(line.trim()),
-            place: Place::line(path, at),
+            place: Place::line(source.path(), at),
         })
-        .collect();
-    Ok(LabelFile {
-        file: source.file,
-        labels,
-    })
+        .collect()
 }
 
 fn unquoted(line: &str) -> String {

@@ -2,6 +2,8 @@
 
 mod lines;
 
+use std::path::Path;
+
 use ndarray::Array2;
 
 use super::error::{InputError, Place, Problem};
@@ -37,47 +39,83 @@ struct Stated<'s> {
     tracer: Option<Tracer>,
 }
 
-/// Reads a species' matrix in any format, recognised by what the file holds.
+/// Reads matrices of one species in any format, recognised by what a file holds.
+pub struct Reader<'d> {
+    described: &'d SpeciesFile,
+    labels: Option<LabelFile>,
+    column_labels: Option<LabelFile>,
+}
+
+/// Reads a species' matrix.
 ///
 /// # Errors
 /// [`InputError`] with the place and parcel for anything that is not a matrix of weights of the kind
 /// stated, between parcels or from parcels to some of them.
-pub fn read_of(described: &SpeciesFile) -> Result<Matrix, InputError> {
-    let bytes = Bytes::read(&described.matrix)?;
-    let file = bytes.file.clone();
-    let read_labels = |path: &Option<_>| path.as_deref().map(label_file::read).transpose();
-    let labels = read_labels(&described.labels)?;
-    let column_labels = read_labels(&described.column_labels)?;
-    let wanted = Wanted {
-        weights: described.weights,
-        variable: described.variable.as_deref(),
-        label_variable: described.label_variable.as_deref(),
-        labels: labels.as_ref().map(|l| l.labels.as_slice()),
-    };
-    let grid = formats::read(bytes, &wanted)?;
-    let given = Given {
-        labels: labels.as_ref(),
-        column_labels: column_labels.as_ref(),
-        orientation_stated: described.rows.is_some() || described.tracer.is_some(),
-    };
-    let stated = Stated {
-        species: &described.name,
-        weights: described.weights,
-        rows: described.rows,
-        tracer: described.tracer,
-    };
-    let (network, rows_are, warnings) = settle(grid, given, &stated)?;
-    Ok(Matrix {
-        network,
-        rows_are,
-        warnings,
-        file,
-        labels: [labels, column_labels]
-            .into_iter()
-            .flatten()
-            .map(|l| l.file)
-            .collect(),
-    })
+pub fn read_of(described: &SpeciesFile, matrix: &Path) -> Result<Matrix, InputError> {
+    Reader::new(described)?.file(matrix)
+}
+
+impl<'d> Reader<'d> {
+    /// Reads the files of labels, where there are any.
+    ///
+    /// # Errors
+    /// [`InputError`] where they cannot be read.
+    pub fn new(described: &'d SpeciesFile) -> Result<Reader<'d>, InputError> {
+        let read = |path: &Option<_>| path.as_deref().map(label_file::read).transpose();
+        Ok(Reader {
+            labels: read(&described.labels)?,
+            column_labels: read(&described.column_labels)?,
+            described,
+        })
+    }
+
+    /// Reads a file.
+    ///
+    /// # Errors
+    /// As [`read_of`].
+    pub fn file(&self, path: &Path) -> Result<Matrix, InputError> {
+        let described = self.described;
+        let bytes = Bytes::read(path)?;
+        let file = bytes.file.clone();
+        let wanted = Wanted {
+            weights: described.weights,
+            variable: described.variable.as_deref(),
+            label_variable: described.label_variable.as_deref(),
+            labels: self.labels.as_ref().map(|l| l.labels.as_slice()),
+        };
+        self.grid(formats::read(bytes, &wanted)?, file)
+    }
+
+    /// Checks what was read from a file.
+    ///
+    /// # Errors
+    /// As [`read_of`].
+    pub fn grid(&self, grid: Grid, file: InputFile) -> Result<Matrix, InputError> {
+        let described = self.described;
+        let given = Given {
+            labels: self.labels.as_ref(),
+            column_labels: self.column_labels.as_ref(),
+            orientation_stated: described.rows.is_some() || described.tracer.is_some(),
+        };
+        let stated = Stated {
+            species: &described.name,
+            weights: described.weights,
+            rows: described.rows,
+            tracer: described.tracer,
+        };
+        let (network, rows_are, warnings) = settle(grid, given, &stated)?;
+        Ok(Matrix {
+            network,
+            rows_are,
+            warnings,
+            file,
+            labels: [&self.labels, &self.column_labels]
+                .into_iter()
+                .flatten()
+                .map(|l| l.file.clone())
+                .collect(),
+        })
+    }
 }
 
 /// Reads a matrix from a text that carries its labels.

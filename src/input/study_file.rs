@@ -8,6 +8,7 @@ use super::error::{InputError, Place, Problem};
 use super::formats::Fault;
 use super::nearest::nearest;
 use super::source::{InputFile, Source};
+use super::subjects::SubjectFiles;
 use crate::affinity::Likeness;
 use crate::domain::{Choice, Pair, RowsAre, Share, Side, Tracer, Transform, WeightKind};
 use crate::settings::{BadSetting, Request};
@@ -17,8 +18,10 @@ use crate::settings::{BadSetting, Request};
 pub struct SpeciesFile {
     /// Its name, used in every table.
     pub name: String,
-    /// Its connectivity.
-    pub matrix: PathBuf,
+    /// Its connectivity; the mean of its subjects where absent.
+    pub matrix: Option<PathBuf>,
+    /// The same of individuals.
+    pub subjects: Option<SubjectFiles>,
     /// Its parcels' labels, where a file of their own holds them.
     pub labels: Option<PathBuf>,
     /// Labels of the columns, where these differ and a file of their own holds them.
@@ -45,6 +48,40 @@ pub struct SpeciesFile {
     pub strongest: Option<Share>,
 }
 
+impl SpeciesFile {
+    /// A species of which nothing is said but what must be.
+    #[must_use]
+    pub fn new(name: &str, matrix: &Path, weights: WeightKind) -> SpeciesFile {
+        SpeciesFile {
+            name: name.to_owned(),
+            matrix: Some(matrix.to_path_buf()),
+            subjects: None,
+            labels: None,
+            column_labels: None,
+            rows: None,
+            tracer: None,
+            variable: None,
+            label_variable: None,
+            parcels: None,
+            distances: None,
+            weights,
+            transform: None,
+            likeness: None,
+            strongest: None,
+        }
+    }
+
+    /// The file, or one of the files, that its connectivity is read from.
+    #[must_use]
+    pub fn source(&self) -> &Path {
+        match (&self.matrix, &self.subjects) {
+            (Some(matrix), _) => matrix,
+            (None, Some(subjects)) => subjects.path(),
+            (None, None) => Path::new(""),
+        }
+    }
+}
+
 /// A study as its file describes it; paths are resolved, nothing else has been read.
 #[derive(Debug, Clone, PartialEq)]
 pub struct StudyFile {
@@ -64,6 +101,7 @@ const TOP_KEYS: &[&str] = &["title", "landmarks", "species", "settings"];
 const SPECIES_KEYS: &[&str] = &[
     "name",
     "matrix",
+    "subjects",
     "weights",
     "transform",
     "affinity",
@@ -168,6 +206,11 @@ fn species_file(table: &Table<'_>, folder: &Path) -> Result<SpeciesFile, InputEr
         return Err(table.bad_value("name", "more than blanks"));
     }
     let file = |key| Ok(table.optional_text(key)?.map(|path| folder.join(path)));
+    let subjects = table.subjects(folder)?;
+    let matrix = match subjects {
+        Some(_) => file("matrix")?,
+        None => Some(folder.join(table.text("matrix", "matrix = \"matrix.csv\"")?)),
+    };
     let labels = file("labels")?;
     let label_variable = table.optional_text("label-variable")?;
     if labels.is_some() && label_variable.is_some() {
@@ -186,7 +229,8 @@ fn species_file(table: &Table<'_>, folder: &Path) -> Result<SpeciesFile, InputEr
         label_variable,
         parcels: file("parcels")?,
         distances: file("distances")?,
-        matrix: folder.join(table.text("matrix", "matrix = \"matrix.csv\"")?),
+        matrix,
+        subjects,
         weights,
         transform,
         likeness: table.choice("affinity")?,
@@ -365,6 +409,29 @@ impl<'s> Table<'s> {
     /// Text in quotes; `None` where the key is absent.
     fn optional_text(&self, key: &'static str) -> Result<Option<String>, InputError> {
         self.has(key).then(|| self.text(key, "")).transpose()
+    }
+
+    /// Where the matrices of individuals are; `None` where nothing is said.
+    fn subjects(&self, folder: &Path) -> Result<Option<SubjectFiles>, InputError> {
+        let key = "subjects";
+        let Some(item) = self.table.get(key) else {
+            return Ok(None);
+        };
+        if let Some(path) = item.as_str() {
+            return Ok(Some(SubjectFiles::Path(folder.join(path))));
+        }
+        let files: Option<Vec<PathBuf>> = item.as_array().and_then(|list| {
+            list.iter()
+                .map(|file| Some(folder.join(file.as_str()?)))
+                .collect()
+        });
+        match files {
+            Some(files) if !files.is_empty() => Ok(Some(SubjectFiles::List(files))),
+            _ => Err(self.bad_value(
+                key,
+                "a folder, a pattern, a .npy of three axes, or a list of files",
+            )),
+        }
     }
 
     /// A string, number or truth value as text; `None` where the key is absent.

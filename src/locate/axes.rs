@@ -23,7 +23,7 @@ pub struct Space {
     /// What brings replicates of the space to these positions, by the parcels of one species.
     pub(super) anchorage: Pair<Anchorage>,
     /// Bootstrap standard errors of the positions relative to the other species' parcels.
-    pub standard_errors: Pair<Array2<f64>>,
+    pub standard_errors: StandardErrors,
     /// Share of each embedding's variance that an axis predicts.
     pub shares: Pair<Array1<f64>>,
     /// Correlation of both species' landmark coordinates on an axis, in sample.
@@ -31,6 +31,50 @@ pub struct Space {
     /// The same with every landmark placed by a fit that does without it; `None` where a side does
     /// not vary.
     pub correlations_left_out: Vec<Option<f64>>,
+}
+
+/// Standard errors of positions `(parcels, axes)`, by what was drawn again.
+#[derive(Debug, Clone)]
+pub struct StandardErrors {
+    /// Landmarks alone.
+    pub landmarks: Pair<Array2<f64>>,
+    /// Subjects, where any were given.
+    pub subjects: Option<SubjectErrors>,
+}
+
+/// Standard errors that subjects are part of.
+#[derive(Debug, Clone)]
+pub struct SubjectErrors {
+    /// Subjects alone.
+    pub alone: Pair<Array2<f64>>,
+    /// Subjects and landmarks.
+    pub both: Pair<Array2<f64>>,
+}
+
+impl StandardErrors {
+    /// Share of a parcel's variance that comes from subjects, of what subjects alone and landmarks
+    /// alone make together, over all axes; `None` without subjects, or where nothing varies.
+    #[must_use]
+    pub fn share_of_subjects(&self, side: Side, parcel: usize) -> Option<f64> {
+        let variance = |errors: &Array2<f64>| -> f64 {
+            let errors = errors.row(parcel);
+            errors.dot(&errors)
+        };
+        let subjects = variance(&self.subjects.as_ref()?.alone[side]);
+        let total = subjects + variance(&self.landmarks[side]);
+        (total > 0.0).then(|| subjects / total)
+    }
+}
+
+impl StandardErrors {
+    /// Mean share over the parcels of a side; `None` without subjects.
+    #[must_use]
+    pub fn mean_share_of_subjects(&self, side: Side) -> Option<f64> {
+        let shares: Vec<f64> = (0..self.landmarks[side].nrows())
+            .filter_map(|parcel| self.share_of_subjects(side, parcel))
+            .collect();
+        (!shares.is_empty()).then(|| shares.iter().sum::<f64>() / shares.len() as f64)
+    }
 }
 
 /// The parcels at both ends of an axis, outermost first.
@@ -63,7 +107,10 @@ impl Space {
                 })
                 .collect(),
             correlations_left_out: left_out_correlations(material, &positions, params, asked),
-            standard_errors: positions.as_ref().map(|p| Array2::zeros(p.dim())),
+            standard_errors: StandardErrors {
+                landmarks: positions.as_ref().map(|p| Array2::zeros(p.dim())),
+                subjects: None,
+            },
             anchorage: Pair::from_fn(|side| {
                 let leading = embedded[side].slice(s![.., ..params.axes]);
                 Anchorage::new(leading, &positions[side])

@@ -6,10 +6,11 @@ use super::chance::Support;
 use super::{Counterpart, Placement, Space, Tally};
 use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{Pair, Seed, Side};
-use crate::evidence::{Kind, Material};
+use crate::evidence::{Evidence, Expression, Kind, Material, Transport};
 use crate::holdout::{Blend, Member, OutOfBag, Way};
 use crate::place::{self, Candidates};
 use crate::prepare::Study;
+use crate::transport::Mass;
 
 /// What ranks.
 pub enum Ranker {
@@ -20,7 +21,7 @@ pub enum Ranker {
         /// The kinds and their ways of ranking.
         members: Vec<(Member, Way)>,
         /// Replicates of transport, if it is among them.
-        bagged: Option<OutOfBag>,
+        bagged: Option<Box<OutOfBag>>,
         /// Replicates that rank.
         replicates: usize,
     },
@@ -34,61 +35,28 @@ impl Ranker {
             Ranker::Mixture { replicates, .. } => (*replicates).min(all),
         }
     }
-
-    /// Fills `out` with how unlike open parcels are in a replicate with these landmark weights.
-    ///
-    /// # Panics
-    /// If evidence cannot be fitted, which was tried on the full sample.
-    pub fn replicate(
-        &self,
-        material: &Material<'_>,
-        weights: &[f64],
-        replicate: usize,
-        open: &Pair<Vec<usize>>,
-        candidates: &Candidates,
-        seed: Seed,
-        out: &mut Array2<f64>,
-    ) {
-        let fill = |way: &Way, out: &mut Array2<f64>| {
-            let mut chance = Stream::new(seed, Purpose::Evidence, replicate as u64);
-            fit(material, way, weights, &mut chance, open, out);
-        };
-        match self {
-            Ranker::One(way) => fill(way, out),
-            Ranker::Mixture {
-                members, bagged, ..
-            } => {
-                let mut blend = Blend::new(out.dim());
-                for (member, way) in members {
-                    match (way, bagged) {
-                        (Way::Transport, Some(bagged)) => {
-                            out.zip_mut_with(&bagged.each[replicate], |x, y| *x = f64::from(*y));
-                        }
-                        _ => fill(way, out),
-                    }
-                    candidates.close(&open.a, &open.b, out);
-                    blend.add(member.weight, out);
-                }
-                out.assign(&blend.score);
-            }
-        }
-        candidates.close(&open.a, &open.b, out);
-    }
 }
 
+/// The evidence of a way that is fitted wherever it is needed.
+fn cheap(way: &Way) -> Box<dyn Evidence> {
+    way.evidence()
+        .expect("costly kinds bring their own replicates")
+}
+
+/// Fills `out` by one kind of evidence. Where a draw of subjects leaves it nothing to go by, all are
+/// alike to it.
 fn fit(
     material: &Material<'_>,
-    way: &Way,
+    evidence: &dyn Evidence,
     weights: &[f64],
     chance: &mut Stream,
     open: &Pair<Vec<usize>>,
     out: &mut Array2<f64>,
 ) {
-    way.evidence()
-        .expect("costly kinds bring their own replicates")
-        .fit(material, weights, chance)
-        .expect("it was fitted before, and every draw has two landmarks or more")
-        .dissimilarities(&open.a, &open.b, out);
+    match evidence.fit(material, weights, chance) {
+        Ok(fitted) => fitted.dissimilarities(&open.a, &open.b, out),
+        Err(_) => out.fill(0.0),
+    }
 }
 
 /// The full-sample ranking of open parcels against open parcels, and which of it is listed.
@@ -99,6 +67,10 @@ pub struct Ranking {
     pub open: Pair<Vec<usize>>,
     /// For each open parcel its listed candidates, as places in `open` of the other side.
     pub listed: Pair<Vec<Vec<usize>>>,
+    /// Which parcels may be counterparts.
+    candidates: Candidates,
+    /// Seed of every draw.
+    seed: Seed,
     /// For each kind the first candidate of each open parcel.
     firsts: Vec<(Kind, Pair<Vec<Option<usize>>>)>,
 }
@@ -118,7 +90,7 @@ impl Ranking {
         let full = |way: &Way, out: &mut Array2<f64>| {
             // The full sample comes before the first replicate, so it takes the last index.
             let mut chance = Stream::new(study.settings.seed, Purpose::Evidence, u64::MAX);
-            fit(material, way, &weights, &mut chance, open, out);
+            fit(material, &*cheap(way), &weights, &mut chance, open, out);
         };
         match &ranker {
             Ranker::One(way) => {
@@ -156,12 +128,68 @@ impl Ranking {
         Ranking {
             ranker,
             open: open.clone(),
+            candidates: study.candidates.clone(),
+            seed: study.settings.seed,
             listed: Pair {
                 a: scores.rows().into_iter().map(best).collect(),
                 b: scores.columns().into_iter().map(best).collect(),
             },
             firsts,
         }
+    }
+
+    /// Fills `out` with how unlike open parcels are in a replicate with these landmark weights. Where
+    /// the material is not that of the full sample, transport is fitted `again` with parcels of such
+    /// mass; else its own replicates serve.
+    ///
+    /// # Panics
+    /// If evidence cannot be fitted, which was tried on the full sample.
+    pub fn replicate(
+        &self,
+        material: &Material<'_>,
+        weights: &[f64],
+        replicate: usize,
+        again: Option<Mass>,
+        out: &mut Array2<f64>,
+    ) {
+        let (open, seed) = (&self.open, self.seed);
+        let fill = |way: &Way, out: &mut Array2<f64>| {
+            let mut chance = Stream::new(seed, Purpose::Evidence, replicate as u64);
+            fit(material, &*cheap(way), weights, &mut chance, open, out);
+        };
+        match &self.ranker {
+            Ranker::One(way) => fill(way, out),
+            Ranker::Mixture {
+                members, bagged, ..
+            } => {
+                let mut blend = Blend::new(out.dim());
+                for (member, way) in members {
+                    match (way, bagged) {
+                        (Way::Transport, Some(bagged)) => match again {
+                            None => {
+                                let own = &bagged.each[replicate];
+                                out.zip_mut_with(own, |x, y| *x = f64::from(*y));
+                            }
+                            Some(mass) => {
+                                let expressions = Expression::ALL;
+                                let transport = Transport {
+                                    expression: expressions[replicate % expressions.len()],
+                                    mass,
+                                };
+                                let index = replicate as u64;
+                                let mut chance = Stream::new(seed, Purpose::Evidence, index);
+                                fit(material, &transport, weights, &mut chance, open, out);
+                            }
+                        },
+                        _ => fill(way, out),
+                    }
+                    self.candidates.close(&open.a, &open.b, out);
+                    blend.add(member.weight, out);
+                }
+                out.assign(&blend.score);
+            }
+        }
+        self.candidates.close(&open.a, &open.b, out);
     }
 
     /// Share of a parcel's mass that averaged transport sends to a candidate, both as places among

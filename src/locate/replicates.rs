@@ -1,15 +1,16 @@
-//! Bootstrap replicates: align again under other landmark weights and see what stays.
+//! Bootstrap replicates: align again under other landmark weights, and where there are subjects with
+//! embeddings of subjects drawn again, and see what stays.
 
-use ndarray::{Array2, ArrayView2};
+use ndarray::{Array2, ArrayView2, Axis};
 
 use super::ranking::{Ranker, Ranking};
-use super::{intervals, Space};
-use crate::align::{self, Alignment, PerAlignment};
+use super::{intervals, Space, StandardErrors, SubjectErrors};
+use crate::align::{self, Alignment, JointMap, PerAlignment};
 use crate::bootstrap::{accumulate, Purpose, Spread, Stream};
-use crate::domain::{Pair, Side};
+use crate::domain::{Landmark, Landmarks, Pair, Side};
 use crate::evidence::Material;
 use crate::place;
-use crate::prepare::Study;
+use crate::prepare::{drawn_again, Study};
 use crate::watch::{Interrupted, Watch};
 
 /// What is counted over replicates.
@@ -17,14 +18,32 @@ use crate::watch::{Interrupted, Watch};
 pub struct Tally {
     /// How often each candidate came first: `(open parcels, open parcels of the other side)`.
     firsts: Pair<Array2<u32>>,
-    /// Stray of every parcel in both joint spaces.
-    spreads: PerAlignment<Pair<Spread>>,
+    /// Stray of every parcel in both joint spaces, by what was drawn again.
+    spreads: [PerAlignment<Pair<Spread>>; Again::ALL.len()],
     /// Ranks of all listed pairs, for each replicate that ranks.
     ranks: Pair<Vec<Vec<u32>>>,
     /// Replicates with too few distinct landmarks.
     pub(super) degenerate: usize,
     /// Replicates that found nearest candidates.
-    ranking: usize,
+    pub(super) ranking: usize,
+    /// Whether subjects were drawn at all.
+    pub(super) drawn: bool,
+    /// Replicates that drew subjects again.
+    pub(super) drawn_again: usize,
+    /// Draws of subjects that could not be used.
+    pub(super) unusable: usize,
+}
+
+/// What is drawn again.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+enum Again {
+    Landmarks,
+    Subjects,
+    Both,
+}
+
+impl Again {
+    const ALL: [Again; 3] = [Again::Landmarks, Again::Subjects, Again::Both];
 }
 
 impl Tally {
@@ -35,15 +54,20 @@ impl Tally {
                 b: Array2::zeros((open.b.len(), open.a.len())),
                 a: firsts,
             },
-            spreads: PerAlignment::from_fn(|alignment| {
-                spaces[alignment]
-                    .positions
-                    .as_ref()
-                    .map(|p| Spread::new(p.nrows(), p.ncols()))
+            spreads: Again::ALL.map(|_| {
+                PerAlignment::from_fn(|alignment| {
+                    spaces[alignment]
+                        .positions
+                        .as_ref()
+                        .map(|p| Spread::new(p.nrows(), p.ncols()))
+                })
             }),
             ranks: Pair::default(),
             degenerate: 0,
             ranking: 0,
+            drawn: false,
+            drawn_again: 0,
+            unusable: 0,
         }
     }
 
@@ -52,11 +76,16 @@ impl Tally {
             self.firsts[side] += &block.firsts[side];
             self.ranks[side].append(&mut block.ranks[side]);
             for alignment in Alignment::BOTH {
-                self.spreads[alignment][side].add(&block.spreads[alignment][side]);
+                for (all, own) in self.spreads.iter_mut().zip(&block.spreads) {
+                    all[alignment][side].add(&own[alignment][side]);
+                }
             }
         }
         self.degenerate += block.degenerate;
         self.ranking += block.ranking;
+        self.drawn |= block.drawn;
+        self.drawn_again += block.drawn_again;
+        self.unusable += block.unusable;
     }
 
     /// Share of replicates in which a candidate came first, both as places among the open parcels.
@@ -65,10 +94,20 @@ impl Tally {
     }
 
     /// Standard errors of positions in one joint space.
-    pub(super) fn standard_errors(&self, alignment: Alignment) -> Pair<Array2<f64>> {
-        self.spreads[alignment]
-            .as_ref()
-            .map(Spread::standard_errors)
+    pub(super) fn standard_errors(&self, alignment: Alignment) -> StandardErrors {
+        let of = |again: Again| {
+            self.spreads[again as usize][alignment]
+                .as_ref()
+                .map(Spread::standard_errors)
+        };
+        StandardErrors {
+            landmarks: of(Again::Landmarks),
+            // A standard deviation takes two.
+            subjects: (self.drawn_again > 1).then(|| SubjectErrors {
+                alone: of(Again::Subjects),
+                both: of(Again::Both),
+            }),
+        }
     }
 
     /// Rank intervals of all listed pairs of a side, in order.
@@ -140,26 +179,74 @@ fn one(
     }
     for alignment in Alignment::BOTH {
         stray(
-            &mut tally.spreads[alignment],
+            &mut tally.spreads[Again::Landmarks as usize][alignment],
             &spaces[alignment],
             material,
             &weights,
         );
     }
 
-    if replicate >= ranking.ranker.replicates(settings.replicates) {
+    let ranks_here = replicate < ranking.ranker.replicates(settings.replicates);
+    let has_subjects = study.cohorts.a.is_some() || study.cohorts.b.is_some();
+    if has_subjects {
+        tally.drawn = true;
+        if replicate >= settings.subject_replicates {
+            return;
+        }
+        let Some(drawn) = drawn_again(study, replicate) else {
+            tally.unusable += 1;
+            return;
+        };
+        let species = Pair {
+            a: &*drawn.species.a,
+            b: &*drawn.species.b,
+        };
+        let material = Material::new(species, material.landmarks);
+        // Nothing can be anchored to parcels that lost all their connections in this draw.
+        let kept = |weights: &[f64]| -> Vec<f64> {
+            let landmarks = material.landmarks.list();
+            let stands = |l: &Landmark| {
+                Side::BOTH
+                    .into_iter()
+                    .all(|side| l.parcels[side].iter().any(|&p| drawn.connected[side][p]))
+            };
+            let kept = landmarks.iter().zip(weights);
+            kept.map(|(l, w)| if stands(l) { *w } else { 0.0 })
+                .collect()
+        };
+        let (alone, both) = (kept(&material.weights(|_| 1.0)), kept(&weights));
+        let anchored = both.iter().filter(|w| **w > 0.0).count();
+        if anchored < Landmarks::FEWEST {
+            tally.unusable += 1;
+            return;
+        }
+        tally.drawn_again += 1;
+        for (again, weights) in [(Again::Subjects, &alone), (Again::Both, &both)] {
+            for alignment in Alignment::BOTH {
+                stray_again(
+                    &mut tally.spreads[again as usize][alignment],
+                    &spaces[alignment],
+                    &material,
+                    weights,
+                    &drawn.connected,
+                );
+            }
+        }
+        if !ranks_here {
+            return;
+        }
+        ranking.replicate(
+            &material,
+            &both,
+            replicate,
+            Some(settings.mass),
+            dissimilarities,
+        );
+    } else if ranks_here {
+        ranking.replicate(material, &weights, replicate, None, dissimilarities);
+    } else {
         return;
     }
-    let open = &ranking.open;
-    ranking.ranker.replicate(
-        material,
-        &weights,
-        replicate,
-        open,
-        &study.candidates,
-        settings.seed,
-        dissimilarities,
-    );
     tally.ranking += 1;
     let nearest = place::nearest(dissimilarities);
     for side in Side::BOTH {
@@ -212,6 +299,35 @@ fn stray(spreads: &mut Pair<Spread>, space: &Space, material: &Material<'_>, wei
     for side in Side::BOTH {
         let other = side.opposite();
         let back = space.anchorage[other].similarity(&map.maps[other]);
+        let there = map.maps[side].then(&back);
+        spreads[side].record(
+            &there.apply(material.embedded()[side].view()),
+            &space.positions[side],
+        );
+    }
+}
+
+/// The same for embeddings of subjects drawn again, which must be superimposed by positions, since
+/// their coordinates are others; by those of parcels that kept a connection.
+fn stray_again(
+    spreads: &mut Pair<Spread>,
+    space: &Space,
+    material: &Material<'_>,
+    weights: &[f64],
+    connected: &Pair<Vec<bool>>,
+) {
+    let map = align::fit(space.params, material.anchors.as_ref(), weights)
+        .expect("landmarks were counted before");
+    let positions = map.positions(material.embedded());
+    for side in Side::BOTH {
+        let other = side.opposite();
+        let kept: Vec<usize> = (0..connected[other].len())
+            .filter(|&parcel| connected[other][parcel])
+            .collect();
+        let back = JointMap::superimpose(
+            &positions[other].select(Axis(0), &kept),
+            &space.positions[other].select(Axis(0), &kept),
+        );
         let there = map.maps[side].then(&back);
         spreads[side].record(
             &there.apply(material.embedded()[side].view()),

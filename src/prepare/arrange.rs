@@ -25,15 +25,7 @@ impl Arranged {
     #[must_use]
     pub fn of(mut network: Connectivity, rows_are: RowsAre, weights: WeightKind) -> Arranged {
         let missing = network.missing();
-        let square = network.is_square();
-        let mirrored = if square && (weights == WeightKind::Correlations || undirected(&network)) {
-            mirror(&mut network)
-        } else {
-            0
-        };
-        if square && weights == WeightKind::Correlations {
-            symmetrise(&mut network);
-        }
+        let mirrored = directionless(&mut network, weights);
         let (network, rows_are, unobserved_columns) = without_unobserved(network, rows_are);
         Arranged {
             network,
@@ -43,6 +35,23 @@ impl Arranged {
             unobserved_columns,
         }
     }
+}
+
+/// Where the links of a square network have no direction, fills in entries from the other side of the
+/// diagonal, and makes correlations the mean of both; how many were filled in.
+pub fn directionless(network: &mut Connectivity, weights: WeightKind) -> usize {
+    let correlations = weights == WeightKind::Correlations;
+    if !network.is_square() {
+        return 0;
+    }
+    let mut mirrored = 0;
+    if correlations || undirected(network) {
+        mirrored = mirror(network);
+    }
+    if correlations {
+        symmetrise(network);
+    }
+    mirrored
 }
 
 /// Whether the links of a square network have no direction: where both directions were observed they

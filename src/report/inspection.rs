@@ -93,9 +93,18 @@ fn matrices(text: &mut String, study: &Study, found: &Inspection) -> Result {
         (
             "file",
             of(&|side, _| {
-                let path = &study.inputs.matrix[side].path;
-                let name = path.file_name().unwrap_or(path.as_os_str());
-                short(&name.to_string_lossy())
+                let subjects = study.cohorts[side].as_ref().map(|cohort| cohort.len());
+                match (&study.inputs.matrix[side], subjects) {
+                    (Some(file), subjects) => {
+                        let name = file.path.file_name().unwrap_or(file.path.as_os_str());
+                        let name = short(&name.to_string_lossy());
+                        match subjects {
+                            Some(n) => format!("{name}, {n} subjects"),
+                            None => name,
+                        }
+                    }
+                    (None, n) => format!("mean of {} subjects", n.unwrap_or(0)),
+                }
             }),
         ),
         ("parcels", of(&|_, s| s.parcels.to_string())),

@@ -59,7 +59,18 @@ struct SpeciesCounts<'s> {
     folded: usize,
     set_aside: &'s [String],
     not_covered: &'s [String],
+    #[serde(skip_serializing_if = "Option::is_none")]
+    subjects: Option<SubjectCounts<'s>>,
     eigenvalues: Vec<f64>,
+}
+
+/// The individuals of one species.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+#[serde(rename_all = "kebab-case")]
+struct SubjectCounts<'s> {
+    names: &'s [String],
+    /// Mean over parcels of the share of a position's variance that comes from subjects.
+    mean_share_of_variance: Option<f64>,
 }
 
 /// Nothing is said of folding where nothing was folded.
@@ -102,6 +113,12 @@ impl<'s> Record<'s> {
                     folded: species.parcels.folded(),
                     set_aside: species.parcels.isolated(),
                     not_covered: species.parcels.uncovered(),
+                    subjects: study.cohorts[side].as_ref().map(|cohort| SubjectCounts {
+                        names: cohort.names(),
+                        mean_share_of_variance: located.spaces[located.choice.evidence]
+                            .standard_errors
+                            .mean_share_of_subjects(side),
+                    }),
                     eigenvalues: species.embedding.eigenvalues.to_vec(),
                 }
             }),

@@ -117,7 +117,34 @@ fn trust(text: &mut String, study: &Study, located: &Located) -> Result {
             contradicted.join(", ")
         )?;
     }
-    ranked_by(text, located)
+    ranked_by(text, located)?;
+    uncertainty(text, study, located)
+}
+
+/// What the intervals speak of where there are subjects.
+fn uncertainty(text: &mut String, study: &Study, located: &Located) -> Result {
+    let Some(replicates) = located.evidence.subject_replicates else {
+        return Ok(());
+    };
+    let errors = &located.spaces[located.choice.evidence].standard_errors;
+    let shares: Vec<String> = Side::BOTH
+        .into_iter()
+        .filter_map(|side| {
+            let share = errors.mean_share_of_subjects(side)?;
+            let name = short(study.species[side].parcels.species());
+            let of = match &study.cohorts[side] {
+                Some(cohort) => format!("{} subjects", cohort.len()),
+                None => "no subjects".to_owned(),
+            };
+            Some(format!("{name} ({of}) {:.0} %", 100.0 * share))
+        })
+        .collect();
+    writeln!(
+        text,
+        "Uncertainty of positions from subjects rather than landmarks: {};\n  \
+         support and rank intervals draw both again, in {replicates} replicates.\n",
+        shares.join(", ")
+    )
 }
 
 /// What carried the ranking.

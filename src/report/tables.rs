@@ -3,7 +3,7 @@
 use crate::align::Alignment;
 use crate::domain::{Attributes, Extent, Landmarks, Pair, Side};
 use crate::evidence::Kind;
-use crate::locate::{Doubt, Located};
+use crate::locate::{Doubt, Located, SubjectErrors};
 use crate::prepare::Study;
 
 /// Separates several parcels in one cell, as in the landmark table.
@@ -77,6 +77,13 @@ fn positions(study: &Study, located: &Located) -> Vec<u8> {
     }
     header.extend(ATTRIBUTES.map(str::to_owned));
     header.extend(["x", "y", "z", "area", "volume"].map(str::to_owned));
+    for (alignment, _) in with_subjects(located) {
+        let axes = located.spaces[alignment].map.axes();
+        for what in ["subjects", "both"] {
+            header.extend((1..=axes).map(|k| format!("{alignment}_{k}_se_{what}")));
+        }
+        header.push(format!("{alignment}_share_subjects"));
+    }
     let mut table = Table::new(header);
     for side in Side::BOTH {
         let parcels = &study.species[side].parcels;
@@ -91,7 +98,8 @@ fn positions(study: &Study, located: &Located) -> Vec<u8> {
             ];
             for alignment in Alignment::BOTH {
                 let space = &located.spaces[alignment];
-                for values in [&space.positions[side], &space.standard_errors[side]] {
+                let errors = &space.standard_errors.landmarks[side];
+                for values in [&space.positions[side], errors] {
                     row.extend(values.row(parcel).iter().map(f64::to_string));
                 }
             }
@@ -100,10 +108,25 @@ fn positions(study: &Study, located: &Located) -> Vec<u8> {
             row.extend((0..3).map(|axis| optional(known.coordinates.map(|c| c[axis]))));
             row.push(optional(known.extent.and_then(Extent::area)));
             row.push(optional(known.extent.and_then(Extent::volume)));
+            for (alignment, errors) in with_subjects(located) {
+                for values in [&errors.alone[side], &errors.both[side]] {
+                    row.extend(values.row(parcel).iter().map(f64::to_string));
+                }
+                let all = &located.spaces[alignment].standard_errors;
+                row.push(optional(all.share_of_subjects(side, parcel)));
+            }
             table.row(row);
         }
     }
     table.bytes()
+}
+
+/// Both alignments with the standard errors that subjects are part of; none without subjects.
+fn with_subjects(located: &Located) -> impl Iterator<Item = (Alignment, &SubjectErrors)> {
+    Alignment::BOTH.into_iter().filter_map(|alignment| {
+        let errors = &located.spaces[alignment].standard_errors;
+        Some((alignment, errors.subjects.as_ref()?))
+    })
 }
 
 fn counterparts(study: &Study, located: &Located) -> Vec<u8> {

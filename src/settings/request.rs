@@ -93,6 +93,8 @@ request! {
         "auto" => Ok(Axes::Auto),
         _ => whole(key, text, 1..=usize::MAX, "auto or a whole number of 1 or more").map(Axes::Number),
     };
+    /// Replicates that also draw subjects again, where there are any.
+    subject_replicates: usize = "subject-replicates", |key, text| whole(key, text, 2..=100_000, "a whole number from 2 to 100000");
     /// How connectivity becomes coordinates.
     embedding: embed::Method = "embedding", choice;
     /// Density exponent of the diffusion map, 0 to 1: 1 removes the density of parcels from it.
@@ -128,6 +130,8 @@ request! {
 const REPLICATES: usize = 1000;
 /// Replicates that also rank, unless asked otherwise.
 const RANK_REPLICATES: usize = 200;
+/// Replicates that also draw subjects, unless asked otherwise: each embeds both species again.
+const SUBJECT_REPLICATES: usize = 200;
 /// Seed unless asked otherwise: any fixed number would do.
 const SEED: u64 = 1;
 /// Density exponent unless asked otherwise: half-way between ignoring and removing the density of
@@ -168,6 +172,10 @@ impl Request {
             rank_replicates: self
                 .rank_replicates
                 .unwrap_or(RANK_REPLICATES)
+                .min(replicates),
+            subject_replicates: self
+                .subject_replicates
+                .unwrap_or(SUBJECT_REPLICATES)
                 .min(replicates),
             seed: Seed(self.seed.unwrap_or(SEED)),
             axes: self.axes.unwrap_or(Axes::Auto),

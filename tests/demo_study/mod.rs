@@ -7,6 +7,8 @@
 //! parcels without any counterpart, names that mislead and one wrong landmark, all of them listed
 //! in the files of the known answer. Nothing here is real.
 
+mod surface;
+
 use rand::seq::SliceRandom;
 use rand::{Rng, SeedableRng};
 use rand_distr::{Distribution, Poisson, StandardNormal};
@@ -281,6 +283,10 @@ pub fn files(seed: u64) -> Vec<(&'static str, String)> {
 
     let order_a = shuffled(counts.len(), rng);
     let order_b = shuffled(fractions.len(), rng);
+    let surface = |described: &[Described], labels: &[String]| {
+        let centres: Vec<[f64; 3]> = described.iter().map(|of| of.coordinates).collect();
+        surface::label_file(&centres, labels)
+    };
     vec![
         ("study.toml", STUDY.to_string()),
         ("a.csv", matrix(&counts, &labels.a, &order_a, count_cell)),
@@ -289,6 +295,8 @@ pub fn files(seed: u64) -> Vec<(&'static str, String)> {
             matrix(&fractions, &labels.b, &order_b, fraction_cell),
         ),
         ("landmarks.csv", landmark_table(&parts, &labels)),
+        ("a.label.gii", surface(&described_a, &labels.a)),
+        ("b.label.gii", surface(&described_b, &labels.b)),
         (
             "a_parcels.csv",
             parcel_table(&described_a, &labels.a, &order_a),

@@ -49,6 +49,12 @@ pub enum Fault {
     /// Rows are stated to be targets where each line names its own.
     #[error("a list of connections says itself which area is the source and which the target; remove rows = \"targets\", or exchange the names of the two columns in its header")]
     ListKnowsDirection,
+    /// Subjects in a file that is no stack.
+    #[error("expected the matrices of all subjects in one NumPy array of three axes, found {found}; name a folder, a pattern such as \"subjects/*.csv\", or a list of files")]
+    NoStack {
+        /// What it is.
+        found: String,
+    },
     /// Two keys that say where labels are.
     #[error("both labels and label-variable are given; keep the one that holds the labels")]
     TwoLabelKeys,

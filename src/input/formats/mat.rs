@@ -24,21 +24,7 @@ const COMPRESSED: u32 = 15;
 /// # Errors
 /// [`Fault`] where the file is damaged or does not hold what is wanted.
 pub fn read(bytes: &[u8], place: &Place, wanted: &Wanted<'_>) -> Result<Grid, Fault> {
-    let elements = elements(bytes)?;
-    let (mut variables, mut listed) = (Vec::new(), Vec::new());
-    for element in elements {
-        let Some(array) = Array::read(&mut element.open())? else {
-            continue;
-        };
-        // What MATLAB keeps for itself has no name.
-        if !array.name.is_empty() {
-            listed.push(Listed {
-                name: array.name.clone(),
-                content: array.content(),
-            });
-            variables.push(element);
-        }
-    }
+    let (variables, listed) = list(bytes)?;
     let matrix = choose::matrix(&listed, wanted)?;
     let values = {
         let mut from = variables[matrix].open();
@@ -64,6 +50,34 @@ pub fn read(bytes: &[u8], place: &Place, wanted: &Wanted<'_>) -> Result<Grid, Fa
         values,
         origin: Origin::Array(place.clone().array(&listed[matrix].name)),
     })
+}
+
+/// The variables of a file.
+///
+/// # Errors
+/// [`Fault`] where the file is damaged.
+pub fn arrays(bytes: &[u8]) -> Result<Vec<Listed>, Fault> {
+    list(bytes).map(|(_, listed)| listed)
+}
+
+/// All variables with a name: their bytes and what they can be.
+fn list(bytes: &[u8]) -> Result<(Vec<Element<'_>>, Vec<Listed>), Fault> {
+    let elements = elements(bytes)?;
+    let (mut variables, mut listed) = (Vec::new(), Vec::new());
+    for element in elements {
+        let Some(array) = Array::read(&mut element.open())? else {
+            continue;
+        };
+        // What MATLAB keeps for itself has no name.
+        if !array.name.is_empty() {
+            listed.push(Listed {
+                name: array.name.clone(),
+                content: array.content(),
+            });
+            variables.push(element);
+        }
+    }
+    Ok((variables, listed))
 }
 
 /// The bytes of a variable, from its tag on, perhaps compressed.

@@ -148,7 +148,9 @@ impl Header {
             .collect()
     }
 
-    fn shape_in_words(&self) -> String {
+    /// The shape, for people.
+    #[must_use]
+    pub fn shape_in_words(&self) -> String {
         let axes: Vec<String> = self.shape.iter().map(u64::to_string).collect();
         match axes.len() {
             0 => "a single value".to_owned(),

@@ -39,6 +39,15 @@ pub fn read(bytes: &[u8], place: &Place, wanted: &Wanted<'_>) -> Result<Grid, Fa
     })
 }
 
+/// The arrays of an archive.
+///
+/// # Errors
+/// [`Fault`] where the archive is damaged or holds none.
+pub fn arrays(bytes: &[u8]) -> Result<Vec<Listed>, Fault> {
+    let mut archive = ZipArchive::new(Cursor::new(bytes)).map_err(damaged)?;
+    list(&mut archive).map(|(_, listed)| listed)
+}
+
 /// All arrays: their places in the archive and what they can be.
 fn list(archive: &mut Archive<'_>) -> Result<(Vec<usize>, Vec<Listed>), Fault> {
     let (mut entries, mut listed, mut others) = (Vec::new(), Vec::new(), Vec::new());

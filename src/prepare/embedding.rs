@@ -1,0 +1,34 @@
+//! Strengths to coordinates, by the settings of a run.
+
+use super::Treatment;
+use crate::affinity::Profiles;
+use crate::domain::Connectivity;
+use crate::embed::{self, DiffusionError, DiffusionTime, Embedding};
+use crate::settings::Settings;
+
+/// Embeds a species whose strengths are `(parcels, entries)`, on `axes` axes at most.
+///
+/// # Errors
+/// [`DiffusionError`] where the diffusion map asked for does not exist.
+pub fn embed_strengths(
+    network: &Connectivity,
+    treatment: &Treatment,
+    settings: &Settings,
+    axes: usize,
+) -> Result<Embedding, DiffusionError> {
+    let profiles = Profiles::of(network, treatment.affinity.strongest);
+    let likeness = treatment.affinity.likeness;
+    match settings.embedding {
+        embed::Method::Components => Ok(embed::components(&profiles.standardised(likeness), axes)),
+        embed::Method::Diffusion => {
+            let affinity = profiles.affinity(likeness);
+            drop(profiles);
+            embed::diffusion_map(
+                affinity,
+                settings.density_exponent,
+                DiffusionTime::from_number(settings.diffusion_time),
+                axes,
+            )
+        }
+    }
+}
