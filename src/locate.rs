@@ -2,12 +2,14 @@
 
 mod axes;
 mod chance;
+mod doubt;
 mod left_out;
 mod ranking;
 mod replicates;
 mod span;
 
 pub use axes::{AxisEnds, Space, StandardErrors, SubjectErrors};
+pub use doubt::{Doubt, Judged};
 pub use left_out::LeftOut;
 pub use replicates::Tally;
 pub use span::beyond_landmarks;
@@ -91,6 +93,8 @@ pub struct Located {
     pub beyond: Pair<Vec<f64>>,
     /// Placements of the parcels that are no landmark, in the order of the input file.
     pub placements: Pair<Vec<Placement>>,
+    /// What is known of every parcel besides its candidates.
+    pub judgements: Pair<Vec<Judged>>,
     /// What came up on the way.
     pub warnings: Vec<Warning>,
 }
@@ -185,6 +189,7 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
     let mut spaces =
         PerAlignment::from_fn(|alignment| Space::fit(&material, settled[alignment], &asked));
 
+    let judgements = doubt::judgements(&material, bagged.as_ref(), &open, &asked);
     let transport_replicates = bagged.as_ref().map_or(0, |bagged| bagged.each.len());
     let ranker = if mixes {
         Ranker::Mixture {
@@ -261,6 +266,7 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         spaces,
         left_out,
         placements,
+        judgements,
         warnings,
     })
 }
