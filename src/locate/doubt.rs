@@ -4,7 +4,7 @@
 
 use ndarray::{Array1, Array2, ArrayView1};
 
-use crate::domain::{Pair, Side};
+use crate::domain::{Connectivity, Pair, Side};
 use crate::evidence::{Expression, Material};
 use crate::holdout::{Asked, OutOfBag};
 use crate::linalg::median;
@@ -38,7 +38,7 @@ pub fn judgements(
     asked: &Asked,
 ) -> Pair<Vec<Judged>> {
     Pair::from_fn(|side| {
-        let connections = connections(&material.links()[side].strengths);
+        let connections = connections(&material.species[side].network);
         let members = material.landmarks.list().iter();
         let least = members
             .flat_map(|landmark| &landmark.parcels[side])
@@ -115,14 +115,19 @@ impl Usual {
     }
 }
 
-/// Connections of every parcel, both directions.
-fn connections(strengths: &Array2<f64>) -> Vec<usize> {
-    (0..strengths.nrows())
-        .map(|i| {
-            let some = |line: ArrayView1<'_, f64>| line.iter().filter(|x| **x != 0.0).count();
-            some(strengths.row(i)) + some(strengths.column(i))
-        })
-        .collect()
+/// Connections of every parcel, both directions. Read off the network itself: the links that kinds of
+/// evidence share are not made for this alone.
+fn connections(network: &Connectivity) -> Vec<usize> {
+    let mut count = vec![0; network.row_labels().len()];
+    for ((row, column), strength) in network.weights().indexed_iter() {
+        if *strength != 0.0 {
+            count[row] += 1;
+            if let Some(parcel) = network.row_of_column(column) {
+                count[parcel] += 1;
+            }
+        }
+    }
+    count
 }
 
 /// One species' network and what the other one makes of it through the mean shares.
