@@ -11,6 +11,7 @@ mod span;
 pub use axes::{AxisEnds, Space, StandardErrors, SubjectErrors};
 pub use doubt::{Doubt, Judged};
 pub use left_out::LeftOut;
+use replicates::Job;
 pub use replicates::Tally;
 pub use span::beyond_landmarks;
 
@@ -203,7 +204,13 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         Ranker::One(ways[way])
     };
     let ranking = Ranking::new(&material, ranker, &open, study);
-    let tally = replicates::run(study, &material, &spaces, &ranking, watch)?;
+    let job = Job {
+        study,
+        material: &material,
+        spaces: &spaces,
+        ranking: &ranking,
+    };
+    let tally = replicates::run(job, watch)?;
     for alignment in Alignment::BOTH {
         spaces[alignment].standard_errors = tally.standard_errors(alignment);
     }
