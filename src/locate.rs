@@ -183,10 +183,11 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         None => members[0].way,
     };
     let left_out = left_out::summarise(&material, &ways, &trials, way, &choice, alignment, &asked);
-    let support = Support::new(match mixture {
+    let firsts = match mixture {
         Some(found) => found.into_iter().map(|found| found.first).collect(),
-        None => left_out::firsts(&left_out),
-    });
+        None => left_out::firsts(&study.landmarks, &left_out),
+    };
+    let support = Support::new(&study.landmarks, firsts);
     let mut spaces =
         PerAlignment::from_fn(|alignment| Space::fit(&material, settled[alignment], &asked));
 
