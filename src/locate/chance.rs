@@ -161,7 +161,7 @@ mod tests {
         );
         assert!(support.skill > 0.9 && support.skill < 1.0);
         assert!((support.chance(Some(0.9), 0.1) - 0.972 * support.skill).abs() < 1e-12);
-        assert!((support.chance(Some(0.4), 1.0) - upper_limit(0.0, 3.0)).abs() < 1e-12);
+        assert!((support.chance(Some(0.45), 1.0) - upper_limit(0.0, 3.0)).abs() < 1e-12);
         assert!((support.chance(Some(0.1), 1.0) - 0.028 * support.skill).abs() < 1e-12);
         // Without shares all landmarks count.
         assert!((support.chance(None, 0.99) - upper_limit(3.0, 6.0)).abs() < 1e-12);
