@@ -1,7 +1,9 @@
 //! How alike two parcels of one species are: by the profiles of their connections.
 
+mod cut;
+
 use ndarray::linalg::general_mat_mul;
-use ndarray::{s, Array1, Array2, ArrayView2, Axis, CowArray, Ix2};
+use ndarray::{s, Array1, Array2, ArrayView2, ArrayViewMut1, Axis, CowArray, Ix2};
 
 use crate::domain::{choices, Connectivity, Share, WeightKind};
 
@@ -234,31 +236,11 @@ impl<'n> Profiles<'n> {
         for half in &self.halves {
             general_mat_mul(1.0, &half.links, &half.links.t(), 1.0, &mut gram);
         }
-        if likeness == Likeness::Pearson {
-            let width = self.width() as f64;
-            let sums = |half: &Half<'_>| half.links.sum_axis(Axis(1));
-            let means: Array1<f64> = self
-                .halves
-                .iter()
-                .fold(Array1::zeros(n), |sum, half| sum + sums(half))
-                / width;
-            for ((i, j), g) in gram.indexed_iter_mut() {
-                *g -= width * means[i] * means[j];
-            }
-        }
-        // What is left of a constant profile after centring is rounding, not likeness.
-        let floor = gram.diag().iter().copied().fold(0.0, f64::max) * f64::EPSILON * n as f64;
-        let inverse: Array1<f64> = gram.diag().mapv(|norm| {
-            if norm > floor {
-                norm.sqrt().recip()
-            } else {
-                0.0
-            }
-        });
-        likenesses(&mut gram, |gram, i, j| {
-            gram[(i, j)] * inverse[i] * inverse[j]
-        });
-        gram
+        let width = self.width() as f64;
+        let means: Array1<f64> = self.halves.iter().fold(Array1::zeros(n), |sum, half| {
+            sum + half.links.sum_axis(Axis(1))
+        }) / width;
+        likenesses(gram, likeness, width, &means)
     }
 
     /// The same over the entries that both profiles have; every sum is then one for each pair.
@@ -289,7 +271,7 @@ impl<'n> Profiles<'n> {
             half.add(width.view(), ones.view(), &mut possible);
         }
         let mut affinity = products;
-        likenesses(&mut affinity, |products, i, j| {
+        fill(&mut affinity, |products, i, j| {
             let count = shared[(i, j)];
             if !enough_shared(count, possible[(i, j)]) {
                 return 0.0;
@@ -319,7 +301,9 @@ impl<'n> Half<'n> {
             links
         } else {
             let mut links = links.as_standard_layout().into_owned();
-            keep_strongest(&mut links, strongest);
+            for row in links.rows_mut() {
+                keep_strongest(row, strongest);
+            }
             CowArray::from(links)
         };
         Half {
@@ -352,8 +336,47 @@ impl<'n> Half<'n> {
     }
 }
 
-/// Turns sums into likenesses, pair by pair: clamped to [0, 1], symmetric, one on the diagonal.
-fn likenesses(gram: &mut Array2<f64>, likeness: impl Fn(&Array2<f64>, usize, usize) -> f64) {
+/// Turns products of profiles of `width` entries and these means into likenesses.
+fn likenesses(
+    mut gram: Array2<f64>,
+    likeness: Likeness,
+    width: f64,
+    means: &Array1<f64>,
+) -> Array2<f64> {
+    let n = gram.nrows();
+    if likeness == Likeness::Pearson {
+        for ((i, j), g) in gram.indexed_iter_mut() {
+            *g -= width * means[i] * means[j];
+        }
+    }
+    // What is left of a constant profile after centring is rounding, not likeness.
+    let floor = gram.diag().iter().copied().fold(0.0, f64::max) * f64::EPSILON * n as f64;
+    let inverse: Array1<f64> = gram.diag().mapv(|norm| {
+        if norm > floor {
+            norm.sqrt().recip()
+        } else {
+            0.0
+        }
+    });
+    fill(&mut gram, |gram, i, j| {
+        gram[(i, j)] * inverse[i] * inverse[j]
+    });
+    gram
+}
+
+/// The affinities of a network: of complete square networks of which profiles keep few links without
+/// storing what was cut.
+#[must_use]
+pub fn of(network: &Connectivity, params: &Params) -> Array2<f64> {
+    let few = params.strongest.get() <= cut::FEW;
+    if few && network.is_square() && !network.has_missing() {
+        return cut::affinity_of_cut(network.weights().view(), params.strongest, params.likeness);
+    }
+    Profiles::of(network, params.strongest).affinity(params.likeness)
+}
+
+/// Fills in pair by pair: clamped to [0, 1], symmetric, one on the diagonal.
+fn fill(gram: &mut Array2<f64>, likeness: impl Fn(&Array2<f64>, usize, usize) -> f64) {
     for i in 0..gram.nrows() {
         for j in 0..i {
             let value = likeness(gram, i, j).clamp(0.0, 1.0);
@@ -382,21 +405,19 @@ pub fn is_directed(strengths: ArrayView2<'_, f64>) -> bool {
     strengths != strengths.t()
 }
 
-/// Keeps in each row the strongest share of its links and every tie with the weakest kept; what is
-/// cut, and everything negative, becomes zero. A share of 1 leaves the row as it is.
-fn keep_strongest(rows: &mut Array2<f64>, share: Share) {
-    let others = rows.ncols().saturating_sub(1) as f64;
+/// Keeps the strongest share of a row's links and every tie with the weakest kept; what is cut, and
+/// everything negative, becomes zero.
+fn keep_strongest(mut row: ArrayViewMut1<'_, f64>, share: Share) {
+    let others = row.len().saturating_sub(1) as f64;
     // The slack keeps 0.55 x 100 at 55 in spite of rounding.
     let keep = ((share.get() * others - 1e-9).ceil() as usize).max(1);
-    for mut row in rows.rows_mut() {
-        let mut positive: Vec<f64> = row.iter().copied().filter(|x| *x > 0.0).collect();
-        positive.sort_by(|x, y| y.total_cmp(x));
-        let weakest = positive
-            .get(keep.min(positive.len()).wrapping_sub(1))
-            .copied()
-            .unwrap_or(f64::INFINITY);
-        row.mapv_inplace(|x| if x >= weakest { x } else { 0.0 });
-    }
+    let mut positive: Vec<f64> = row.iter().copied().filter(|x| *x > 0.0).collect();
+    positive.sort_by(|x, y| y.total_cmp(x));
+    let weakest = positive
+        .get(keep.min(positive.len()).wrapping_sub(1))
+        .copied()
+        .unwrap_or(f64::INFINITY);
+    row.mapv_inplace(|x| if x >= weakest { x } else { 0.0 });
 }
 
 #[cfg(test)]

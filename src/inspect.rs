@@ -21,7 +21,7 @@ pub use systems::systems;
 
 use serde::Serialize;
 
-use crate::affinity::{self, Profiles};
+use crate::affinity;
 use crate::domain::{Pair, RowsAre, Side, Tracer, Transform, WeightKind};
 use crate::evidence::Material;
 use crate::locate::beyond_landmarks;
@@ -148,8 +148,7 @@ fn species_facts(study: &Study, side: Side, beyond: &[f64]) -> SpeciesFacts {
     let treatment = &study.treatment[side];
     let labels = species.parcels.labels();
 
-    let affinity = Profiles::of(&species.network, treatment.affinity.strongest)
-        .affinity(treatment.affinity.likeness);
+    let affinity = affinity::of(&species.network, &treatment.affinity);
     let alike = affinity
         .indexed_iter()
         .filter(|(_, a)| **a > 0.0)

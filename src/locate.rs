@@ -3,6 +3,7 @@
 mod axes;
 mod candidate_sets;
 mod chance;
+mod doubt;
 mod false_discovery;
 mod left_out;
 mod ranking;
@@ -12,8 +13,10 @@ mod weighed;
 
 pub use axes::{AxisEnds, Space, StandardErrors, SubjectErrors};
 pub use candidate_sets::SetLevel;
+pub use doubt::{Doubt, Judged};
 pub use false_discovery::q_values;
 pub use left_out::LeftOut;
+use replicates::Job;
 pub use replicates::Tally;
 pub use span::beyond_landmarks;
 pub use weighed::Weighed;
@@ -110,6 +113,8 @@ pub struct Located {
     pub beyond: Pair<Vec<f64>>,
     /// Placements of the parcels that are no landmark, in the order of the input file.
     pub placements: Pair<Vec<Placement>>,
+    /// What is known of every parcel besides its candidates.
+    pub judgements: Pair<Vec<Judged>>,
     /// What came up on the way.
     pub warnings: Vec<Warning>,
 }
@@ -150,9 +155,11 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
     });
     let sets = calibration.finish();
     let compared = weighed.ranked(&material, &questions).full(open.clone());
-    let support = Support::new(firsts);
+    let support = Support::new(&study.landmarks, firsts);
     let mut spaces =
         PerAlignment::from_fn(|alignment| Space::fit(&material, settled[alignment], &asked));
+
+    let judgements = doubt::judgements(&material, weighed.bagged.as_ref(), &open, &asked);
 
     let Weighed {
         ways,
@@ -176,7 +183,13 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         Ranker::One(ways[members[0].way])
     };
     let ranking = Ranking::new(&material, ranker, &open, study);
-    let tally = replicates::run(study, &material, &spaces, &ranking, watch)?;
+    let job = Job {
+        study,
+        material: &material,
+        spaces: &spaces,
+        ranking: &ranking,
+    };
+    let tally = replicates::run(job, watch)?;
     for alignment in Alignment::BOTH {
         spaces[alignment].standard_errors = tally.standard_errors(alignment);
     }
@@ -248,6 +261,7 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         set_level: sets.level,
         left_out,
         placements,
+        judgements,
         warnings,
     })
 }

@@ -398,7 +398,12 @@ impl fmt::Display for Warning {
             ),
             Warning::SubjectsNotEmbedded { replicates, of } => write!(
                 f,
-                "{replicates} of {of} draws of subjects could not be used: too few landmarks kept their connections, or the affinity fell apart"
+                "{replicates} of {of} draws of subjects could not be used: too few landmarks kept their connections, or the affinity fell apart{}",
+                if replicates == of {
+                    "; support and intervals speak of landmarks alone"
+                } else {
+                    ""
+                }
             ),
             Warning::LandmarksReduced { parcels, landmarks } => {
                 write!(

@@ -830,7 +830,7 @@ fn study_files() {
                 "study.toml, line 6, column 1: ",
                 "unknown key \"matrx\" in [species.a]",
                 "did you mean \"matrix\"?",
-                "Known here: name, matrix, weights",
+                "Known here: name, matrix, subjects, weights",
             ],
         ),
         case(

@@ -289,3 +289,41 @@ fn a_copy_is_recognised_exactly() {
         }
     }
 }
+
+/// 10 pairs of species of 80 parcels, 19 landmarks; the counterparts of 10 parcels of a are taken out
+/// of b. Of these parcels at least half must come out with a p-value of 0.1 or less ,
+/// of those with a counterpart at most a fifth .
+#[test]
+fn parcels_without_a_counterpart_stand_out() {
+    use ndarray::s;
+
+    let plan = Plan {
+        parcels: 80,
+        landmarks: 19,
+        drift: 0.1,
+        noise: 0.5,
+        related: true,
+    };
+    let (mut without, mut with) = ((0.0, 0.0), (0.0, 0.0));
+    for trial in 0..10 {
+        let mut planted = plan.draw(300 + trial);
+        let kept = 70;
+        planted.weights[1] = planted.weights[1].slice(s![..kept, ..kept]).to_owned();
+        planted.landmarks.retain(|(i, _)| *i < kept);
+        let (study, found) = run(&planted, &FEW);
+        let labels = study.species.a.parcels.labels();
+        for (parcel, judged) in found.judgements.a.iter().enumerate() {
+            let Some(doubt) = judged.doubt else { continue };
+            let number = (0..80).find(|&i| planted::label("a", i) == labels[parcel]);
+            let group = if number.unwrap() < kept {
+                &mut with
+            } else {
+                &mut without
+            };
+            group.0 += f64::from(u8::from(doubt.p <= 0.1));
+            group.1 += 1.0;
+        }
+    }
+    let shares = (without.0 / without.1, with.0 / with.1);
+    assert!(shares.0 >= 0.5 && shares.1 <= 0.2, "{shares:?}");
+}

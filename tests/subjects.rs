@@ -305,3 +305,33 @@ fn standard_errors_are_those_of_other_individuals() {
     let ratio = (promised / bootstrapped as f64 / variance).sqrt();
     assert!((0.75..1.25).contains(&ratio), "{ratio:.3}");
 }
+
+/// Individuals of whom each lacks what the other has: every draw of one leaves too few landmarks, so
+/// the run says so and goes by landmarks alone.
+#[test]
+fn draws_that_cannot_be_used_leave_the_rest_standing() {
+    let study = with_subjects("subjects = [\"people/p1.csv\", \"people/p2.csv\"]");
+    // The landmarks are the first six parcels; each person keeps the links of two of them only.
+    for (person, kept) in [(1, [1, 2]), (2, [3, 4])] {
+        study.edit_table(&format!("people/p{person}.csv"), |rows| {
+            for landmark in (1..=6).filter(|l| !kept.contains(l)) {
+                for other in 1..rows.len() {
+                    rows[landmark][other] = "0".to_owned();
+                    rows[other][landmark] = "0".to_owned();
+                }
+            }
+        });
+    }
+    study.run(&[]).succeeded();
+    let told = recorded_warnings(&study.out()).join("\n");
+    assert!(
+        told.contains("20 of 20 draws of subjects could not be used")
+            && told.contains("speak of landmarks alone"),
+        "{told}"
+    );
+    let tables = Tables::of(&study.out());
+    for row in tables.rows("counterparts.csv") {
+        let support: f64 = row["support"].parse().unwrap();
+        assert!((0.0..=1.0).contains(&support));
+    }
+}

@@ -5,7 +5,7 @@ use std::collections::HashMap;
 
 use ndarray::Array2;
 
-use crate::affinity::Profiles;
+use crate::affinity;
 use crate::species::Species;
 use crate::transport::Structure;
 
@@ -74,11 +74,10 @@ impl Links {
             }
         }
         let complete = observed.iter().all(|seen| *seen > 0.0);
-        let profiles = Profiles::of(network, species.profiles.strongest);
         Links {
             strengths,
             observed: (!complete).then_some(observed),
-            affinity: profiles.affinity(species.profiles.likeness),
+            affinity: affinity::of(network, &species.profiles),
             is_square: network.is_square(),
         }
     }

@@ -84,8 +84,10 @@ impl Blend {
 pub struct FirstOf {
     /// The share of mass that transport without the landmark sends there, where there is transport.
     pub share: Option<f64>,
-    /// Whether it was the counterpart.
-    pub right: bool,
+    /// Where the counterpart came; the first candidate was right where that is rank 1.
+    pub placed: Placed,
+    /// How many parcels would have been right.
+    pub members: usize,
 }
 
 /// A landmark left out of a mixture.
@@ -131,7 +133,8 @@ pub fn leave_out(
                     placed,
                     FirstOf {
                         share,
-                        right: placed.rank == 1,
+                        placed,
+                        members: landmark.parcels[to].len(),
                     },
                 )
             });

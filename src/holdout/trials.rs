@@ -140,6 +140,26 @@ impl Placed {
         (self.rank as f64).ln() / (self.candidates as f64).ln()
     }
 
+    /// Error to expect of ranks that are pure chance, where any of `members` counterparts would be
+    /// right: the mean of ln r over the rank r of the best of them, over ln c for c candidates.
+    #[must_use]
+    pub fn error_by_chance(self, members: usize) -> f64 {
+        let candidates = self.candidates;
+        if candidates < 2 {
+            return 0.0;
+        }
+        let members = members.clamp(1, candidates);
+        // Chance that no member has come among the ranks before this one.
+        let mut none_yet = 1.0;
+        let mut mean = 0.0;
+        for rank in 1..=candidates - members + 1 {
+            let here = members as f64 / (candidates - rank + 1) as f64;
+            mean += none_yet * here * (rank as f64).ln();
+            none_yet *= 1.0 - here;
+        }
+        mean / (candidates as f64).ln()
+    }
+
     /// Where the best of `members` comes among candidates; `dissimilarities` has one number for each,
     /// infinite where a parcel may not be a counterpart.
     ///
@@ -383,4 +403,26 @@ fn last_of_all(landmark: &Landmark, at: usize, questions: &Questions<'_>) -> Pai
             candidates: others + own,
         }
     })
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    #[test]
+    fn random_ranks_err_as_much_as_they_do_on_average() {
+        let placed = |candidates| Placed {
+            rank: 1,
+            candidates,
+        };
+        // One member: ln(c!) / (c ln c), the mean of ln r over equally likely ranks.
+        let log_factorial: f64 = (1..=24).map(|r| f64::from(r).ln()).sum();
+        let expected = log_factorial / (24.0 * 24.0_f64.ln());
+        assert!((placed(24).error_by_chance(1) - expected).abs() < 1e-12);
+        // Two members among four: the better one is first, second, third in 3, 2, 1 of 6 pairs.
+        let expected = (2.0 * 2.0_f64.ln() + 3.0_f64.ln()) / (6.0 * 4.0_f64.ln());
+        assert!((placed(4).error_by_chance(2) - expected).abs() < 1e-12);
+        assert_eq!(placed(3).error_by_chance(3), 0.0);
+        assert_eq!(placed(1).error_by_chance(1), 0.0);
+    }
 }

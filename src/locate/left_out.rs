@@ -1,7 +1,7 @@
 //! Each landmark as the others see it.
 
 use crate::align::{self, Alignment, JointMap, Params};
-use crate::domain::Pair;
+use crate::domain::{Landmarks, Pair, Side};
 use crate::evidence::Material;
 use crate::holdout::{choose, contradicted, Asked, Choice, FirstOf, Placed, Trials, Way};
 
@@ -56,14 +56,17 @@ pub fn summarise(
         .collect()
 }
 
-/// Which left-out landmarks had their counterpart first under one kind of evidence.
-pub fn firsts(left_out: &[LeftOut]) -> Vec<Pair<FirstOf>> {
-    left_out
+/// Where the counterparts of left-out landmarks came under one kind of evidence.
+pub fn firsts(landmarks: &Landmarks, left_out: &[LeftOut]) -> Vec<Pair<FirstOf>> {
+    landmarks
+        .list()
         .iter()
-        .map(|found| {
-            found.placed.map(|placed| FirstOf {
+        .zip(left_out)
+        .map(|(landmark, found)| {
+            Pair::from_fn(|from: Side| FirstOf {
                 share: None,
-                right: placed.rank == 1,
+                placed: found.placed[from],
+                members: landmark.parcels[from.opposite()].len(),
             })
         })
         .collect()

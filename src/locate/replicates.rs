@@ -117,31 +117,50 @@ impl Tally {
     }
 }
 
-/// Runs all replicates.
-pub fn run(
-    study: &Study,
-    material: &Material<'_>,
-    spaces: &PerAlignment<Space>,
-    ranking: &Ranking,
-    watch: &dyn Watch,
-) -> Result<Tally, Interrupted> {
-    let settings = &study.settings;
-    watch.begin("bootstrap replicates", settings.replicates);
+/// What every replicate works from.
+#[derive(Clone, Copy)]
+pub struct Job<'j, 'm> {
+    /// The study.
+    pub study: &'j Study,
+    /// The full sample.
+    pub material: &'j Material<'m>,
+    /// Its joint spaces.
+    pub spaces: &'j PerAlignment<Space>,
+    /// What ranks.
+    pub ranking: &'j Ranking,
+}
+
+/// Runs all replicates. Where no draw of subjects can be used, they are run without subjects, so that
+/// what is said of landmarks stands; the tally tells.
+pub fn run(job: Job<'_, '_>, watch: &dyn Watch) -> Result<Tally, Interrupted> {
+    let has_subjects = job.study.cohorts.a.is_some() || job.study.cohorts.b.is_some();
+    let tally = all(job, has_subjects, watch)?;
+    if has_subjects && tally.ranking == 0 {
+        let without = all(job, false, watch)?;
+        return Ok(Tally {
+            drawn: true,
+            unusable: tally.unusable,
+            ..without
+        });
+    }
+    Ok(tally)
+}
+
+fn all(job: Job<'_, '_>, draw_subjects: bool, watch: &dyn Watch) -> Result<Tally, Interrupted> {
+    let Job {
+        study,
+        spaces,
+        ranking,
+        ..
+    } = job;
+    watch.begin("bootstrap replicates", study.settings.replicates);
     let tally = accumulate(
-        settings.replicates,
+        study.settings.replicates,
         watch,
         || Tally::new(&ranking.open, spaces),
         || Array2::zeros((ranking.open.a.len(), ranking.open.b.len())),
         |tally, dissimilarities, replicate| {
-            one(
-                tally,
-                dissimilarities,
-                replicate,
-                study,
-                material,
-                spaces,
-                ranking,
-            );
+            one(tally, dissimilarities, replicate, job, draw_subjects);
         },
         Tally::add,
     );
@@ -153,11 +172,15 @@ fn one(
     tally: &mut Tally,
     dissimilarities: &mut Array2<f64>,
     replicate: usize,
-    study: &Study,
-    material: &Material<'_>,
-    spaces: &PerAlignment<Space>,
-    ranking: &Ranking,
+    job: Job<'_, '_>,
+    draw_subjects: bool,
 ) {
+    let Job {
+        study,
+        material,
+        spaces,
+        ranking,
+    } = job;
     let settings = &study.settings;
     let index = replicate as u64;
     let mut chance = Stream::new(settings.seed, Purpose::LandmarkWeights, index);
@@ -187,8 +210,7 @@ fn one(
     }
 
     let ranks_here = replicate < ranking.ranker.replicates(settings.replicates);
-    let has_subjects = study.cohorts.a.is_some() || study.cohorts.b.is_some();
-    if has_subjects {
+    if draw_subjects {
         tally.drawn = true;
         if replicate >= settings.subject_replicates {
             return;

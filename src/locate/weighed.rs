@@ -147,7 +147,7 @@ impl Weighed {
         );
         let firsts = match self.blends {
             true => found.into_iter().map(|found| found.first).collect(),
-            false => firsts(&left_out),
+            false => firsts(material.landmarks, &left_out),
         };
         (left_out, firsts)
     }

@@ -1,7 +1,7 @@
 //! Strengths to coordinates, by the settings of a run.
 
 use super::Treatment;
-use crate::affinity::Profiles;
+use crate::affinity::{self, Profiles};
 use crate::domain::Connectivity;
 use crate::embed::{self, DiffusionError, DiffusionTime, Embedding};
 use crate::settings::Settings;
@@ -16,19 +16,17 @@ pub fn embed_strengths(
     settings: &Settings,
     axes: usize,
 ) -> Result<Embedding, DiffusionError> {
-    let profiles = Profiles::of(network, treatment.affinity.strongest);
-    let likeness = treatment.affinity.likeness;
     match settings.embedding {
-        embed::Method::Components => Ok(embed::components(&profiles.standardised(likeness), axes)),
-        embed::Method::Diffusion => {
-            let affinity = profiles.affinity(likeness);
-            drop(profiles);
-            embed::diffusion_map(
-                affinity,
-                settings.density_exponent,
-                DiffusionTime::from_number(settings.diffusion_time),
-                axes,
-            )
+        embed::Method::Components => {
+            let profiles = Profiles::of(network, treatment.affinity.strongest);
+            let profiles = profiles.standardised(treatment.affinity.likeness);
+            Ok(embed::components(&profiles, axes))
         }
+        embed::Method::Diffusion => embed::diffusion_map(
+            affinity::of(network, &treatment.affinity),
+            settings.density_exponent,
+            DiffusionTime::from_number(settings.diffusion_time),
+            axes,
+        ),
     }
 }

@@ -132,23 +132,27 @@ impl RawFacts {
                 })
             });
 
-        let mut partners: Vec<Vec<usize>> = vec![Vec::new(); n];
-        let mut connections = 0;
-        for (i, j) in links() {
-            connections += 1;
-            partners[i].push(j);
-            if j < n {
-                partners[j].push(i);
+        // A pair linked both ways is met twice but counts once; nothing is stored for each link, of
+        // which there may be millions.
+        let mut column_of_row: Vec<Option<usize>> = vec![None; n];
+        for j in 0..columns {
+            if let Some(i) = network.row_of_column(j) {
+                column_of_row[i] = Some(j);
             }
         }
-        let partners = partners
-            .into_iter()
-            .map(|mut of_parcel| {
-                of_parcel.sort_unstable();
-                of_parcel.dedup();
-                of_parcel.len()
-            })
-            .collect();
+        let is_link = |i: usize, j: usize| {
+            network.is_data(i, j) && (weights[(i, j)] != 0.0 || kind == WeightKind::Log10)
+        };
+        let mut partners = vec![0; n];
+        let mut connections = 0;
+        for (i, end) in links() {
+            connections += 1;
+            partners[i] += 1;
+            let both_ways = || column_of_row[i].is_some_and(|back| is_link(end, back));
+            if end < n && !both_ways() {
+                partners[end] += 1;
+            }
+        }
         let mut strength = vec![0.0; n];
         for ((i, j), &w) in weights.indexed_iter() {
             if network.is_data(i, j) {

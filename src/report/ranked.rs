@@ -11,6 +11,8 @@ use crate::prepare::Study;
 
 /// A set that holds more than this share of the candidates tells next to nothing.
 const WIDE: f64 = 0.25;
+/// A p-value of doubt about a counterpart from which a parcel is not listed among the best.
+const DOUBTFUL: f64 = 0.1;
 /// Candidates of a set that are named on the terminal.
 const NAMED: usize = 3;
 
@@ -48,9 +50,28 @@ fn rows(located: &Located, side: Side) -> Vec<Row<'_>> {
     rows
 }
 
-/// Whether the set of a parcel is too wide to speak of a counterpart.
-fn is_wide(placement: &Placement) -> bool {
-    placement.candidate_set.len() as f64 > WIDE * placement.candidates as f64
+/// Where a parcel is shown.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+enum Section {
+    /// Its first candidate can be named.
+    Best,
+    /// Its set is too wide, or much speaks against a counterpart.
+    NoClearCounterpart,
+    /// It has fewer connections than every landmark.
+    TooLittleData,
+}
+
+impl Section {
+    fn of(located: &Located, side: Side, placement: &Placement) -> Section {
+        let judged = located.judgements[side][placement.parcel];
+        let is_wide = placement.candidate_set.len() as f64 > WIDE * placement.candidates as f64;
+        let is_doubtful = judged.doubt.is_some_and(|doubt| doubt.p <= DOUBTFUL);
+        match (judged.too_little_data, is_wide || is_doubtful) {
+            (true, _) => Section::TooLittleData,
+            (false, true) => Section::NoClearCounterpart,
+            (false, false) => Section::Best,
+        }
+    }
 }
 
 /// The account for people.
@@ -113,26 +134,39 @@ fn species(text: &mut String, study: &Study, located: &Located, side: Side) -> R
         &study.species[side.opposite()].parcels,
     );
     let rows = rows(located, side);
-    let (wide, clear): (Vec<&Row<'_>>, Vec<&Row<'_>>) =
-        rows.iter().partition(|row| is_wide(row.placement));
+    let of = |section: Section| -> Vec<&Row<'_>> {
+        rows.iter()
+            .filter(|row| Section::of(located, side, row.placement) == section)
+            .collect()
+    };
+    let best = of(Section::Best);
     writeln!(
         text,
         "\n{} in {}: {} parcels, best first.",
         short(own.species()),
         short(other.species()),
-        clear.len()
+        best.len()
     )?;
     header(text)?;
-    for row in clear {
+    for row in best {
         line(text, study, located, side, row)?;
     }
-    if !wide.is_empty() {
-        writeln!(
-            text,
-            "No clear counterpart: the set holds more than a quarter of all candidates ({}).",
-            wide.len()
-        )?;
-        for row in wide {
+    for (section, why) in [
+        (
+            Section::NoClearCounterpart,
+            "No clear counterpart: the set holds more than a quarter of all candidates, or mass and\n  \
+             misfit speak against one (no_counterpart_p of parcels.csv at most 0.1)",
+        ),
+        (
+            Section::TooLittleData,
+            "Too little data: fewer connections than every landmark, which do not speak for them",
+        ),
+    ] {
+        let rows = of(section);
+        if !rows.is_empty() {
+            writeln!(text, "{why}: {}.", rows.len())?;
+        }
+        for row in rows {
             line(text, study, located, side, row)?;
         }
     }
@@ -142,7 +176,7 @@ fn species(text: &mut String, study: &Study, located: &Located, side: Side) -> R
     ] {
         if !parcels.is_empty() {
             let named: Vec<String> = parcels.iter().map(|p| short(p)).collect();
-            writeln!(text, "Too little data, {why}: {}.", named.join(", "))?;
+            writeln!(text, "Not placed, {why}: {}.", named.join(", "))?;
         }
     }
     let none: Vec<String> = located.placements[side]

@@ -15,11 +15,12 @@ pub const RECORD: &str = "run.json";
 /// What an unfinished run says about itself.
 pub const UNFINISHED: &str = "unfinished.json";
 /// The tables of a finished run.
-pub const TABLES: [&str; 4] = [
+pub const TABLES: [&str; 5] = [
     "positions.csv",
     "counterparts.csv",
     "landmarks.csv",
     "axes.csv",
+    "parcels.csv",
 ];
 
 /// Tables that answers to questions about a finished run add to its folder, or that are written alone.

@@ -192,7 +192,9 @@ fn correspondences(text: &mut String, study: &Study, located: &Located) -> Resul
         .filter_map(|placement| Some((placement, placement.counterparts.first()?)))
         .collect();
     firsts.sort_by(|(_, x), (_, y)| {
-        (y.support.total_cmp(&x.support)).then(x.distance.total_cmp(&y.distance))
+        (y.support.total_cmp(&x.support))
+            .then(y.chance.unwrap_or(0.0).total_cmp(&x.chance.unwrap_or(0.0)))
+            .then(x.distance.total_cmp(&y.distance))
     });
     let of_all = firsts.len();
     let is_strong = |found: &Counterpart| found.mutual && found.support >= STABLE;
@@ -225,7 +227,8 @@ fn correspondences(text: &mut String, study: &Study, located: &Located) -> Resul
     }
     writeln!(
         text,
-        "  Support is stability under other landmark weights, not a chance of being right.\n"
+        "  Support is stability under other landmark weights. Chance of being right assumes that there\n  \
+         is a counterpart, and is capped by what left-out landmarks support.\n"
     )
 }
 
@@ -270,11 +273,11 @@ fn pair(text: &mut String, study: &Study, placement: &Placement, found: &Counter
     let (low, high) = found.rank_interval;
     writeln!(
         text,
-        "  {:<20} {:<20} support {:.2}  rank {low}-{high}  distance {:.2}",
+        "  {:<20} {:<20} chance {:.2}  support {:.2}  rank {low}-{high}",
         label(Side::A, placement.parcel),
         label(Side::B, found.parcel),
-        found.support,
-        found.distance
+        found.chance.unwrap_or(0.0),
+        found.support
     )?;
     let named =
         |side: Side, parcel: usize| study.species[side].attributes[parcel].long_name.as_deref();

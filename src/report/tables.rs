@@ -3,7 +3,7 @@
 use crate::align::Alignment;
 use crate::domain::{Attributes, Extent, Landmarks, Pair, Side};
 use crate::evidence::Kind;
-use crate::locate::{Located, SubjectErrors};
+use crate::locate::{Doubt, Located, SubjectErrors};
 use crate::prepare::Study;
 
 /// Separates several parcels in one cell, as in the landmark table.
@@ -45,6 +45,7 @@ pub fn tables(study: &Study, located: &Located) -> Vec<(&'static str, Vec<u8>)> 
         ("counterparts.csv", counterparts(study, located)),
         ("landmarks.csv", landmarks(study, located)),
         ("axes.csv", axes(study, located)),
+        ("parcels.csv", parcels(study, located)),
     ]
 }
 
@@ -176,6 +177,34 @@ fn counterparts(study: &Study, located: &Located) -> Vec<u8> {
                 row.push(found.in_candidate_set.to_string());
                 table.row(row);
             }
+        }
+    }
+    table.bytes()
+}
+
+fn parcels(study: &Study, located: &Located) -> Vec<u8> {
+    let mut table = Table::new([
+        "species",
+        "parcel",
+        "no_counterpart_score",
+        "no_counterpart_p",
+        "too_little_data",
+    ]);
+    for side in Side::BOTH {
+        let parcels = &study.species[side].parcels;
+        for &parcel in parcels.as_listed() {
+            let judged = &located.judgements[side][parcel];
+            let cell = |of: fn(&Doubt) -> f64| {
+                let value = judged.doubt.as_ref().map(of);
+                value.map_or_else(String::new, |x| x.to_string())
+            };
+            table.row([
+                parcels.species(),
+                &parcels.labels()[parcel],
+                &cell(|doubt| doubt.score),
+                &cell(|doubt| doubt.p),
+                &judged.too_little_data.to_string(),
+            ]);
         }
     }
     table.bytes()

@@ -83,7 +83,7 @@ impl Squares {
 /// ```
 ///
 /// over the pairs of links that were observed in both (Peyré, Cuturi & Solomon 2016, square loss).
-/// [`Structures::gradient`] is the linear map H with Q(T) = <H(T), T> / 2.
+/// What [`Structures::add_gradient`] adds up is the linear map H with Q(T) = <H(T), T> / 2.
 #[derive(Debug, Clone)]
 pub struct Structures {
     sizes: (usize, usize),

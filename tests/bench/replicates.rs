@@ -10,6 +10,7 @@ use kinmark::align::{self, Alignment, Params};
 use kinmark::domain::Pair;
 use kinmark::linalg::squared_distances;
 use kinmark::place;
+use kinmark::transport::{Fused, Marginals, Masses, Structure, Structures};
 use ndarray::Array2;
 use rand::{Rng, SeedableRng};
 use rand_xoshiro::Xoshiro256PlusPlus;
@@ -53,5 +54,37 @@ fn replicates(c: &mut Criterion) {
     });
 }
 
-criterion_group!(benches, replicates);
+/// One fit of transport between two sparse networks of the size of a nervous system.
+fn transport(c: &mut Criterion) {
+    let (n, m) = (161, 180);
+    let mut rng = Xoshiro256PlusPlus::seed_from_u64(4);
+    let mut network = |n: usize| {
+        let links = Array2::from_shape_fn((n, n), |(i, j)| {
+            if i != j && rng.gen_bool(0.1) {
+                rng.gen_range(0.0..3.0)
+            } else {
+                0.0
+            }
+        });
+        Structure::new(links, None)
+    };
+    let structures = Structures::new(&network(n), &network(m));
+    let cost = Array2::from_shape_fn((n, m), |_| rng.gen_range(0.0..2.0));
+    let marginals = Marginals::Fixed(Masses::uniform(n, m));
+    c.bench_function("fused transport, 161 x 180, 15 steps", |b| {
+        b.iter(|| {
+            let problem = Fused {
+                structures: &structures,
+                cost: &cost,
+                fused: 0.4,
+                marginals: &marginals,
+                steps: 15,
+                tolerance: 1e-6,
+            };
+            black_box(problem.solve())
+        });
+    });
+}
+
+criterion_group!(benches, replicates, transport);
 criterion_main!(benches);

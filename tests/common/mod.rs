@@ -14,18 +14,20 @@ use serde_json::Value;
 use tempfile::TempDir;
 
 /// The files a finished run consists of.
-pub const RUN: [&str; 5] = [
+pub const RUN: [&str; 6] = [
     "axes.csv",
     "counterparts.csv",
     "landmarks.csv",
+    "parcels.csv",
     "positions.csv",
     "run.json",
 ];
 /// The tables among them.
-pub const TABLES: [&str; 4] = [
+pub const TABLES: [&str; 5] = [
     "axes.csv",
     "counterparts.csv",
     "landmarks.csv",
+    "parcels.csv",
     "positions.csv",
 ];
 
