@@ -23,7 +23,7 @@ pub use weighed::Weighed;
 
 use candidate_sets::Calibration;
 use chance::Support;
-use ranking::{Ranker, Ranking};
+use ranking::{Grounds, Ranker, Ranking};
 
 use serde::Serialize;
 
@@ -194,17 +194,14 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         spaces[alignment].standard_errors = tally.standard_errors(alignment);
     }
 
-    let placements = Pair::from_fn(|side| {
-        ranking.placements(
-            side,
-            study,
-            &tally,
-            &spaces[choice.evidence],
-            &support,
-            &sets,
-            &compared,
-        )
-    });
+    let grounds = Grounds {
+        tally: &tally,
+        space: &spaces[choice.evidence],
+        landmarks: &support,
+        sets: &sets,
+        compared: &compared,
+    };
+    let placements = Pair::from_fn(|side| ranking.placements(side, study, &grounds));
     let mut warnings = Vec::new();
     for why in &unavailable {
         warnings.push(Warning::EvidenceUnavailable {

@@ -102,17 +102,17 @@ fn coverage(planted: &Planted, settings: &[(&str, &str)]) -> (f64, f64) {
     (covered as f64 / all as f64, sizes[all / 2])
 }
 
-/// 150 studies each at low and high noise, 12 landmarks drawn at random from 50 parcels, by canonical
-/// distances and by fingerprint, and 24 of transport at low noise: sets at 90 and at 80 % hold the
+/// 100 studies each at low and high noise, 12 landmarks drawn at random from 50 parcels, by canonical
+/// distances and by fingerprint (low noise only), and 16 of transport: sets at 90 and at 80 % hold the
 /// counterpart at least as often as they say, less three points, by two standard errors. They are no
 /// empty promise: at low noise the median set holds less than a third of the 38 candidates.
 #[test]
 fn candidate_sets_cover() {
     for (evidence, noise, trials) in [
-        ("canonical", 0.5, 150),
-        ("canonical", 1.5, 150),
-        ("fingerprint", 0.5, 150),
-        ("transport", 0.5, 24),
+        ("canonical", 0.5, 100),
+        ("canonical", 1.5, 100),
+        ("fingerprint", 0.5, 100),
+        ("transport", 0.5, 16),
     ] {
         let plan = Plan {
             parcels: 50,
@@ -136,7 +136,6 @@ fn candidate_sets_cover() {
             let (mean, error) = mean_and_error(&covered);
             let (size, _) = mean_and_error(&sizes);
             let nominal: f64 = level.parse().unwrap();
-            println!("{evidence}, noise {noise}, level {level}: {mean:.3} +- {error:.3}, median size {size:.1}");
             assert!(
                 mean > nominal - 0.03 - 2.0 * error,
                 "{evidence}, noise {noise}, level {level}: {mean:.3} +- {error:.3}"
@@ -192,13 +191,14 @@ fn rejected(found: &Located, study: &Study, parcels: usize, lone: usize, level: 
     counts.map(|(hits, all)| hits / all)
 }
 
-/// 150 studies by canonical distances, 150 by fingerprint and 24 by transport, 12 landmarks, 50 parcels
+/// 100 studies by canonical distances, 100 by fingerprint and 16 by transport, 12 landmarks, 50 parcels
 /// of which 10 have no counterpart: of these no more than 10 and 20 % have a p at most .1 and .2 (the
-/// lower 99.9 % limit over trials). Parcels with a counterpart have one more often.
+/// lower 99.9 % limit over trials). The test has little power (docs/method.md), so no more is asked of
+/// parcels with a counterpart than to have such a p at least as often.
 #[test]
 fn parcels_without_counterpart_are_rarely_said_to_have_one() {
     let (parcels, lone) = (50, 10);
-    for (evidence, trials) in [("canonical", 150), ("fingerprint", 150), ("transport", 24)] {
+    for (evidence, trials) in [("canonical", 100), ("fingerprint", 100), ("transport", 16)] {
         let settings = [
             ("evidence", evidence),
             ("replicates", "2"),
@@ -220,9 +220,6 @@ fn parcels_without_counterpart_are_rarely_said_to_have_one() {
                 .collect();
             let of = |k: usize| mean_and_error(&rates.iter().map(|r| r[k]).collect::<Vec<_>>());
             let ((without, error), (with, _)) = (of(0), of(1));
-            println!(
-                "{evidence}, p at most {level}: without {without:.3} +- {error:.3}, with {with:.3}"
-            );
             assert!(
                 without - SURE * error <= level,
                 "{evidence}: {without:.3} +- {error:.3} at {level}"

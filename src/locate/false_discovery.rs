@@ -10,7 +10,8 @@ pub fn q_values(p: &[f64]) -> Vec<f64> {
     for (behind, &at) in order.iter().enumerate() {
         let rank = (p.len() - behind) as f64;
         least = least.min(p[at] * p.len() as f64 / rank);
-        q[at] = least;
+        // Rounding must not take it below its own p.
+        q[at] = least.max(p[at]);
     }
     q
 }

@@ -60,6 +60,21 @@ fn fit(
     }
 }
 
+/// What is said of candidates beside their rank.
+#[derive(Clone, Copy)]
+pub struct Grounds<'g> {
+    /// Counts over replicates.
+    pub tally: &'g Tally,
+    /// The joint space that shows distances.
+    pub space: &'g Space,
+    /// What left-out landmarks support.
+    pub landmarks: &'g Support,
+    /// Candidate sets.
+    pub sets: &'g CandidateSets,
+    /// The full-sample comparison of open parcels.
+    pub compared: &'g Compared,
+}
+
 /// The full-sample ranking of open parcels against open parcels, and which of it is listed.
 pub struct Ranking {
     /// What ranks.
@@ -215,16 +230,14 @@ impl Ranking {
     }
 
     /// Every open parcel's candidates, in the order of the input file.
-    pub fn placements(
-        &self,
-        side: Side,
-        study: &Study,
-        tally: &Tally,
-        space: &Space,
-        landmarks: &Support,
-        sets: &CandidateSets,
-        compared: &Compared,
-    ) -> Vec<Placement> {
+    pub fn placements(&self, side: Side, study: &Study, grounds: &Grounds<'_>) -> Vec<Placement> {
+        let Grounds {
+            tally,
+            space,
+            landmarks,
+            sets,
+            compared,
+        } = *grounds;
         let other = side.opposite();
         let seen = Seen::new(compared, side);
         let mut rank_intervals = tally.rank_intervals(side);

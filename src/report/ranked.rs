@@ -123,7 +123,7 @@ fn heading(text: &mut String, study: &Study, located: &Located) -> Result {
     writeln!(
         text,
         "q: of parcels with such a q or less, the expected share without any counterpart among the\n  \
-         candidates; {} landmark blocks give p-values down to {least:.3} and no q below that.",
+         candidates; {} landmark blocks give no q below {least:.3}. The test is weak: a large q means nothing.",
         level.blocks
     )
 }
