@@ -750,6 +750,7 @@ fn the_record_says_what_was_done() {
             "resampling": "bayesian",
             "hemispheres": "ignore",
             "top": "all",
+            "level": 0.9,
         })
     );
     assert_eq!(

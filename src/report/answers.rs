@@ -74,4 +74,8 @@ pub fn add_to_run(
     write_files(run, &files, replace, &|there, new| {
         header(there) == header(new)
     })
+    .map_err(|error| match error {
+        MapsError::Foreign(path) => MapsError::OtherTable(path),
+        other => other,
+    })
 }

@@ -23,8 +23,11 @@ pub enum MapsError {
     #[error("{} is there already and differs; name another folder with --out, or add --replace to replace it", .0.display())]
     Exists(PathBuf),
     /// A file that is none of this program's.
-    #[error("{} is there already and is none that this program would write; it is left untouched. Name another folder with --out", .0.display())]
+    #[error("{} is there already and was not painted by this program; it is left untouched. Name another folder with --out", .0.display())]
     Foreign(PathBuf),
+    /// A table with another header.
+    #[error("{} is there already and has not the columns that this program writes; it is left untouched. Name a folder with --out", .0.display())]
+    OtherTable(PathBuf),
     /// The operating system said no.
     #[error("cannot {doing} {}: {source}; check permissions and free space", .path.display())]
     System {
