@@ -227,8 +227,8 @@ fn correspondences(text: &mut String, study: &Study, located: &Located) -> Resul
     }
     writeln!(
         text,
-        "  Support is stability under other landmark weights. Chance of being right assumes that there\n  \
-         is a counterpart, and is capped by what left-out landmarks support.\n"
+        "  Support is stability under other landmark weights. Chance of being right is cautious (read it as\n  \
+         at least about so much) and capped by what left-out landmarks support.\n"
     )
 }
 
