@@ -65,7 +65,7 @@ fn figures(text: &mut String, study: &Study, found: &HeldOut) -> Result {
     let names = Pair::from_fn(|side| short(study.species[side].parcels.species()));
     writeln!(
         text,
-        "{:<24}{:>14}{:>14}{:>20}{:>8}{:>14}",
+        "{:<24}{:>14}{:>14}{:>22}{:>8}{:>14}",
         "The counterpart comes",
         cut(&format!("from {}", names.a)),
         cut(&format!("from {}", names.b)),
@@ -89,7 +89,7 @@ fn figures(text: &mut String, study: &Study, found: &HeldOut) -> Result {
             .map_or_else(|| "none".to_owned(), |f| format!("{:.2}", f.both[at].value));
         writeln!(
             text,
-            "{what:<24}{:>14.2}{:>14.2}{:>20}{:>8.2}{fingerprint:>14}",
+            "{what:<24}{:>14.2}{:>14.2}{:>22}{:>8.2}{fingerprint:>14}",
             sides.a,
             sides.b,
             format!("{value:.2} ({low:.2}-{high:.2})"),
