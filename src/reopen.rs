@@ -81,7 +81,7 @@ pub struct Reopened {
 /// Reads a study from its file, or again from the folder of a finished run.
 ///
 /// # Errors
-/// [`Error`] for a fault in the input, or inputs or settings that are not those of the run.
+/// [`enum@Error`] for a fault in the input, or inputs or settings that are not those of the run.
 pub fn reopen(path: &Path, asked: Request) -> Result<Reopened, Error> {
     if !path.is_dir() {
         return Ok(Reopened {
