@@ -154,8 +154,9 @@ fn species(text: &mut String, study: &Study, located: &Located, side: Side) -> R
     for (section, why) in [
         (
             Section::NoClearCounterpart,
-            "No clear counterpart: the set holds more than a quarter of all candidates, or mass and\n  \
-             misfit speak against one (no_counterpart_p of parcels.csv at most 0.1)",
+            "Not settled: the set holds more than a quarter of all candidates, for which one wrong\n  \
+             landmark is enough, or mass and misfit speak against a counterpart (no_counterpart_p of\n  \
+             parcels.csv at most 0.1)",
         ),
         (
             Section::TooLittleData,
