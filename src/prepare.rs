@@ -32,6 +32,7 @@ mod suspicion;
 pub use again::{drawn_again, Again};
 pub use cohort::Cohort;
 use embedding::embed_strengths;
+pub use embedding::embedded_by;
 pub use parts::Parts;
 pub use raw_facts::{Filled, RawFacts, SumsToOne};
 use reading::{read_species, Raw};

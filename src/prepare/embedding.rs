@@ -1,10 +1,11 @@
 //! Strengths to coordinates, by the settings of a run.
 
-use super::Treatment;
+use super::{Study, Treatment};
 use crate::affinity::{self, Profiles};
-use crate::domain::Connectivity;
+use crate::domain::{Connectivity, Pair, Side};
 use crate::embed::{self, DiffusionError, DiffusionTime, Embedding};
 use crate::settings::Settings;
+use crate::species::Species;
 
 /// Embeds a species whose strengths are `(parcels, entries)`, on `axes` axes at most.
 ///
@@ -29,4 +30,32 @@ pub fn embed_strengths(
             axes,
         ),
     }
+}
+
+/// A study whose species are embedded by another method on as many axes; `None` where that method has
+/// none for one of them. Without individuals, whose draws would have to be matched anew.
+#[must_use]
+pub fn embedded_by(study: &Study, method: embed::Method) -> Option<Study> {
+    let settings = Settings {
+        embedding: method,
+        ..study.settings.clone()
+    };
+    let embedded = |side: Side| {
+        let full = &study.species[side];
+        let axes = full.embedding.axes();
+        let found = embed_strengths(&full.network, &study.treatment[side], &settings, axes).ok()?;
+        (found.axes() > 0).then(|| Species {
+            embedding: found,
+            ..full.clone()
+        })
+    };
+    Some(Study {
+        species: Pair {
+            a: embedded(Side::A)?,
+            b: embedded(Side::B)?,
+        },
+        settings,
+        cohorts: Pair { a: None, b: None },
+        ..study.clone()
+    })
 }
