@@ -18,7 +18,7 @@ const PULL: f64 = 5.0;
 /// Part of the cost (of mean 1) in the ranking, which orders candidates without a share.
 const COST_IN_RANKING: f64 = 0.02;
 /// Part of the shares by agreement in the ranking, beside those of the plan.
-const AGREEMENT_IN_RANKING: f64 = 0.5;
+const AGREEMENT_IN_RANKING: f64 = 0.6;
 /// How fast a share by agreement falls with the correlation of links: by e for a sixteenth less.
 const AGREEMENT_SHARPNESS: f64 = 16.0;
 /// Most steps of a fit: on the real pairs 15 steps rank as well as 60 (docs/method.md).
