@@ -133,10 +133,11 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         &study.landmarks,
         study.species.as_ref().map(|s| s.parcels.len()),
     );
-    let params = |alignment, axes| Params {
+    let params = |alignment, axes, embedding| Params {
         alignment,
         axes,
         ridge: settings.ridge,
+        embedding,
     };
 
     let asked = Asked::draw(&study.landmarks, &study.candidates, settings.seed);
@@ -148,7 +149,9 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
     };
     let weighed = Weighed::new(settings, &study.axes, &material, &questions, watch)?;
     let choice = weighed.choice;
-    let settled = PerAlignment::from_fn(|alignment| params(alignment, choice.axes[alignment]));
+    let settled = PerAlignment::from_fn(|alignment| {
+        params(alignment, choice.axes[alignment], choice.embedding)
+    });
     let calibration = Calibration::new(&study.landmarks, &questions, settings.level);
     let (left_out, firsts) = weighed.leave_out(&material, &questions, &|at, compared| {
         calibration.look(at, compared);
@@ -243,7 +246,7 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
     Ok(Located {
         curves: Alignment::BOTH
             .into_iter()
-            .map(|alignment| Curve::of(alignment, &ways, &trials))
+            .map(|alignment| Curve::of(alignment, choice.embedding, &ways, &trials))
             .collect(),
         beyond: beyond_landmarks(&material, settled[choice.evidence].axes),
         choice,
