@@ -74,9 +74,7 @@ impl<'m> Material<'m> {
             landmarks,
             anchors: Pair::from_fn(|side| anchors(side, &species[side].embedding.coordinates)),
             tried: (0..tried)
-                .map(|at| {
-                    Pair::from_fn(|side| anchors(side, &species[side].tried[at].coordinates))
-                })
+                .map(|at| Pair::from_fn(|side| anchors(side, &species[side].tried[at].coordinates)))
                 .collect(),
             links: OnceLock::new(),
             compared: std::array::from_fn(|_| OnceLock::new()),

@@ -234,7 +234,11 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         .map_err(|problem| InputError::new(Place::file(&inputs.study.path), problem))?;
     let available = Side::BOTH
         .into_iter()
-        .flat_map(|side| [&species[side].embedding].into_iter().chain(&species[side].tried))
+        .flat_map(|side| {
+            [&species[side].embedding]
+                .into_iter()
+                .chain(&species[side].tried)
+        })
         .map(Embedding::axes)
         .min()
         .unwrap_or(0);
@@ -322,7 +326,10 @@ fn leave_usable(species: &mut Pair<Species>, recipes: Vec<Recipe>, axes: Axes) -
         species[side].embedding = species[side].tried[first].clone();
         species[side].tried = match keep.len() {
             1 => Vec::new(),
-            _ => keep.iter().map(|&at| species[side].tried[at].clone()).collect(),
+            _ => keep
+                .iter()
+                .map(|&at| species[side].tried[at].clone())
+                .collect(),
         };
     }
     keep.into_iter().map(|at| recipes[at]).collect()

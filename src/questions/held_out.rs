@@ -324,7 +324,8 @@ impl<'r> Rerun<'r> {
         let ranked = self.ranked(questions);
         let placed = place(&ranked.full(candidates.clone()));
         let fingerprint = fingerprint.then(|| place(&ranked.alone(candidates, &Fingerprint)));
-        let positions = self.map
+        let positions = self
+            .map
             .positions(self.material.embedded_in(self.space.embedding));
         let gap = &positions.a.row(asked.a) - &positions.b.row(asked.b);
         HeldOutLandmark {

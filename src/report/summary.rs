@@ -161,7 +161,7 @@ fn embedded_by(text: &mut String, study: &Study) -> Result {
     }
     writeln!(
         text,
-        "  Embedding chosen by left-out landmarks: {} (errors: {}).",
+        "  Embedding chosen by left-out landmarks: {};\n  errors of those tried: {}.",
         study.embedded.recipe.in_words(),
         tried.join(", ")
     )
