@@ -171,13 +171,16 @@ pub fn locate_by(
 ) -> Result<(Located, Watched), Interrupted> {
     let settings = &study.settings;
     let (open, asked) = (questions.open, questions.asked);
-    let params = |alignment, axes| Params {
+    let params = |alignment, axes, embedding| Params {
         alignment,
         axes,
         ridge: settings.ridge,
+        embedding,
     };
     let choice = weighed.choice;
-    let settled = PerAlignment::from_fn(|alignment| params(alignment, choice.axes[alignment]));
+    let settled = PerAlignment::from_fn(|alignment| {
+        params(alignment, choice.axes[alignment], choice.embedding)
+    });
     let calibration = Calibration::new(&study.landmarks, questions, settings.level);
     let (left_out, firsts) = weighed.leave_out(material, questions, &|at, compared| {
         calibration.look(at, compared);
@@ -276,7 +279,7 @@ pub fn locate_by(
     let located = Located {
         curves: Alignment::BOTH
             .into_iter()
-            .map(|alignment| Curve::of(alignment, ways, trials))
+            .map(|alignment| Curve::of(alignment, choice.embedding, ways, trials))
             .collect(),
         beyond: beyond_landmarks(material, settled[choice.evidence].axes),
         choice,

@@ -331,9 +331,9 @@ struct SettingOptions {
     #[arg(long, value_name = "auto|N", value_parser = checked("axes"))]
     axes: Option<String>,
 
-    /// How connectivity becomes coordinates: diffusion map, or principal components of profiles
-    /// [default: diffusion]
-    #[arg(long, value_name = "diffusion|components", value_parser = checked("embedding"))]
+    /// How connectivity becomes coordinates: diffusion map, or principal components of profiles; auto
+    /// lets left-out landmarks choose [default: diffusion]
+    #[arg(long, value_name = "diffusion|components|auto", value_parser = checked("embedding"))]
     embedding: Option<String>,
 
     /// Density exponent of the diffusion map, 0 to 1: 1 removes the density of parcels from it

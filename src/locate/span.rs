@@ -3,6 +3,7 @@
 use nalgebra::{DMatrix, DVector};
 use ndarray::{s, Array1, Array2, ArrayView1, Axis};
 
+use crate::align::Params;
 use crate::domain::{Pair, Side};
 use crate::evidence::Material;
 use crate::linalg::principal_root_inverse;
@@ -81,23 +82,26 @@ pub fn beyond_landmarks(material: &Material<'_>, axes: usize) -> Pair<Vec<f64>> 
 #[must_use]
 pub fn strain(
     material: &Material<'_>,
-    axes: usize,
+    space: Params,
     without: &[usize],
     pairs: &[Pair<usize>],
 ) -> Vec<f64> {
     let kept: Vec<usize> = (0..material.landmarks.len())
         .filter(|&at| !without.contains(&material.landmarks.list()[at].block))
         .collect();
+    let (own, embedded) = (
+        material.anchors_in(space.embedding),
+        material.embedded_in(space.embedding),
+    );
     let spans = Pair::from_fn(|side: Side| {
-        let anchors = material.anchors[side].select(Axis(0), &kept);
-        Span::of(&leading(&anchors, axes))
+        let anchors = own[side].select(Axis(0), &kept);
+        Span::of(&leading(&anchors, space.axes))
     });
     pairs
         .iter()
         .map(|pair| {
-            let leverage = Pair::from_fn(|side: Side| {
-                spans[side].leverage(material.embedded()[side].row(pair[side]))
-            });
+            let leverage =
+                Pair::from_fn(|side: Side| spans[side].leverage(embedded[side].row(pair[side])));
             (1.0 + (leverage.a + leverage.b) / 2.0).sqrt()
         })
         .collect()

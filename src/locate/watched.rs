@@ -57,10 +57,11 @@ pub fn gaps(
     weights: &[f64],
     pairs: &[Pair<usize>],
 ) -> Vec<f64> {
-    let positions = align::fit(params, material.anchors.as_ref(), weights)
+    let embedded = material.embedded_in(params.embedding);
+    let positions = align::fit(params, material.anchors_in(params.embedding), weights)
         .expect("landmarks were counted before")
-        .in_standard_units(material.embedded())
-        .positions(material.embedded());
+        .in_standard_units(embedded)
+        .positions(embedded);
     pairs
         .iter()
         .map(|pair| {

@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use super::left_out::{firsts, summarise, LeftOut};
-use crate::align::{Alignment, Params};
+use crate::align::Alignment;
 use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{Pair, Seed};
 use crate::evidence::{Evidence, Expression, Grown, Kind, Material, Transport, Unavailable};
@@ -50,17 +50,7 @@ impl Weighed {
         questions: &Questions<'_>,
         watch: &dyn Watch,
     ) -> Result<Weighed, Interrupted> {
-        let joint = |alignment, axes| {
-            Way::Joint(Params {
-                alignment,
-                axes,
-                ridge: settings.ridge,
-            })
-        };
-        let mut ways: Vec<Way> = Alignment::BOTH
-            .into_iter()
-            .flat_map(|alignment| axes.iter().map(move |&axes| joint(alignment, axes)))
-            .collect();
+        let mut ways = holdout::joint_ways(axes, settings.ridge, material.embeddings());
         let mut unavailable = Vec::new();
         for way in further_ways(settings, axes) {
             match can_be_fitted(&way, material, questions.seed) {
@@ -82,11 +72,7 @@ impl Weighed {
             }
             None => None,
         };
-        let alignment = match settings.evidence {
-            EvidenceChoice::Procrustes => Some(Alignment::Procrustes),
-            EvidenceChoice::Canonical => Some(Alignment::Canonical),
-            _ => None,
-        };
+        let alignment = settings.evidence.alignment();
         let choice = holdout::choose(&ways, &trials, alignment, None);
         let members = members(settings.evidence, &ways, &trials, &choice);
         Ok(Weighed {
@@ -116,6 +102,7 @@ impl Weighed {
             ways: &self.ways,
             trials: &self.trials,
             members: &self.members,
+            alignment: self.alignment,
             blends: self.blends,
             bagged: self.bagged.as_deref(),
             questions: *questions,

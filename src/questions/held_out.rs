@@ -262,10 +262,12 @@ impl<'r> Rerun<'r> {
             alignment,
             axes: weighed.choice.axes[alignment],
             ridge: settings.ridge,
+            embedding: weighed.choice.embedding,
         };
-        let map = align::fit(space, material.anchors.as_ref(), &material.weights(|_| 1.0))
+        let anchors = material.anchors_in(space.embedding);
+        let map = align::fit(space, anchors, &material.weights(|_| 1.0))
             .expect("landmarks were checked")
-            .in_standard_units(material.embedded());
+            .in_standard_units(material.embedded_in(space.embedding));
         Ok(Rerun {
             material,
             weighed,
@@ -305,7 +307,9 @@ impl<'r> Rerun<'r> {
         let ranked = self.ranked(questions);
         let placed = place(&ranked.full(candidates.clone()));
         let fingerprint = fingerprint.then(|| place(&ranked.alone(candidates, &Fingerprint)));
-        let positions = self.map.positions(self.material.embedded());
+        let positions = self
+            .map
+            .positions(self.material.embedded_in(self.space.embedding));
         let gap = &positions.a.row(asked.a) - &positions.b.row(asked.b);
         HeldOutLandmark {
             set,

@@ -604,7 +604,7 @@ fn ruling_json(r: &Ruling, side: Side) -> Value {
         "least-p": 1.0 / (1 + r.blocks) as f64,
         "p-nearer": r.nearer.p,
         "p-search": r.selected.p(side, None),
-        "hold": r.selected.hold,
+        "strength": r.selected.strength,
         "rank": r.placed.map(|p| p.rank),
         "candidates": r.placed.map(|p| p.candidates),
         "rank-interval": r.rank_intervals,

@@ -54,7 +54,14 @@ pub fn variations(
             continue;
         }
         if let Some(view) = ground.view.by(kind) {
-            all.push(by_ranks(ground, from, pair, &view, format!("{kind} alone")));
+            all.push(by_ranks(
+                ground,
+                from,
+                pair,
+                &view,
+                Some(kind),
+                format!("{kind} alone"),
+            ));
         }
     }
     if ground.weighed.blends {
@@ -65,6 +72,7 @@ pub fn variations(
                 from,
                 pair,
                 &ground.view,
+                None,
                 String::from("what ranks, by ranks"),
             ),
         );
@@ -79,7 +87,12 @@ pub fn variations(
             if axes < 1 || axes > most.max(chosen) || (is_main && !ground.weighed.blends) {
                 continue;
             }
-            let space = params(&ground.study, alignment, axes as usize);
+            let space = params(
+                &ground.study,
+                alignment,
+                axes as usize,
+                ground.located.choice.embedding,
+            );
             let name = format!("{alignment} on {axes} axes");
             all.extend(in_space(
                 ground,
@@ -92,14 +105,14 @@ pub fn variations(
             ));
         }
     }
-    let other = match ground.study.settings.embedding {
+    let other = match ground.study.embedded.recipe.method {
         Method::Diffusion => Method::Components,
         Method::Components => Method::Diffusion,
     };
     if let Some(study) = embedded_by(&ground.study, other) {
         for alignment in Alignment::BOTH {
             let axes = ground.located.choice.axes[alignment];
-            let space = params(&study, alignment, axes);
+            let space = params(&study, alignment, axes, 0);
             let name = format!("{alignment} on {axes} axes of {other}");
             all.extend(in_space(ground, &study, from, pair, ruling, space, name));
         }
@@ -114,12 +127,13 @@ fn kind_of(alignment: Alignment) -> Kind {
     }
 }
 
-fn params(study: &Study, alignment: Alignment, axes: usize) -> Params {
+fn params(study: &Study, alignment: Alignment, axes: usize, embedding: usize) -> Params {
     let available = Pair::from_fn(|side| study.species[side].embedding.axes());
     Params {
         alignment,
         axes: axes.min(available.a).min(available.b),
         ridge: study.settings.ridge,
+        embedding,
     }
 }
 
@@ -129,6 +143,7 @@ fn by_ranks(
     from: Side,
     pair: Pair<usize>,
     view: &View,
+    alone: Option<Kind>,
     setting: String,
 ) -> Variation {
     let study = &ground.study;
@@ -144,7 +159,18 @@ fn by_ranks(
             .map(|pair| log_odds(view.placed(*pair)))
             .collect(),
     };
-    let selected = Selected::of(view, &ground.lie, pair, &study.landmarks, &ground.asked);
+    let carried = match alone {
+        None | Some(Kind::Transport) => ground.agreement.as_ref(),
+        Some(_) => None,
+    };
+    let selected = Selected::of(
+        view,
+        &ground.lie,
+        carried,
+        pair,
+        &study.landmarks,
+        &ground.asked,
+    );
     varied(
         study,
         from,
@@ -191,7 +217,14 @@ fn in_space(
             .collect(),
         unrelated: strained(&material, space, &[], &nearer.pairs),
     };
-    let selected = Selected::of(&view, &ground.lie, pair, &study.landmarks, &ground.asked);
+    let selected = Selected::of(
+        &view,
+        &ground.lie,
+        None,
+        pair,
+        &study.landmarks,
+        &ground.asked,
+    );
     let ranks = view.placed(pair).map(|p| p.rank);
     Some(varied(
         study,

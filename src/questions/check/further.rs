@@ -7,8 +7,8 @@ use super::separation::conformal;
 use super::spot::strained;
 use crate::align::{Alignment, Params};
 use crate::domain::{Landmark, Landmarks, Pair, Share};
-use crate::evidence::{JointDistance, Material};
-use crate::holdout::{choose, place_each, Asked, Questions, Trials, Way};
+use crate::evidence::Material;
+use crate::holdout::{choose, joint_ways, place_each, Asked, Questions, Trials};
 use crate::locate::stand_ins;
 use crate::place;
 use crate::prepare::Study;
@@ -47,17 +47,10 @@ pub fn further(study: &Study, alignment: Option<Alignment>, pair: Pair<usize>) -
         nested: Vec::new(),
         blocks: landmarks.list().iter().map(|l| l.block).collect(),
     };
-    let mut ways = Vec::new();
-    for alignment in Alignment::BOTH {
-        for &axes in &study.axes {
-            let params = Params {
-                alignment,
-                axes,
-                ridge: study.settings.ridge,
-            };
-            trials.add(place_each(&material, &JointDistance(params), &questions));
-            ways.push(Way::Joint(params));
-        }
+    let ways = joint_ways(&study.axes, study.settings.ridge, material.embeddings());
+    for way in &ways {
+        let evidence = way.evidence().expect("joint spaces are cheap to fit");
+        trials.add(place_each(&material, &*evidence, &questions));
     }
     let space = ways[choose(&ways, &trials, alignment, None).way]
         .joint()

@@ -2,17 +2,20 @@
 
 use std::sync::Mutex;
 
+use ndarray::Array2;
+
 use super::selected::Lie;
 use super::separation::Usual;
 use super::spot::logarithm;
 use super::view::View;
 use crate::bootstrap::interval_of;
 use crate::domain::{LandmarkError, Landmarks, Pair};
-use crate::evidence::Material;
+use crate::evidence::{Expression, Material};
 use crate::holdout::{Asked, Compared, Questions};
 use crate::locate::{locate_by, map_without, stand_ins, strain, Located, Watched, Weighed};
 use crate::place;
 use crate::prepare::{axes_to_try, Study};
+use crate::transport::agreement;
 use crate::watch::{Interrupted, Watch};
 
 /// What ranks, what was located with it, and named pairs followed through the replicates.
@@ -31,6 +34,9 @@ pub struct Ground {
     pub view: View,
     /// Where everyone lies.
     pub lie: Lie,
+    /// How well the links of every pair agree when carried over by transport `(parcels of a, parcels of
+    /// b)`, where it takes part.
+    pub agreement: Option<Array2<f64>>,
     /// Pairs that were followed.
     pub pairs: Vec<Pair<usize>>,
     /// What became of them.
@@ -95,12 +101,18 @@ impl Ground {
                     let found = &located.left_out[*at];
                     let map = || map_without(&material, found.chosen, block);
                     let is_contradicted = found.contradicted.is_some();
-                    (!is_contradicted).then(|| map().positions(material.embedded()))
+                    (!is_contradicted)
+                        .then(|| map().positions(material.embedded_in(found.chosen.embedding)))
                 })
                 .collect(),
             usual: usual.centre.exp(),
             limit: usual.limit.exp(),
         };
+        let agreement = weighed.bagged.as_ref().and_then(|bagged| {
+            let links = &material.compared(Expression::Scores).links;
+            let shares = bagged.shares.as_ref()?;
+            Some(agreement(links.as_ref(), shares.as_ref()))
+        });
         drop(material);
         Ok(Ground {
             open,
@@ -109,6 +121,7 @@ impl Ground {
             located,
             view,
             lie,
+            agreement,
             pairs,
             watched,
             study,
@@ -119,8 +132,8 @@ impl Ground {
     #[must_use]
     pub fn upper_end(&self, pair: Pair<usize>) -> f64 {
         let material = Material::new(self.study.species.as_ref(), &self.study.landmarks);
-        let axes = self.located.choice.axes[self.located.choice.evidence];
-        let strain = strain(&material, axes, &[], &[pair])[0];
+        let space = self.located.spaces[self.located.choice.evidence].params;
+        let strain = strain(&material, space, &[], &[pair])[0];
         let index = self.index(pair);
         let all = self.watched.distances.iter();
         let all = all.map(|distances| logarithm(distances[index] / strain));

@@ -8,13 +8,12 @@ use super::nearer::{nearer, Nearer};
 use super::selected::Selected;
 use super::separation::{Separation, Usual};
 use super::spot::{logarithm, strained};
-use crate::align::Alignment;
 use crate::bootstrap::{interval, interval_of};
 use crate::domain::{choices, Pair, Side};
 use crate::evidence::Material;
 use crate::holdout::Placed;
 use crate::locate::{gaps, strain, LeftOut};
-use crate::settings::{EvidenceChoice, Settings};
+use crate::settings::Settings;
 
 /// Room for rounding in the comparison of a p-value with a level.
 const ROUNDING: f64 = 1e-9;
@@ -123,16 +122,6 @@ pub fn reaches(p: f64, level: f64) -> bool {
     p <= level + ROUNDING
 }
 
-/// The alignment that was asked for, if one was.
-#[must_use]
-pub fn alignment_asked(settings: &Settings) -> Option<Alignment> {
-    match settings.evidence {
-        EvidenceChoice::Procrustes => Some(Alignment::Procrustes),
-        EvidenceChoice::Canonical => Some(Alignment::Canonical),
-        _ => None,
-    }
-}
-
 /// Rules on a pair that the ground has followed; it was asked for from species `from`.
 ///
 /// # Panics
@@ -154,8 +143,15 @@ pub fn rule(ground: &Ground, from: Side, pair: Pair<usize>) -> Ruling {
     let nearer = nearer(view, pair, &located.beyond, &study.candidates);
     let separation = separation(ground, &material, pair, &nearer.pairs);
     let usual = separation.usual();
-    let further = further(study, alignment_asked(&study.settings), pair);
-    let selected = Selected::of(view, &ground.lie, pair, &study.landmarks, asked);
+    let further = further(study, study.settings.evidence.alignment(), pair);
+    let selected = Selected::of(
+        view,
+        &ground.lie,
+        ground.agreement.as_ref(),
+        pair,
+        &study.landmarks,
+        asked,
+    );
     let blocks = study.landmarks.blocks();
     let grounds = Grounds {
         is_further: reaches(further.p, level),
@@ -210,7 +206,7 @@ fn separation(
     let index = ground.index(pair);
     let space = located.spaces[located.choice.evidence].params;
     let own = strained(material, space, &[], &[pair])[0];
-    let strain = strain(material, space.axes, &[], &[pair])[0];
+    let strain = strain(material, space, &[], &[pair])[0];
     let over_replicates = watched.distances.iter();
     let over_replicates = over_replicates.map(|all| logarithm(all[index] / strain));
     Separation {

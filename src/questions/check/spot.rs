@@ -19,7 +19,7 @@ pub fn strained(
 ) -> Vec<f64> {
     let weights = material.weights(|b| if without.contains(&b) { 0.0 } else { 1.0 });
     let distances = gaps(space, material, &weights, pairs);
-    let strains = strain(material, space.axes, without, pairs);
+    let strains = strain(material, space, without, pairs);
     let each = distances.into_iter().zip(strains);
     each.map(|(distance, strain)| logarithm(distance / strain))
         .collect()
