@@ -142,11 +142,7 @@ impl Rates {
                     r.separation.interval.1
                 };
                 let m = r.selected.matched.iter().flatten();
-                let guard = if d == 0 {
-                    !m.clone().any(|x| x.a)
-                } else {
-                    !m.clone().any(|x| x.a || x.b)
-                };
+                let guard = m.clone().filter(|x| x.a).count() <= d;
                 let inside = r.separation.unrelated.iter().filter(|x| **x <= lim).count() as f64
                     / r.separation.unrelated.len() as f64;
                 *cell += f64::from(u8::from(
