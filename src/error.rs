@@ -5,7 +5,7 @@ use thiserror::Error;
 use crate::draft::DraftError;
 use crate::input::InputError;
 use crate::paint::PaintError;
-use crate::questions::PlanError;
+use crate::questions::{AskError, PlanError};
 use crate::reopen::ReopenError;
 use crate::report::{FolderError, MapsError};
 use crate::watch::Interrupted;
@@ -31,6 +31,9 @@ pub enum Error {
     /// Landmarks that cannot be held out.
     #[error(transparent)]
     Plan(#[from] PlanError),
+    /// A pair that cannot be checked.
+    #[error(transparent)]
+    Ask(#[from] AskError),
     /// Tables that cannot be added to a run.
     #[error(transparent)]
     Files(#[from] MapsError),
@@ -59,6 +62,7 @@ impl Error {
             | Error::Paint(_)
             | Error::Reopen(_)
             | Error::Plan(_)
+            | Error::Ask(_)
             | Error::Files(_)
             | Error::Threads { .. } => 2,
             Error::Interrupted(_) => 130,

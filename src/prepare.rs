@@ -33,6 +33,7 @@ mod suspicion;
 
 pub use again::{drawn_again, Again};
 pub use cohort::Cohort;
+pub use embedding::embedded_by;
 use embedding::{embed_strengths, recipes};
 pub use parts::Parts;
 pub use raw_facts::{Filled, RawFacts, SumsToOne};

@@ -1,5 +1,7 @@
 //! Every kind of evidence judged and weighed by left-out landmarks: what ranks, and on what grounds.
 
+use std::sync::Arc;
+
 use super::left_out::{firsts, summarise, LeftOut};
 use crate::align::Alignment;
 use crate::bootstrap::{Purpose, Stream};
@@ -25,7 +27,7 @@ pub struct Weighed {
     /// Whether their ranks are blended.
     pub blends: bool,
     /// Replicates of transport, where it takes part.
-    pub bagged: Option<OutOfBag>,
+    pub bagged: Option<Arc<OutOfBag>>,
     /// Kinds that have nothing to say about this study.
     pub unavailable: Vec<Unavailable>,
     /// The alignment that was asked for, if one was.
@@ -62,7 +64,7 @@ impl Weighed {
                 let placed = holdout::placed_out_of_bag(material, &bagged, questions);
                 ways.push(Way::Transport);
                 trials.add(placed);
-                Some(bagged)
+                Some(Arc::new(bagged))
             }
             Some(Err(why)) => {
                 unavailable.push(why);
@@ -102,7 +104,7 @@ impl Weighed {
             members: &self.members,
             alignment: self.alignment,
             blends: self.blends,
-            bagged: self.bagged.as_ref(),
+            bagged: self.bagged.as_deref(),
             questions: *questions,
         }
     }

@@ -1,10 +1,11 @@
 //! Strengths to coordinates, by the settings of a run.
 
-use super::Treatment;
+use super::{Embedded, Study, Treatment};
 use crate::affinity::{self, Profiles};
-use crate::domain::{Connectivity, Share};
+use crate::domain::{Connectivity, Pair, Share, Side};
 use crate::embed::{self, DiffusionError, DiffusionTime, Embedding, Recipe};
 use crate::settings::{EmbeddingChoice, Settings};
+use crate::species::Species;
 
 /// Share of links kept by the recipe that cuts: on correlations, of which the default keeps a tenth,
 /// three tenths ranked better than either (docs/method.md).
@@ -60,4 +61,39 @@ pub fn embed_strengths(
             axes,
         ),
     }
+}
+
+/// A study whose species are embedded by another method on as many axes; `None` where that method has
+/// none for one of them. Without individuals, whose draws would have to be matched anew.
+#[must_use]
+pub fn embedded_by(study: &Study, method: embed::Method) -> Option<Study> {
+    let recipe = Recipe::plain(method);
+    let settings = Settings {
+        embedding: method.into(),
+        ..study.settings.clone()
+    };
+    let embedded = |side: Side| {
+        let full = &study.species[side];
+        let treatment = &study.treatment[side];
+        let axes = full.embedding.axes();
+        let found = embed_strengths(&full.network, treatment, &settings, recipe, axes).ok()?;
+        (found.axes() > 0).then(|| Species {
+            embedding: found,
+            tried: Vec::new(),
+            ..full.clone()
+        })
+    };
+    Some(Study {
+        species: Pair {
+            a: embedded(Side::A)?,
+            b: embedded(Side::B)?,
+        },
+        embedded: Embedded {
+            recipe,
+            tried: Vec::new(),
+        },
+        settings,
+        cohorts: Pair { a: None, b: None },
+        ..study.clone()
+    })
 }

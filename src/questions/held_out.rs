@@ -149,7 +149,10 @@ pub fn hold_out(
             if watch.interrupted() {
                 return Err(Interrupted);
             }
-            let kept = kept(&study.landmarks, set);
+            let kept = study
+                .landmarks
+                .without(set)
+                .expect("the plan leaves enough landmarks");
             let material = material.with_landmarks(&kept);
             let rerun = Rerun::new(study, &material, &questions, watch)?;
             let fingerprint = has_fingerprint(&material, &questions);
@@ -214,26 +217,6 @@ pub fn hold_out(
         landmarks,
         sets,
     })
-}
-
-/// The landmarks of other blocks, these numbered anew.
-fn kept(landmarks: &Landmarks, out: &[usize]) -> Landmarks {
-    let stay: Vec<usize> = (0..landmarks.blocks())
-        .filter(|b| !out.contains(b))
-        .collect();
-    let list = landmarks
-        .list()
-        .iter()
-        .filter_map(|landmark| {
-            let block = stay.binary_search(&landmark.block).ok()?;
-            Some(Landmark {
-                block,
-                ..landmark.clone()
-            })
-        })
-        .collect();
-    let names = stay.iter().map(|&b| landmarks.block_name(b).to_owned());
-    Landmarks::new(list, names.collect()).expect("the plan leaves enough landmarks")
 }
 
 fn has_fingerprint(material: &Material<'_>, questions: &Questions<'_>) -> bool {
