@@ -2,11 +2,13 @@
 
 mod canonical;
 mod joint;
+mod moments;
 mod procrustes;
 mod weighted;
 
 pub use canonical::{RidgeCca, RidgeCcaParams, RidgeCcaValidParams};
 pub use joint::{Affine, Anchorage, JointMap, Similarity};
+pub use moments::Moments;
 pub use procrustes::{Procrustes, ProcrustesParams, ProcrustesValidParams, Scaling};
 pub use weighted::AlignError;
 

@@ -4,6 +4,7 @@ mod choose;
 mod contradiction;
 mod mixture;
 mod out_of_bag;
+mod shuffled;
 mod trials;
 mod without;
 
@@ -11,5 +12,6 @@ pub use choose::{choose, errors_of_embeddings, Choice, Curve, Point};
 pub use contradiction::contradicted;
 pub use mixture::{leave_out, placed_out_of_bag, weigh, Blend, FirstOf, LeftOutOfMixture, Member};
 pub use out_of_bag::{out_of_bag, OutOfBag, FEWEST_REPLICATES};
+pub use shuffled::shuffled;
 pub use trials::{joint_ways, place_each, place_one, run, Asked, Placed, Questions, Trials, Way};
 pub use without::{Compared, Ranked};

@@ -1,5 +1,6 @@
 //! The main job: where every parcel of either species falls in the other's space.
 
+mod agreement;
 mod axes;
 mod candidate_sets;
 mod chance;
@@ -12,7 +13,10 @@ mod span;
 mod watched;
 mod weighed;
 
-pub use axes::{AxisEnds, Space, StandardErrors, SubjectErrors};
+pub use agreement::PERMUTATIONS;
+pub use axes::{
+    AxisEnds, Space, StandardErrors, SubjectErrors, REPLICATES_FROM_RELIABILITY, REPLICATES_UP_TO_P,
+};
 pub use candidate_sets::{stand_ins, Seen, SetLevel};
 pub use doubt::{Doubt, Judged};
 pub use false_discovery::q_values;
@@ -191,6 +195,9 @@ pub fn locate_by(
     let support = Support::new(&study.landmarks, firsts);
     let mut spaces =
         PerAlignment::from_fn(|alignment| Space::fit(material, settled[alignment], asked));
+    let p = agreement::p_values(material, questions, &spaces, watch)?;
+    spaces.procrustes.p = p.procrustes;
+    spaces.canonical.p = p.canonical;
 
     let judgements = doubt::judgements(material, weighed.bagged.as_deref(), open, asked);
 
@@ -228,6 +235,7 @@ pub fn locate_by(
     let seen = tally.take_watched();
     for alignment in Alignment::BOTH {
         spaces[alignment].standard_errors = tally.standard_errors(alignment);
+        spaces[alignment].reliability = tally.reliability(alignment);
     }
 
     let grounds = Grounds {

@@ -58,6 +58,33 @@ pub struct Similarity {
     shift: Array1<f64>,
 }
 
+impl Similarity {
+    /// The one that brings points as close as possible (least squares) onto others, from the sums of
+    /// products `(axes, axes)` of the centred points with the centred others, the points' sum of
+    /// squares about their mean, and both means.
+    pub(super) fn least_squares(
+        cross: &Array2<f64>,
+        spread: f64,
+        mean_from: Array1<f64>,
+        mean_onto: Array1<f64>,
+    ) -> Similarity {
+        let svd = small_svd(&DMatrix::from_fn(cross.nrows(), cross.ncols(), |i, j| {
+            cross[(i, j)]
+        }));
+        let scale = if spread > 0.0 {
+            svd.values.iter().sum::<f64>() / spread
+        } else {
+            1.0
+        };
+        let turn = from_small(&(&svd.u * svd.v.transpose()));
+        Similarity {
+            shift: mean_onto - mean_from.dot(&turn) * scale,
+            turn,
+            scale,
+        }
+    }
+}
+
 /// Points of an embedding and where a joint space has them, reduced to what superimposing other maps
 /// of the same points needs: moments, whatever the number of points.
 #[derive(Debug, Clone, PartialEq)]
@@ -88,22 +115,9 @@ impl Anchorage {
     #[must_use]
     pub fn similarity(&self, map: &Affine) -> Similarity {
         let cross = map.matrix.t().dot(&self.cross);
-        let svd = small_svd(&DMatrix::from_fn(cross.nrows(), cross.ncols(), |i, j| {
-            cross[(i, j)]
-        }));
         let spread = (&map.matrix * &self.own.dot(&map.matrix)).sum();
-        let scale = if spread > 0.0 {
-            svd.values.iter().sum::<f64>() / spread
-        } else {
-            1.0
-        };
-        let turn = from_small(&(&svd.u * svd.v.transpose()));
         let mean_from = (&self.mean - &map.origin).dot(&map.matrix) + &map.offset;
-        Similarity {
-            shift: &self.mean_onto - &(mean_from.dot(&turn) * scale),
-            turn,
-            scale,
-        }
+        Similarity::least_squares(&cross, spread, mean_from, self.mean_onto.clone())
     }
 }
 

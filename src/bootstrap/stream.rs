@@ -28,6 +28,8 @@ pub enum Purpose {
     OutOfBagFit,
     /// Which landmark is paired with which, where pairings are permuted.
     PermutedPairs,
+    /// The same, where axes are judged.
+    PermutedAxes,
     /// Which sets of landmark blocks are held out.
     HeldOutSets,
     /// Which landmark stands for its block where blocks are counted.
@@ -46,6 +48,7 @@ impl Purpose {
             Purpose::OutOfBagWeights => "out of bag weights",
             Purpose::OutOfBagFit => "out of bag fit",
             Purpose::PermutedPairs => "permuted pairs",
+            Purpose::PermutedAxes => "permuted axes",
             Purpose::HeldOutSets => "held-out sets",
             Purpose::StandsForBlock => "stands for block",
         }

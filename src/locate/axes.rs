@@ -1,9 +1,9 @@
 //! A joint space and what its axes carry.
 
-use ndarray::{concatenate, s, Array1, Array2, ArrayView1, Axis};
+use ndarray::{s, Array1, Array2};
 
-use super::left_out::map_without;
-use crate::align::{self, Anchorage, JointMap, Params};
+use super::agreement::{correlation, left_out};
+use crate::align::{self, Anchorage, JointMap, Moments, Params};
 use crate::domain::{Pair, Side};
 use crate::evidence::Material;
 use crate::holdout::Asked;
@@ -31,7 +31,22 @@ pub struct Space {
     /// The same with every landmark placed by a fit that does without it; `None` where a side does
     /// not vary.
     pub correlations_left_out: Vec<Option<f64>>,
+    /// p-value of the latter over permuted pairings of the landmarks; `None` where it is undefined.
+    pub p: Vec<Option<f64>>,
+    /// Mean, over replicates that draw landmarks again, of the absolute correlation of all parcels'
+    /// coordinates with those on the replicate's axis of the same number.
+    pub reliability: Vec<f64>,
+    /// Moments of the embeddings on the axes that enter.
+    pub(super) moments: Moments,
 }
+
+/// Largest p-value of an axis that replicates. Common practice, no source: an axis is looked into, not
+/// acted upon.
+pub const REPLICATES_UP_TO_P: f64 = 0.1;
+
+/// Least reliability of an axis that replicates: half the variance in common (0.7 squared). Common
+/// practice, no source.
+pub const REPLICATES_FROM_RELIABILITY: f64 = 0.7;
 
 /// Standard errors of positions `(parcels, axes)`, by what was drawn again.
 #[derive(Debug, Clone)]
@@ -87,7 +102,8 @@ pub struct AxisEnds {
 }
 
 impl Space {
-    /// Fits the full sample. Standard errors are zero until the bootstrap has run.
+    /// Fits the full sample. Standard errors and reliabilities are zero until the bootstrap has run,
+    /// p-values missing until pairings were permuted.
     pub(super) fn fit(material: &Material<'_>, params: Params, asked: &Asked) -> Space {
         let weights = material.weights(|_| 1.0);
         let embedded = material.embedded();
@@ -97,6 +113,7 @@ impl Space {
         let positions = map.positions(embedded);
         let landmarks = map.positions(material.anchors.as_ref());
         let weights = Array1::from(weights);
+        let moments = Moments::new(embedded, params.axes);
         Space {
             params,
             shares: Pair::from_fn(|side| map.shares(side, embedded[side])),
@@ -106,7 +123,10 @@ impl Space {
                         .unwrap_or(0.0)
                 })
                 .collect(),
-            correlations_left_out: left_out_correlations(material, &positions, params, asked),
+            correlations_left_out: left_out(material, &moments, params, asked),
+            p: vec![None; map.axes()],
+            reliability: vec![0.0; map.axes()],
+            moments,
             standard_errors: StandardErrors {
                 landmarks: positions.as_ref().map(|p| Array2::zeros(p.dim())),
                 subjects: None,
@@ -118,6 +138,16 @@ impl Space {
             positions,
             map,
         }
+    }
+
+    /// Whether an axis replicates: landmarks agree on it, and beyond chance, when left out, and it
+    /// stays under other weights of the landmarks. Any other is not told from noise, and not to be
+    /// interpreted.
+    #[must_use]
+    pub fn replicates(&self, axis: usize) -> bool {
+        self.correlations_left_out[axis].is_some_and(|r| r > 0.0)
+            && self.p[axis].is_some_and(|p| p <= REPLICATES_UP_TO_P)
+            && self.reliability[axis] >= REPLICATES_FROM_RELIABILITY
     }
 
     /// Distance between a parcel of one side and a parcel of the other.
@@ -142,53 +172,4 @@ impl Space {
             high: order.iter().rev().take(ends).copied().collect(),
         }
     }
-}
-
-/// Per axis, the correlation over landmarks of coordinates that each landmark gets from a fit
-/// without its block, brought to the full-sample axes by the parcels of both species.
-fn left_out_correlations(
-    material: &Material<'_>,
-    positions: &Pair<Array2<f64>>,
-    params: Params,
-    asked: &Asked,
-) -> Vec<Option<f64>> {
-    let landmarks = material.landmarks;
-    let pooled = |p: &Pair<Array2<f64>>| {
-        concatenate(Axis(0), &[p.a.view(), p.b.view()]).expect("both sides have the same axes")
-    };
-    let full = pooled(positions);
-    let mut placed = Pair::from_fn(|_| Array2::zeros((landmarks.len(), params.axes)));
-    for block in 0..landmarks.blocks() {
-        let map = map_without(material, params, block);
-        let there = map.positions(material.embedded());
-        let map = map.moved(&JointMap::superimpose(&pooled(&there), &full));
-        let there = map.positions(material.embedded());
-        for (at, landmark) in landmarks.list().iter().enumerate() {
-            if landmark.block == block {
-                for side in Side::BOTH {
-                    placed[side]
-                        .row_mut(at)
-                        .assign(&there[side].row(asked.of(at)[side]));
-                }
-            }
-        }
-    }
-    let weights: Array1<f64> = landmarks.list().iter().map(|l| l.weight.get()).collect();
-    (0..params.axes)
-        .map(|axis| correlation(placed.a.column(axis), placed.b.column(axis), &weights))
-        .collect()
-}
-
-/// Weighted Pearson correlation; `None` where a side does not vary.
-fn correlation(
-    x: ArrayView1<'_, f64>,
-    y: ArrayView1<'_, f64>,
-    weights: &Array1<f64>,
-) -> Option<f64> {
-    let total = weights.sum();
-    let mean = |z: ArrayView1<'_, f64>| z.dot(weights) / total;
-    let (x, y) = (&x - mean(x), &y - mean(y));
-    let products = |u: &Array1<f64>, v: &Array1<f64>| (u * v).dot(weights);
-    let own = products(&x, &x) * products(&y, &y);
-    (own > 0.0).then(|| (products(&x, &y) / own.sqrt()).clamp(-1.0, 1.0))
 }

@@ -21,6 +21,10 @@ pub struct Tally {
     firsts: Pair<Array2<u32>>,
     /// Stray of every parcel in both joint spaces, by what was drawn again.
     spreads: [PerAlignment<Pair<Spread>>; Again::ALL.len()],
+    /// Sums over replicates of the absolute correlation of each joint axis with itself.
+    likeness: PerAlignment<Vec<f64>>,
+    /// Replicates that the latter comes from: all of them.
+    seen: usize,
     /// Ranks of all listed pairs, for each replicate that ranks.
     ranks: Pair<Vec<Vec<u32>>>,
     /// What becomes of the watched pairs.
@@ -65,6 +69,8 @@ impl Tally {
                         .map(|p| Spread::new(p.nrows(), p.ncols()))
                 })
             }),
+            likeness: PerAlignment::from_fn(|alignment| vec![0.0; spaces[alignment].map.axes()]),
+            seen: 0,
             ranks: Pair::default(),
             watched: Watched::default(),
             degenerate: 0,
@@ -85,6 +91,13 @@ impl Tally {
                 }
             }
         }
+        for alignment in Alignment::BOTH {
+            let own = &block.likeness[alignment];
+            for (all, own) in self.likeness[alignment].iter_mut().zip(own) {
+                *all += own;
+            }
+        }
+        self.seen += block.seen;
         self.watched.append(block.watched);
         self.degenerate += block.degenerate;
         self.ranking += block.ranking;
@@ -118,6 +131,12 @@ impl Tally {
                 both: of(Again::Both),
             }),
         }
+    }
+
+    /// Mean over replicates of the absolute correlation of each joint axis with itself.
+    pub(super) fn reliability(&self, alignment: Alignment) -> Vec<f64> {
+        let sums = self.likeness[alignment].iter();
+        sums.map(|sum| sum / self.seen as f64).collect()
     }
 
     /// Rank intervals of all listed pairs of a side, in order.
@@ -217,13 +236,14 @@ fn one(
         tally.degenerate += 1;
     }
     for alignment in Alignment::BOTH {
-        stray(
-            &mut tally.spreads[Again::Landmarks as usize][alignment],
-            &spaces[alignment],
-            material,
-            &weights,
-        );
+        let (space, anchors) = (&spaces[alignment], material.anchors.as_ref());
+        let map = align::fit(space.params, anchors, &weights)
+            .expect("every draw has two landmarks or more");
+        let spreads = &mut tally.spreads[Again::Landmarks as usize][alignment];
+        stray(spreads, space, material, &map);
+        resemble(&mut tally.likeness[alignment], space, &map);
     }
+    tally.seen += 1;
 
     if !watched.is_empty() && !draw_subjects {
         let found = gaps(spaces[shown].params, material, &weights, watched);
@@ -343,9 +363,7 @@ const SORT_FROM: usize = 10;
 /// How far every parcel strays from its full-sample position relative to the other species: each
 /// replicate is first superimposed on the full sample by the *other* species' parcels. So neither
 /// species is the fixed one, and no error is zero by construction.
-fn stray(spreads: &mut Pair<Spread>, space: &Space, material: &Material<'_>, weights: &[f64]) {
-    let map = align::fit(space.params, material.anchors.as_ref(), weights)
-        .expect("every draw has two landmarks or more");
+fn stray(spreads: &mut Pair<Spread>, space: &Space, material: &Material<'_>, map: &JointMap) {
     for side in Side::BOTH {
         let other = side.opposite();
         let back = space.anchorage[other].similarity(&map.maps[other]);
@@ -357,7 +375,17 @@ fn stray(spreads: &mut Pair<Spread>, space: &Space, material: &Material<'_>, wei
     }
 }
 
-/// The same for embeddings of subjects drawn again, which must be superimposed by positions, since
+/// How alike each axis of a replicate and the full sample's axis of the same number are, over all
+/// parcels, before the replicate is superimposed: what turns axes into each other is not undone. An
+/// axis on which nothing varies is like nothing.
+fn resemble(likeness: &mut [f64], space: &Space, map: &JointMap) {
+    for (axis, sum) in likeness.iter_mut().enumerate() {
+        let found = space.moments.correlation((map, axis), (&space.map, axis));
+        *sum += found.map_or(0.0, f64::abs);
+    }
+}
+
+/// Stray for embeddings of subjects drawn again, which must be superimposed by positions, since
 /// their coordinates are others; by those of parcels that kept a connection.
 fn stray_again(
     spreads: &mut Pair<Spread>,

@@ -1,19 +1,14 @@
 //! Landmark pairings permuted: how well left-out landmarks would do if the pairing meant nothing.
 
-use rand::seq::SliceRandom;
 use rayon::prelude::*;
 use serde::Serialize;
 
 use crate::align::{Alignment, Params};
 use crate::bootstrap::{Purpose, Stream};
-use crate::domain::{Landmark, Landmarks, Pair, Side};
 use crate::evidence::{Evidence, Fingerprint, Grown, JointDistance, Kind, Material};
-use crate::holdout::{place_each, Asked, Placed, Questions};
+use crate::holdout::{place_each, shuffled, Asked, Placed, Questions};
 use crate::settings::{EvidenceChoice, Settings};
 use crate::watch::{Interrupted, Watch};
-
-/// Draws of a pairing that is admissible before one is given up.
-const TRIES: usize = 200;
 
 /// Left-out landmarks under their pairing and under permuted ones.
 #[derive(Debug, Clone, PartialEq, Serialize)]
@@ -74,7 +69,8 @@ pub fn permute(
                 return None;
             }
             let mut chance = Stream::new(questions.seed, Purpose::PermutedPairs, index as u64);
-            let value = shuffled(material.landmarks, questions, &mut chance).map(|landmarks| {
+            let shuffled = shuffled(material.landmarks, questions.candidates, &mut chance);
+            let value = shuffled.map(|landmarks| {
                 let asked = Asked::draw(&landmarks, questions.candidates, questions.seed);
                 let questions = Questions {
                     asked: &asked,
@@ -156,57 +152,4 @@ fn statistic(
         }
     }
     sums.iter().map(|(sum, count)| sum / count).sum::<f64>() / blocks as f64
-}
-
-/// The landmarks with their parcels of b exchanged between blocks of equal size; `None` where no
-/// admissible pairing was found.
-fn shuffled(
-    landmarks: &Landmarks,
-    questions: &Questions<'_>,
-    chance: &mut Stream,
-) -> Option<Landmarks> {
-    let list = landmarks.list();
-    let blocks: Vec<Vec<usize>> = (0..landmarks.blocks())
-        .map(|block| {
-            (0..list.len())
-                .filter(|&at| list[at].block == block)
-                .collect()
-        })
-        .collect();
-    let largest = blocks.iter().map(Vec::len).max().unwrap_or(0);
-    for _ in 0..TRIES {
-        let mut partner: Vec<usize> = (0..list.len()).collect();
-        for size in 1..=largest {
-            let alike: Vec<&Vec<usize>> = blocks.iter().filter(|b| b.len() == size).collect();
-            let mut order: Vec<usize> = (0..alike.len()).collect();
-            order.shuffle(chance);
-            for (own, &other) in alike.iter().zip(&order) {
-                for (&at, &with) in own.iter().zip(alike[other]) {
-                    partner[at] = with;
-                }
-            }
-        }
-        let paired: Vec<Landmark> = list
-            .iter()
-            .zip(&partner)
-            .map(|(landmark, &with)| Landmark {
-                parcels: Pair {
-                    a: landmark.parcels.a.clone(),
-                    b: list[with].parcels.b.clone(),
-                },
-                ..landmark.clone()
-            })
-            .collect();
-        let is_admissible = |l: &Landmark| {
-            let Pair { a, b } = &l.parcels;
-            a.iter()
-                .any(|&a| b.iter().any(|&b| questions.candidates.admit(Side::A, a, b)))
-        };
-        if paired.iter().all(is_admissible) {
-            let names = (0..landmarks.blocks()).map(|b| landmarks.block_name(b).to_owned());
-            let checked = Landmarks::new(paired, names.collect());
-            return Some(checked.expect("the parcels are the same as before"));
-        }
-    }
-    None
 }

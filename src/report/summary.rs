@@ -6,7 +6,9 @@ use crate::align::Alignment;
 use crate::domain::{Hemispheres, Pair, Side};
 use crate::evidence::Kind;
 use crate::holdout::{Member, Placed};
-use crate::locate::{Counterpart, Located, Placement};
+use crate::locate::{
+    Counterpart, Located, Placement, REPLICATES_FROM_RELIABILITY, REPLICATES_UP_TO_P,
+};
 use crate::prepare::Study;
 
 /// What every output says about its use.
@@ -119,6 +121,7 @@ fn trust(text: &mut String, study: &Study, located: &Located) -> Result {
     }
     embedded_by(text, study)?;
     ranked_by(text, located)?;
+    axes(text, located)?;
     uncertainty(text, study, located)
 }
 
@@ -181,7 +184,7 @@ fn ranked_by(text: &mut String, located: &Located) -> Result {
         ),
     };
     if let [only] = &rests.kinds[..] {
-        return writeln!(text, "  Ranked by {}.\n", in_words(only.kind));
+        return writeln!(text, "  Ranked by {}.", in_words(only.kind));
     }
     let mut kinds: Vec<&Member> = rests.kinds.iter().collect();
     kinds.sort_by(|x, y| y.weight.total_cmp(&x.weight));
@@ -192,9 +195,33 @@ fn ranked_by(text: &mut String, located: &Located) -> Result {
     writeln!(
         text,
         "  Ranked by a mixture, weighed by left-out landmarks: {};\n  \
-         its support and rank intervals come from {} replicates.\n",
+         its support and rank intervals come from {} replicates.",
         named.join(", "),
         rests.ranking_replicates
+    )
+}
+
+/// Which axes may be interpreted.
+fn axes(text: &mut String, located: &Located) -> Result {
+    let each = Alignment::BOTH.map(|alignment| {
+        let space = &located.spaces[alignment];
+        let all = space.map.axes();
+        let found: Vec<String> = (0..all)
+            .filter(|&axis| space.replicates(axis))
+            .map(|axis| (axis + 1).to_string())
+            .collect();
+        let which = match found.len() {
+            0 => "none".to_owned(),
+            _ => found.join(", "),
+        };
+        format!("{} {which} (of {all})", alignment.in_words())
+    });
+    writeln!(
+        text,
+        "  Axes that replicate (left-out p at most {REPLICATES_UP_TO_P}, reliability at least \
+         {REPLICATES_FROM_RELIABILITY}): {};\n  \
+         the others are noise, not to be interpreted.\n",
+        each.join("; ")
     )
 }
 

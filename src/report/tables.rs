@@ -282,6 +282,7 @@ fn axes(study: &Study, located: &Located) -> Vec<u8> {
             header.extend((1..=ends).map(|k| format!("{}_{end}_{k}", side.letter())));
         }
     }
+    header.extend(["p", "reliability", "replicates"].map(str::to_owned));
     let mut table = Table::new(header);
     for alignment in Alignment::BOTH {
         let space = &located.spaces[alignment];
@@ -304,6 +305,11 @@ fn axes(study: &Study, located: &Located) -> Vec<u8> {
                     }));
                 }
             }
+            row.extend([
+                space.p[axis].map_or_else(String::new, |p| p.to_string()),
+                space.reliability[axis].to_string(),
+                space.replicates(axis).to_string(),
+            ]);
             table.row(row);
         }
     }
