@@ -25,6 +25,7 @@ pub mod draft;
 pub mod embed;
 pub mod error;
 pub mod evidence;
+pub mod finished;
 pub mod holdout;
 pub mod input;
 pub mod inspect;
