@@ -11,13 +11,14 @@ use std::time::Instant;
 use clap::Parser;
 use kinmark::draft::draft;
 use kinmark::error::Error;
+use kinmark::page;
 use kinmark::paint;
 use kinmark::pipeline::{self, Answered, Finished};
 use kinmark::prepare::prepare;
 use kinmark::reopen::reopen;
 use kinmark::report::{self, CAUTION};
 
-use args::{Cli, Command, Holdout, Inspect, Locate, New, Paint, Rank};
+use args::{Cli, Command, Holdout, Inspect, Locate, New, Paint, Rank, Report};
 use progress::Progress;
 
 /// Exit code after Ctrl-C: 128 and the number of the signal.
@@ -31,6 +32,7 @@ pub fn run() -> Result<(), Error> {
         Command::Locate(options) => locate(&options),
         Command::Holdout(options) => holdout(&options),
         Command::Rank(options) => rank(&options),
+        Command::Report(options) => report_of(&options),
         Command::Paint(options) => paint(options),
     }
 }
@@ -112,6 +114,16 @@ fn paint(options: Paint) -> Result<(), Error> {
         let _ = writeln!(err, "warning: {warning}");
     }
     say(format!("{}\n{CAUTION}\n", painted.account()).as_bytes());
+    Ok(())
+}
+
+fn report_of(options: &Report) -> Result<(), Error> {
+    let written = page::write(&options.run, options.replace)?;
+    let mut text = String::new();
+    for path in &written {
+        text += &format!("{}\n", path.display());
+    }
+    say(format!("{text}\n{CAUTION}\n").as_bytes());
     Ok(())
 }
 

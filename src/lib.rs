@@ -31,6 +31,7 @@ pub mod input;
 pub mod inspect;
 pub mod linalg;
 pub mod locate;
+pub mod page;
 pub mod paint;
 pub mod pipeline;
 pub mod place;

@@ -2,6 +2,7 @@
 //! nothing that a table does not show.
 
 mod answers;
+mod derived;
 mod finished;
 mod gifti;
 mod held_out;
@@ -14,6 +15,7 @@ mod summary;
 mod tables;
 
 pub use answers::{add_to_run, AnswerRecord};
+pub use derived::{sealed, write_derived, FilesError, FIGURES, PAGE};
 pub use finished::{read_record, RecordError};
 pub use gifti::{gifti, SurfaceMap};
 

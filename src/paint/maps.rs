@@ -1,9 +1,9 @@
 //! The maps of a species: from the tables of a run to one number for each parcel. Nothing is
 //! computed, only looked up.
 
-use crate::finished::{Run, RunError, Species};
 use super::PaintError;
 use crate::domain::Side;
+use crate::finished::{Run, RunError, Species};
 use crate::input::nearest_few;
 
 /// What is said of vertices without a number.
