@@ -354,8 +354,7 @@
       el("p", {}, el("strong", {}, "First: "), button(first[0]),
         chance == null ? "" : `, chance ${fixed(chance, 2)}`, `, support ${fixed(first[5], 2)}, `,
         first[6] ? "each the other's first." : "not the first of its candidate."),
-      table("Candidates", ["Rank", "Candidate", "90 % of ranks", "Support", "Distance", "In set"],
-        all.map((c) => [`${c[1]}`, button(c[0]), [span(c, of), interval(c)], [bar(c[5]), fixed(c[5], 2)], fixed(c[4], 2), c[9] ? "● yes" : "no"])),
+      ...candidateTables(all, of),
       source(`counterparts.csv: rank, rank_low, rank_high (scale logarithmic, 1 to ${of}), support, distance (1 = random pairs), in_candidate_set. Candidate set: ${members.length}${open}.`),
       el("h4", {}, "Which evidence puts whom first"),
     ];
@@ -366,6 +365,14 @@
       : el("p", {}, "The run does not say."));
     parts.push(source("counterparts.csv: kinds_agreeing"));
     return parts;
+  }
+  function candidateTables(all, of) {
+    const heads = ["Rank", "Candidate", "90 % of ranks", "Support", "Distance"];
+    const cells = (c) => [`${c[1]}`, [button(c[0]), el("small", {}, c[9] ? "in the set" : "not in the set")],
+      [span(c, of), interval(c)], [bar(c[5]), fixed(c[5], 2)], fixed(c[4], 2)];
+    const near = table("First candidates", heads, all.slice(0, 5).map(cells));
+    if (all.length <= 5) return [near];
+    return [near, el("details", {}, el("summary", {}, `${all.length - 5} more`), table("Further candidates", heads, all.slice(5).map(cells)))];
   }
   function ofChecks(p) {
     const parts = [el("h4", {}, "Verdict")];

@@ -42,13 +42,13 @@ pub fn figure(model: &Model) -> Figure {
 
 fn draw(model: &Model, layout: Layout) -> Drawing {
     let rows = |space: &Space| space.axes.len() as f64 * ROW;
-    let panel = |space: &Space| rows(space) + 88.0;
+    let panel = |space: &Space| rows(space) + 70.0;
     let heights: Vec<f64> = model.spaces.iter().map(panel).collect();
     let (height, width) = match layout {
         Layout::Wide => (heights.iter().copied().fold(0.0, f64::max), 344.0),
         Layout::Narrow => (heights.iter().sum(), layout.width()),
     };
-    let mut d = Drawing::new(layout.width(), height + 50.0);
+    let mut d = Drawing::new(layout.width(), height + 52.0);
     d.heading("Agreement of landmarks on each axis");
     legend(&mut d);
     let (mut left, mut top) = (0.0, 52.0);

@@ -50,7 +50,11 @@ fn draw(model: &Model, layout: Layout) -> Drawing {
         .fold(70.0, f64::max);
     let left = longest.min(room + 20.0);
     let rows = model.landmarks.len() as f64;
-    let (top, bottom) = (72.0, 72.0 + rows * ROW);
+    let top = match layout {
+        Layout::Wide => 56.0,
+        Layout::Narrow => 74.0,
+    };
+    let bottom = top + rows * ROW;
     let right = width - 14.0;
     let mut d = Drawing::new(width, bottom + 44.0);
     d.heading("Each landmark left out: rank of its partner");

@@ -127,10 +127,18 @@ fn pairs(model: &Model) -> Vec<((usize, usize), [Option<usize>; 2])> {
 fn draw(model: &Model, layout: Layout) -> Drawing {
     let shown = Shown::of(model);
     let width = layout.width();
-    let (left, below, letters) = match layout {
-        Layout::Wide => (112.0, 104.0, 12),
-        Layout::Narrow => (78.0, 88.0, 8),
+    let letters = match layout {
+        Layout::Wide => 12,
+        Layout::Narrow => 8,
     };
+    let longest = |side: Side| {
+        let widths = model
+            .of_side(side)
+            .map(|(_, parcel)| labels::width(&cut(&parcel.label, letters)));
+        widths.fold(30.0, f64::max)
+    };
+    // Names of a are turned by 60 degrees.
+    let (left, below) = (26.0 + longest(Side::B), 38.0 + 0.87 * longest(Side::A));
     let top = match layout {
         Layout::Wide => 56.0,
         Layout::Narrow => 74.0,
@@ -270,7 +278,7 @@ fn names(
         let step = every(if side == Side::A { across } else { up });
         let some = match step {
             1 => String::new(),
-            step => format!(", every {step}th named"),
+            step => format!(", 1 in {step} named"),
         };
         format!("{name} along axis 1{some}")
     };

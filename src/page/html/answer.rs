@@ -46,12 +46,11 @@ fn trust(model: &Model, figure: &Figure) -> Markup {
         .collect();
     html! {
         h3 { "Can the landmarks be trusted?" }
-        p.big {
-            (within(Side::A, 1)) " and " (within(Side::B, 1)) " of " (n)
-            span.small { " found their partner first" }
+        @for side in Side::BOTH {
+            p.big { (within(side, 1)) " of " (n) " " span class=(format!("small species-{}", side.letter())) { "from " bdi { (model.species[side]) } } }
         }
         p {
-            "Each landmark was left out in turn and every choice made again without it. By chance "
+            "found their partner first. Each landmark was left out in turn and every choice made again without it. By chance "
             (fixed(chance(1) * n as f64, 1)) " of " (n) " would be found first."
         }
         div.scroll tabindex="0" role="region" aria-label="Left-out landmarks in numbers" {
@@ -117,19 +116,11 @@ fn clear(model: &Model, figure: &Figure) -> Markup {
     };
     html! {
         h3 { "How many parcels have a clear counterpart?" }
-        p.big {
-            @for side in Side::BOTH {
-                @if side == Side::B { " and " }
-                (stable(side)) " of " (open(side))
-            }
-            span.small { " are stable" }
+        @for side in Side::BOTH {
+            p.big { (stable(side)) " of " (open(side)) " " span class=(format!("small species-{}", side.letter())) { bdi { (model.species[side]) } } }
         }
         p {
-            @for side in Side::BOTH {
-                @if side == Side::B { ", " }
-                bdi { (model.species[side]) } " " (stable(side)) " of " (open(side))
-            }
-            ". Stable: each is the other's first, under at least half of all landmark weights (support "
+            "are stable: each is the other's first, under at least half of all landmark weights (support "
             (STABLE) " or more). That is not yet right: an estimated chance of at least 0.5 have "
             (likely(Side::A)) " and " (likely(Side::B)) "."
         }
@@ -166,7 +157,7 @@ fn checked(model: &Model) -> Markup {
         h3 { "Which candidates were checked?" }
         @if let Some((checks, (a, b, verdict, why))) = found {
             @let counts = counts(checks, verdict);
-            p.big { (checks.rows.len()) span.small { @if checks.rows.len() == 1 { " pair checked" } @else { " pairs checked" } } }
+            p.big { (checks.rows.len()) " " span.small { @if checks.rows.len() == 1 { "pair checked" } @else { "pairs checked" } } }
             ul.verdicts {
                 @for (word, count) in &counts {
                     li { span.glyph aria-hidden="true" { (glyph(word)) } " " strong { (count) } " " bdi { (word) } }
@@ -188,7 +179,7 @@ fn checked(model: &Model) -> Markup {
             }
             p.source { "Verdicts: " (names(&["checks.csv"])) }
         } @else {
-            p.big { "None" span.small { " checked yet" } }
+            p.big { "None " span.small { "checked yet" } }
             p {
                 "The run holds no checks.csv. " code { "kinmark check" } " on this run compares the connections of a pair of parcels with those of their surroundings and adds a verdict: conserved, displaced, undetermined, or that it cannot be shown."
             }
@@ -242,7 +233,7 @@ fn best(model: &Model) -> Markup {
     html! {
         @if firsts.is_empty() { p { "No parcel of " bdi { (model.species.a) } " is stable." } }
         @else {
-            table.numbers {
+            table.numbers.best {
                 caption.unseen { "Stable parcels with the best chance" }
                 thead { tr { th scope="col" { bdi { (model.species.a) } } th scope="col" { bdi { (model.species.b) } } th scope="col" { "chance" } th scope="col" { "support" } } }
                 tbody {

@@ -178,7 +178,7 @@ pub fn matrix(model: &Model, figure: &Figure) -> Markup {
                 "Both species in the order of their coordinates on the first axis of the space that gives the distances: where they agree, a diagonal. Empty cells are pairs that neither side lists; counterparts.csv holds the best candidates only, as many as the setting top says. "
                 @if thinned { "There are more parcels than the figure has room for: pairs below rank 3 are left out. " }
             }))
-            p #matrix-cell .hint data-needs-script aria-live="polite" { "Point at a cell to read it; click to pick its row's parcel." }
+            p #matrix-cell .hint data-needs-script aria-live="polite" { "Point at a cell to read it; a click picks its parcel of " bdi { (model.species.a) } "." }
         }
     }
 }
