@@ -368,7 +368,7 @@
   }
   function candidateTables(all, of) {
     const heads = ["Rank", "Candidate", "90 % of ranks", "Support", "Distance"];
-    const cells = (c) => [`${c[1]}`, [button(c[0]), el("small", {}, c[9] ? "in the set" : "not in the set")],
+    const cells = (c) => [`${c[1]}`, [button(c[0]), el("small", {}, c[9] ? "in set" : "not in set")],
       [span(c, of), interval(c)], [bar(c[5]), fixed(c[5], 2)], fixed(c[4], 2)];
     const near = table("First candidates", heads, all.slice(0, 5).map(cells));
     if (all.length <= 5) return [near];
@@ -438,7 +438,7 @@
   const heads = [...document.querySelectorAll("#parcel-table thead th")];
   const body = document.querySelector("#parcel-table tbody");
   const sorted = { key: null, down: false };
-  let all = false, listed = [];
+  let from = 0, listed = [];
 
   function filtered() {
     const text = byId("search").value.trim().toLowerCase();
@@ -470,13 +470,17 @@
   }
   function list() {
     listed = filtered();
-    const shown = all ? listed : listed.slice(0, ROWS);
+    from = Math.max(0, Math.min(from, listed.length - 1) - (Math.min(from, listed.length - 1) % ROWS));
+    const shown = listed.slice(from, from + ROWS);
     body.replaceChildren(...shown.map((p) => el("tr", { "data-row": p }, ...heads.map((head, k) => {
       const key = head.dataset.key;
       return el(k ? "td" : "th", { scope: k ? null : "row", class: head.classList.contains("number") ? "number" : null }, ...[CELLS[key](p)].flat());
     }))));
-    byId("counted").textContent = `${listed.length} of ${N} parcels` + (shown.length < listed.length ? `, the first ${shown.length} shown` : "");
-    byId("more").hidden = shown.length === listed.length;
+    byId("counted").textContent = `${listed.length} of ${N} parcels` +
+      (shown.length < listed.length ? `, of which rows ${from + 1} to ${from + shown.length} are shown` : "");
+    byId("pages").hidden = shown.length === listed.length;
+    byId("before").disabled = from === 0;
+    byId("after").disabled = from + ROWS >= listed.length;
     markText(body);
   }
   for (const head of heads) {
@@ -490,12 +494,19 @@
         else other.removeAttribute("aria-sort");
         other.querySelector(".arrow").textContent = on ? (sorted.down ? "▼" : "▲") : "";
       }
-      list();
+      page(0);
     });
   }
-  byId("search").addEventListener("input", list);
-  for (const id of ["filter-species", "filter-standing", "filter-mark"]) byId(id).addEventListener("change", list);
-  byId("more").addEventListener("click", () => { all = true; list(); });
+  /** Shows the rows from this one on. A page of them at a time: all at once would make every click wait. */
+  function page(start) {
+    from = start;
+    list();
+    body.closest(".scroll").scrollTop = 0;
+  }
+  byId("search").addEventListener("input", () => page(0));
+  for (const id of ["filter-species", "filter-standing", "filter-mark"]) byId(id).addEventListener("change", () => page(0));
+  byId("before").addEventListener("click", () => page(from - ROWS));
+  byId("after").addEventListener("click", () => page(from + ROWS));
   body.addEventListener("click", (event) => {
     const row = event.target.closest("tr");
     if (row && !event.target.closest("button")) pick(Number(row.dataset.row));

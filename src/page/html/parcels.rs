@@ -159,7 +159,7 @@ pub fn table(model: &Model) -> Markup {
                     tbody {}
                 }
             }
-            p { button #more type="button" hidden { "Show all rows" } }
+            p #pages .buttons hidden { button #before type="button" { "Rows before" } button #after type="button" { "Rows after" } }
             p.source {
                 "Numbers: " (names(&["counterparts.csv", "parcels.csv", "positions.csv"])) ". "
                 "The CSV holds the rows that pass the filters, in their order, with all digits of the tables. A text cell that begins with =, +, -, @ or a tab gets an apostrophe before it, so that no spreadsheet takes it for a formula; the tables of the run hold labels as they are."
