@@ -146,6 +146,10 @@ fn show(finished: &Finished, quiet: bool) {
             let _ = writeln!(err, "warning: {warning}");
         }
         let _ = writeln!(err, "Tables and run record: {}", finished.folder.display());
+        let page = finished.folder.join(report::PAGE);
+        if page.exists() {
+            let _ = writeln!(err, "To look at: {}", page.display());
+        }
         let _ = err.flush();
     }
     let _ = writeln!(out, "\n{CAUTION}");

@@ -9,7 +9,8 @@
 //! ([`transform`], [`affinity`]) and embeds ([`mod@embed`]) them; [`mod@locate`] aligns
 //! ([`mod@align`]), ranks ([`evidence`], [`place`]), leaves landmarks out ([`holdout`]) and
 //! bootstraps ([`bootstrap`]); [`report`] writes. [`pipeline`] runs these in order, and [`mod@paint`]
-//! puts a finished run back onto surfaces.
+//! puts a finished run back onto surfaces, and
+//! [`page`] makes it a page to look at; both read it through [`finished`].
 //!
 //! Everything found is a statistical hypothesis about homology, never a target for stimulation or
 //! surgery.
