@@ -187,6 +187,39 @@ fn what_is_no_run_has_no_page() {
     let before = contents(&study.out());
     report(&study.out(), &[]).refused(&["counterparts.csv", "line 2", "a whole number", "first"]);
     assert_eq!(contents(&study.out()), before);
+    fs::write(&table, text).unwrap();
+    for (name, cell, says) in [
+        ("axes.csv", None, "no rows"),
+        (
+            "landmarks.csv",
+            Some(("rank_from_a", "0")),
+            "a rank among the candidates",
+        ),
+        (
+            "landmarks.csv",
+            Some(("candidates_from_b", "99999999999")),
+            "no more candidates than parcels",
+        ),
+        ("positions.csv", Some(("canonical_1", "far")), "a number"),
+    ] {
+        let path = study.out().join(name);
+        let whole = read(&path);
+        let mut lines: Vec<Vec<String>> = whole
+            .lines()
+            .map(|line| line.split(',').map(str::to_owned).collect())
+            .collect();
+        match cell {
+            None => lines.truncate(1),
+            Some((column, cell)) => {
+                let at = lines[0].iter().position(|c| c == column).unwrap();
+                lines[1][at] = cell.to_owned();
+            }
+        }
+        fs::write(&path, common::csv(&lines)).unwrap();
+        report(&study.out(), &[]).refused(&[name, says]);
+        fs::write(&path, whole).unwrap();
+    }
+    report(&study.out(), &[]).succeeded();
 }
 
 // ---------------------------------------------------------------------------------------------

@@ -120,6 +120,15 @@ impl Run {
         table(&self.folder, self.unwritten.as_ref(), name)
     }
 
+    /// Says what the run lacks.
+    #[must_use]
+    pub fn incomplete(&self, why: &str) -> RunError {
+        RunError::from(RecordError::NotARun {
+            folder: self.folder.clone(),
+            why: why.to_owned(),
+        })
+    }
+
     /// A table that an answer may have added to the run, if it is there.
     ///
     /// # Errors

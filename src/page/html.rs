@@ -136,8 +136,10 @@ fn names(tables: &[&str]) -> Markup {
 fn parcel(model: &Model, at: usize) -> Markup {
     let parcel = &model.parcels[at];
     let side = parcel.side.letter();
+    // Short names stay on one line; long ones may break anywhere.
+    let short = parcel.label.chars().count() <= 20;
     html! {
-        button type="button" class=(format!("parcel of-{side}")) data-parcel=(at) {
+        button type="button" class={ "parcel of-" (side) @if short { " short" } } data-parcel=(at) {
             bdi { (parcel.label) }
         }
     }

@@ -531,6 +531,16 @@ fn landmarks(run: &Run, directory: &Directory<'_>) -> Result<Vec<Landmark>, RunE
         .iter()
         .map(|row| {
             let name = columns.text(row, 0);
+            let placed = |rank: usize, of: usize| {
+                let (place, candidates) = (columns.count(row, rank)?, columns.count(row, of)?);
+                if place == 0 || place > candidates {
+                    return Err(columns.fault(row, rank, "a rank among the candidates"));
+                }
+                if candidates > run.positions.rows().len() {
+                    return Err(columns.fault(row, of, "no more candidates than parcels"));
+                }
+                Ok((place, candidates))
+            };
             Ok(Landmark {
                 name: name.to_owned(),
                 parcels: members
@@ -540,8 +550,8 @@ fn landmarks(run: &Run, directory: &Directory<'_>) -> Result<Vec<Landmark>, RunE
                 block: columns.text(row, 2).to_owned(),
                 basis: columns.text(row, 3).to_owned(),
                 left_out: Pair {
-                    a: (columns.count(row, 4)?, columns.count(row, 5)?),
-                    b: (columns.count(row, 6)?, columns.count(row, 7)?),
+                    a: placed(4, 5)?,
+                    b: placed(6, 7)?,
                 },
                 contradicted: columns.truth(row, 8)?,
             })
@@ -603,6 +613,9 @@ fn spaces(run: &Run, directory: &Directory<'_>) -> Result<Vec<Space>, RunError> 
             left_out: columns.optional(row, 4)?,
             ends: Pair::from_fn(|side| ["low", "high"].map(|end| ends(row, side, end))),
         });
+    }
+    if spaces.is_empty() {
+        return Err(run.incomplete("its axes.csv has no rows"));
     }
     Ok(spaces)
 }

@@ -27,8 +27,11 @@
     return made;
   }
   const bdi = (text) => el("bdi", {}, text);
-  const button = (p) =>
-    el("button", { type: "button", class: `parcel of-${"ab"[side(p)]}`, "data-parcel": p }, bdi(P.label[p]));
+  const button = (p) => {
+    // Short names stay on one line; long ones may break anywhere.
+    const short = P.label[p].length <= 20 ? " short" : "";
+    return el("button", { type: "button", class: `parcel of-${"ab"[side(p)]}${short}`, "data-parcel": p }, bdi(P.label[p]));
+  };
   const fixed = (x, digits) =>
     x == null ? "–" : x.toFixed(digits).replace(/^-(?=0\.?0*$)/, "").replace("-", "−");
   const interval = (c) => (c[2] === c[3] ? `${c[2]}` : `${c[2]}–${c[3]}`);
@@ -189,7 +192,9 @@
         }));
       }
     }
-    const room = plot.radius + 6;
+    const room = plot.radius + 6, half = 1.6 * plot.radius;
+    const marks = shown.map((p) => ({ p, x: at.x[p] - half, y: at.y[p] - half, width: 2 * half, height: 2 * half }));
+    const meet = (one, other) => one.x < other.x + other.width && other.x < one.x + one.width && one.y < other.y + other.height && other.y < one.y + one.height;
     for (const p of shown) {
       let text = null, fits = false;
       for (let place = 0; place < J.places.length && !fits; place++) {
@@ -202,7 +207,7 @@
         text.setAttribute("text-anchor", anchor);
         const box = text.getBBox();
         const inside = box.x > plot.left && box.x + box.width < plot.right && box.y > plot.top && box.y + box.height < plot.bottom;
-        fits = inside && !taken.some((o) => box.x < o.x + o.width && o.x < box.x + box.width && box.y < o.y + o.height && o.y < box.y + box.height);
+        fits = inside && !taken.some((other) => meet(box, other)) && !marks.some((other) => other.p !== p && meet(box, other));
         if (fits) taken.push(box);
       }
       if (text && !fits) text.remove();
@@ -474,7 +479,7 @@
     const shown = listed.slice(from, from + ROWS);
     body.replaceChildren(...shown.map((p) => el("tr", { "data-row": p }, ...heads.map((head, k) => {
       const key = head.dataset.key;
-      return el(k ? "td" : "th", { scope: k ? null : "row", class: head.classList.contains("number") ? "number" : null }, ...[CELLS[key](p)].flat());
+      return el(k ? "td" : "th", { scope: k ? null : "row", class: head.classList.contains("number") ? "number" : key === "standing" ? "word" : null }, ...[CELLS[key](p)].flat());
     }))));
     byId("counted").textContent = `${listed.length} of ${N} parcels` +
       (shown.length < listed.length ? `, of which rows ${from + 1} to ${from + shown.length} are shown` : "");
@@ -609,6 +614,9 @@
   }
   function pick(p) {
     view.picked = p;
+    // What had the focus goes with the old card; a keyboard goes on from the new one.
+    const within = byId("card-body").contains(document.activeElement);
+    byId("card").classList.toggle("empty", p < 0);
     byId("find-fault").textContent = "";
     if (p < 0) {
       byId("card-title").textContent = "No parcel is picked";
@@ -620,6 +628,7 @@
       const c = first(p);
       say(`${P.label[p]} of ${speciesOf(p)}, ${P.standing[p]}` + (c ? `: first ${P.label[c[0]]}, rank ${interval(c)}, support ${fixed(c[5], 2)}` : ""));
     }
+    if (within) byId("card-title").focus();
     mark(current());
     guide();
     markText(document.querySelector("main"));

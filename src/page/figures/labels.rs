@@ -208,6 +208,15 @@ pub fn cut(text: &str, most: usize) -> String {
     format!("{}…", head.trim_end())
 }
 
+/// A label cut to a width.
+pub fn fit(text: &str, most: f64) -> String {
+    let letters = text.chars().count();
+    (0..letters)
+        .map(|less| cut(text, letters - less))
+        .find(|cut| width(cut) <= most)
+        .unwrap_or_default()
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
@@ -244,6 +253,14 @@ mod tests {
             }
         }
         assert_eq!(place(&wanted, &points, 3.0, frame, 4).len(), 4);
+    }
+
+    #[test]
+    fn a_label_is_cut_to_a_width() {
+        assert_eq!(fit("motor field", 500.0), "motor field");
+        let short = fit("motor field", 60.0);
+        assert!(short.ends_with('…') && width(&short) <= 60.0, "{short}");
+        assert_eq!(fit("", 10.0), "");
     }
 
     #[test]

@@ -1,6 +1,6 @@
 //! Each landmark, left out: where its partner comes, from both sides.
 
-use super::labels::{self, cut};
+use super::labels::{self, cut, fit};
 use super::scale::{rank_ticks, Scale};
 use super::svg::{triangle, Anchor, Drawing, ALARM, FAINT, INK, MUTED, SPECIES};
 use super::{Figure, Layout};
@@ -39,16 +39,12 @@ pub fn figure(model: &Model) -> Figure {
 
 fn draw(model: &Model, layout: Layout) -> Drawing {
     let width = layout.width();
-    let (letters, room) = match layout {
-        Layout::Wide => (34, 240.0),
-        Layout::Narrow => (16, 124.0),
+    let room = match layout {
+        Layout::Wide => 260.0,
+        Layout::Narrow => 130.0,
     };
-    let longest = model
-        .landmarks
-        .iter()
-        .map(|l| labels::width(&cut(&l.name, letters)) + 22.0)
-        .fold(70.0, f64::max);
-    let left = longest.min(room + 20.0);
+    let longest = model.landmarks.iter().map(|l| labels::width(&l.name));
+    let left = 22.0 + longest.fold(48.0, f64::max).min(room);
     let rows = model.landmarks.len() as f64;
     let top = match layout {
         Layout::Wide => 56.0,
@@ -121,7 +117,7 @@ fn draw(model: &Model, layout: Layout) -> Drawing {
         d.text(
             (16.0, y + 4.5),
             Anchor::Start,
-            &cut(&landmark.name, letters),
+            &fit(&landmark.name, room),
             &[("font-weight", &weight)],
         );
         let [from, to] = Side::BOTH.map(|side| x.at(landmark.left_out[side].0 as f64));

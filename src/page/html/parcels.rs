@@ -38,7 +38,7 @@ pub fn joint(model: &Model, figure: &Figure) -> Markup {
                             "Coordinates of " (two) " in one frame; each axis has a scale of its own. Ellipses hold 90 % of bootstrap positions of a parcel relative to the other species, if normal; their axes lie along those of the figure, since the table holds the standard error of each coordinate and not how two of them go together."
                     }))
                 }
-                aside.card #card aria-labelledby="card-title" {
+                aside.card.empty #card aria-labelledby="card-title" {
                     form.find data-needs-script {
                         label for="find" { "Parcel" }
                         div.row {
@@ -49,7 +49,7 @@ pub fn joint(model: &Model, figure: &Figure) -> Markup {
                         datalist #all-parcels {}
                         p #find-fault .fault role="alert" {}
                     }
-                    h3 #card-title { "No parcel is picked" }
+                    h3 #card-title tabindex="-1" { "No parcel is picked" }
                     div #card-body {
                         p.hint data-needs-script { "What is picked is marked everywhere on this page: in the joint space, the matrix and the tables, together with its first counterparts." }
                     }
