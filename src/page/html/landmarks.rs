@@ -32,7 +32,7 @@ pub fn section(model: &Model, figure: &Figure) -> Markup {
                             th.number scope="col" { "Others move" }
                             th.number scope="col" { "Firsts that change" }
                         }
-                        th scope="col" { "Judged" }
+                        th scope="col" { "Contradicted" }
                     } }
                     tbody { @for landmark in &model.landmarks { (row(model, landmark)) } }
                 }
@@ -74,7 +74,7 @@ fn row(model: &Model, landmark: &Landmark) -> Markup {
                     None => { td.number { "–" } td.number { "–" } }
                 }
             }
-            td { @if landmark.contradicted { strong.alarm { span aria-hidden="true" { "▲ " } "contradicted" } } @else { "not contradicted" } }
+            td { @if landmark.contradicted { strong.alarm { span aria-hidden="true" { "▲ " } "contradicted" } } @else { "no" } }
         }
     }
 }
