@@ -103,6 +103,9 @@ pub struct Params {
     pub axes: usize,
     /// Ridge of the canonical correlation, in units of the landmarks' mean variance.
     pub ridge: f64,
+    /// Which of the embeddings that were tried, where there were several.
+    #[serde(skip)]
+    pub embedding: usize,
 }
 
 /// Aligns at the landmarks. `anchors` are the landmarks' coordinates `(landmarks, axes or more)` in

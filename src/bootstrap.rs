@@ -7,7 +7,7 @@ mod spread;
 mod stream;
 
 pub use blocks::{accumulate, BLOCK};
-pub use interval::{interval, LEVEL};
+pub use interval::{interval, interval_of, LEVEL};
 pub use resample::{steady, Resampling};
 pub use spread::Spread;
 pub use stream::{Purpose, Stream};

@@ -18,7 +18,7 @@ use kinmark::prepare::prepare;
 use kinmark::reopen::reopen;
 use kinmark::report::{self, CAUTION};
 
-use args::{Cli, Command, Holdout, Inspect, Locate, New, Paint, Rank, Report};
+use args::{Check, Cli, Command, Holdout, Inspect, Locate, New, Paint, Rank, Report};
 use progress::Progress;
 
 /// Exit code after Ctrl-C: 128 and the number of the signal.
@@ -30,6 +30,7 @@ pub fn run() -> Result<(), Error> {
         Command::New(options) => new(&options),
         Command::Inspect(options) => inspect(&options),
         Command::Locate(options) => locate(&options),
+        Command::Check(options) => check(&options),
         Command::Holdout(options) => holdout(&options),
         Command::Rank(options) => rank(&options),
         Command::Report(options) => report_of(&options),
@@ -67,6 +68,18 @@ fn inspect(options: &Inspect) -> Result<(), Error> {
     Ok(())
 }
 
+fn check(options: &Check) -> Result<(), Error> {
+    let started = Instant::now();
+    let interrupted = stop_on_interrupt();
+    let request = options.what()?;
+    let asked = reopen(&options.asked, options.request())?;
+    let quiet = asked.study.conduct.quiet;
+    let progress = Progress::new(quiet, interrupted);
+    let out = options.out.as_deref();
+    let found = pipeline::check(asked, &request, options.json, out, &progress, started)?;
+    answer(found, quiet, options.json)
+}
+
 fn holdout(options: &Holdout) -> Result<(), Error> {
     let started = Instant::now();
     let interrupted = stop_on_interrupt();
@@ -77,7 +90,7 @@ fn holdout(options: &Holdout) -> Result<(), Error> {
     let out = options.out.as_deref();
     let permutations = options.permutations();
     let found = pipeline::hold_out(asked, &plan, permutations, out, &progress, started)?;
-    answer(found, quiet)
+    answer(found, quiet, false)
 }
 
 fn rank(options: &Rank) -> Result<(), Error> {
@@ -87,12 +100,16 @@ fn rank(options: &Rank) -> Result<(), Error> {
     let quiet = asked.study.conduct.quiet;
     let progress = Progress::new(quiet, interrupted);
     let found = pipeline::rank(asked, options.out.as_deref(), &progress, started)?;
-    answer(found, quiet)
+    answer(found, quiet, false)
 }
 
-/// Shows an answer, then writes what goes with it, so that nothing is lost where a folder refuses.
-fn answer(found: Answered, quiet: bool) -> Result<(), Error> {
-    say(format!("{}\n{CAUTION}\n", found.text).as_bytes());
+/// Shows an answer, then writes what goes with it, so that nothing is lost where a folder refuses. For
+/// machines the answer holds the caution itself.
+fn answer(found: Answered, quiet: bool, for_machines: bool) -> Result<(), Error> {
+    match for_machines {
+        true => say(found.text.as_bytes()),
+        false => say(format!("{}\n{CAUTION}\n", found.text).as_bytes()),
+    }
     let mut err = std::io::stderr();
     if !quiet {
         for warning in &found.warnings {

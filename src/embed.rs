@@ -10,7 +10,9 @@ pub use matching::matched;
 
 use ndarray::{Array1, Array2};
 
-use crate::domain::choices;
+use serde::Serialize;
+
+use crate::domain::{choices, Share};
 
 choices! {
     /// How a species' connectivity becomes coordinates.
@@ -29,6 +31,42 @@ impl Method {
     /// any common partner, and a diffusion map spends its first axes on the pieces that fall off
     /// (measured, docs/method.md).
     pub const OF_RECTANGULAR: Method = Method::Components;
+}
+
+/// How coordinates are made of both species.
+#[derive(Debug, Clone, Copy, PartialEq, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub struct Recipe {
+    /// The method.
+    pub method: Method,
+    /// Share of each parcel's links, the strongest, that profiles keep; `None` as was set for the
+    /// species.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub strongest: Option<Share>,
+}
+
+impl Recipe {
+    /// A method on profiles as they were set.
+    #[must_use]
+    pub fn plain(method: Method) -> Recipe {
+        Recipe {
+            method,
+            strongest: None,
+        }
+    }
+
+    /// Its name in a sentence.
+    #[must_use]
+    pub fn in_words(self) -> String {
+        let method = match self.method {
+            Method::Diffusion => "diffusion map",
+            Method::Components => "principal components",
+        };
+        match self.strongest {
+            None => method.to_owned(),
+            Some(share) => format!("{method} of the strongest {:.0} %", 100.0 * share.get()),
+        }
+    }
 }
 
 /// Coordinates of one species' parcels.

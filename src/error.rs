@@ -6,7 +6,7 @@ use crate::draft::DraftError;
 use crate::input::InputError;
 use crate::page::PageError;
 use crate::paint::PaintError;
-use crate::questions::PlanError;
+use crate::questions::{AskError, PlanError};
 use crate::reopen::ReopenError;
 use crate::report::{FolderError, MapsError};
 use crate::watch::Interrupted;
@@ -35,6 +35,9 @@ pub enum Error {
     /// Landmarks that cannot be held out.
     #[error(transparent)]
     Plan(#[from] PlanError),
+    /// A pair that cannot be checked.
+    #[error(transparent)]
+    Ask(#[from] AskError),
     /// Tables that cannot be added to a run.
     #[error(transparent)]
     Files(#[from] MapsError),
@@ -64,6 +67,7 @@ impl Error {
             | Error::Page(_)
             | Error::Reopen(_)
             | Error::Plan(_)
+            | Error::Ask(_)
             | Error::Files(_)
             | Error::Threads { .. } => 2,
             Error::Interrupted(_) => 130,

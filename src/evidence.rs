@@ -35,6 +35,8 @@ pub struct Material<'m> {
     /// Coordinates of the landmarks in each embedding `(landmarks, axes)`; a landmark of several
     /// parcels stands at their centroid.
     pub anchors: Pair<Array2<f64>>,
+    /// The same in each embedding that was tried.
+    tried: Vec<Pair<Array2<f64>>>,
     /// Links and affinities, made when a kind first asks for them.
     links: OnceLock<Pair<Links>>,
     /// What transport compares, under each expression.
@@ -54,8 +56,7 @@ impl<'m> Material<'m> {
     /// Finds where the landmarks lie in each embedding.
     #[must_use]
     pub fn new(species: Pair<&'m Species>, landmarks: &'m Landmarks) -> Material<'m> {
-        let anchors = Pair::from_fn(|side| {
-            let coordinates = &species[side].embedding.coordinates;
+        let anchors = |side, coordinates: &Array2<f64>| {
             let mut anchors = Array2::zeros((landmarks.len(), coordinates.ncols()));
             for (mut anchor, landmark) in anchors.rows_mut().into_iter().zip(landmarks.list()) {
                 let members = coordinates.select(Axis(0), &landmark.parcels[side]);
@@ -66,11 +67,15 @@ impl<'m> Material<'m> {
                 );
             }
             anchors
-        });
+        };
+        let tried = species.a.tried.len().min(species.b.tried.len());
         Material {
             species,
             landmarks,
-            anchors,
+            anchors: Pair::from_fn(|side| anchors(side, &species[side].embedding.coordinates)),
+            tried: (0..tried)
+                .map(|at| Pair::from_fn(|side| anchors(side, &species[side].tried[at].coordinates)))
+                .collect(),
             links: OnceLock::new(),
             compared: std::array::from_fn(|_| OnceLock::new()),
         }
@@ -118,6 +123,27 @@ impl<'m> Material<'m> {
     #[must_use]
     pub fn embedded(&self) -> Pair<&'m Array2<f64>> {
         self.species.map(|species| &species.embedding.coordinates)
+    }
+
+    /// Number of embeddings among which landmarks choose; 1 where there is no choice.
+    #[must_use]
+    pub fn embeddings(&self) -> usize {
+        self.tried.len().max(1)
+    }
+
+    /// [`Material::anchors`] in one of the embeddings that were tried; where none were, in the only one.
+    #[must_use]
+    pub fn anchors_in(&self, embedding: usize) -> Pair<&Array2<f64>> {
+        self.tried.get(embedding).unwrap_or(&self.anchors).as_ref()
+    }
+
+    /// [`Material::embedded`] in one of the embeddings that were tried; where none were, in the only one.
+    #[must_use]
+    pub fn embedded_in(&self, embedding: usize) -> Pair<&'m Array2<f64>> {
+        self.species.map(|species| {
+            let embedding = species.tried.get(embedding);
+            &embedding.unwrap_or(&species.embedding).coordinates
+        })
     }
 
     /// The landmarks' own weights, with some blocks counting more or less: `block(b)` times the

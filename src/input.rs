@@ -10,6 +10,7 @@ mod label_file;
 mod landmark_table;
 mod matrix;
 mod nearest;
+mod pair_table;
 mod parcel_fault;
 mod parcel_table;
 mod recognise;
@@ -25,6 +26,7 @@ pub use gifti::{read as read_surface_labels, GiftiFault, SurfaceLabels};
 pub use landmark_table::read as read_landmarks;
 pub use matrix::{read as read_matrix, read_of as read_matrix_of, Matrix};
 pub use nearest::{nearest, nearest_few};
+pub use pair_table::{read as read_pairs, NamedPair};
 pub use parcel_fault::ParcelFault;
 pub use parcel_table::{read as read_parcels, ParcelTable};
 pub use recognise::{

@@ -9,16 +9,18 @@ mod left_out;
 mod ranking;
 mod replicates;
 mod span;
+mod watched;
 mod weighed;
 
 pub use axes::{AxisEnds, Space, StandardErrors, SubjectErrors};
-pub use candidate_sets::SetLevel;
+pub use candidate_sets::{stand_ins, Seen, SetLevel};
 pub use doubt::{Doubt, Judged};
 pub use false_discovery::q_values;
-pub use left_out::LeftOut;
+pub use left_out::{map_without, LeftOut};
 use replicates::Job;
 pub use replicates::Tally;
-pub use span::beyond_landmarks;
+pub use span::{beyond_landmarks, strain};
+pub use watched::{gaps, Watched};
 pub use weighed::Weighed;
 
 use candidate_sets::Calibration;
@@ -31,7 +33,7 @@ use crate::align::{Alignment, Params, PerAlignment};
 use crate::bootstrap::interval;
 use crate::domain::Pair;
 use crate::evidence::{Kind, Material};
-use crate::holdout::{Asked, Choice, Curve, Member, Questions};
+use crate::holdout::{Asked, Choice, Compared, Curve, Member, Questions};
 use crate::place;
 use crate::prepare::Study;
 use crate::warning::Warning;
@@ -129,16 +131,7 @@ pub struct Located {
 pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> {
     let settings = &study.settings;
     let material = Material::new(study.species.as_ref(), &study.landmarks);
-    let open = place::open_parcels(
-        &study.landmarks,
-        study.species.as_ref().map(|s| s.parcels.len()),
-    );
-    let params = |alignment, axes| Params {
-        alignment,
-        axes,
-        ridge: settings.ridge,
-    };
-
+    let open = place::open_parcels(&study.landmarks, material.sizes());
     let asked = Asked::draw(&study.landmarks, &study.candidates, settings.seed);
     let questions = Questions {
         open: &open,
@@ -147,19 +140,59 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         seed: settings.seed,
     };
     let weighed = Weighed::new(settings, &study.axes, &material, &questions, watch)?;
+    let (located, _) = locate_by(
+        study,
+        &material,
+        &questions,
+        &weighed,
+        &[],
+        &|_, _| (),
+        watch,
+    )?;
+    Ok(located)
+}
+
+/// Places every parcel by what was `weighed` before, and follows the `watched` pairs of open parcels
+/// through the replicates. `also` looks at each ranking without a landmark before it is dropped.
+///
+/// # Errors
+/// [`Interrupted`] where the watch says so.
+///
+/// # Panics
+/// As [`locate`]; or if a parcel of a watched pair is a landmark's.
+pub fn locate_by(
+    study: &Study,
+    material: &Material<'_>,
+    questions: &Questions<'_>,
+    weighed: &Weighed,
+    watched: &[Pair<usize>],
+    also: &(dyn Fn(usize, &Compared) + Sync),
+    watch: &dyn Watch,
+) -> Result<(Located, Watched), Interrupted> {
+    let settings = &study.settings;
+    let (open, asked) = (questions.open, questions.asked);
+    let params = |alignment, axes, embedding| Params {
+        alignment,
+        axes,
+        ridge: settings.ridge,
+        embedding,
+    };
     let choice = weighed.choice;
-    let settled = PerAlignment::from_fn(|alignment| params(alignment, choice.axes[alignment]));
-    let calibration = Calibration::new(&study.landmarks, &questions, settings.level);
-    let (left_out, firsts) = weighed.leave_out(&material, &questions, &|at, compared| {
+    let settled = PerAlignment::from_fn(|alignment| {
+        params(alignment, choice.axes[alignment], choice.embedding)
+    });
+    let calibration = Calibration::new(&study.landmarks, questions, settings.level);
+    let (left_out, firsts) = weighed.leave_out(material, questions, &|at, compared| {
         calibration.look(at, compared);
+        also(at, compared);
     });
     let sets = calibration.finish();
-    let compared = weighed.ranked(&material, &questions).full(open.clone());
+    let compared = weighed.ranked(material, questions).full(open.clone());
     let support = Support::new(&study.landmarks, firsts);
     let mut spaces =
-        PerAlignment::from_fn(|alignment| Space::fit(&material, settled[alignment], &asked));
+        PerAlignment::from_fn(|alignment| Space::fit(material, settled[alignment], asked));
 
-    let judgements = doubt::judgements(&material, weighed.bagged.as_ref(), &open, &asked);
+    let judgements = doubt::judgements(material, weighed.bagged.as_deref(), open, asked);
 
     let Weighed {
         ways,
@@ -171,25 +204,28 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         ..
     } = weighed;
     let transport_replicates = bagged.as_ref().map_or(0, |bagged| bagged.each.len());
-    let ranker = if blends {
+    let ranker = if *blends {
         Ranker::Mixture {
             members: members.iter().map(|m| (*m, ways[m.way])).collect(),
             replicates: bagged
                 .as_ref()
                 .map_or(settings.rank_replicates, |bagged| bagged.each.len()),
-            bagged: bagged.map(Box::new),
+            bagged: bagged.clone(),
         }
     } else {
         Ranker::One(ways[members[0].way])
     };
-    let ranking = Ranking::new(&material, ranker, &open, study);
+    let ranking = Ranking::new(material, ranker, open, study);
     let job = Job {
         study,
-        material: &material,
+        material,
         spaces: &spaces,
+        shown: choice.evidence,
         ranking: &ranking,
+        watched,
     };
-    let tally = replicates::run(job, watch)?;
+    let mut tally = replicates::run(job, watch)?;
+    let seen = tally.take_watched();
     for alignment in Alignment::BOTH {
         spaces[alignment].standard_errors = tally.standard_errors(alignment);
     }
@@ -203,7 +239,7 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
     };
     let placements = Pair::from_fn(|side| ranking.placements(side, study, &grounds));
     let mut warnings = Vec::new();
-    for why in &unavailable {
+    for why in unavailable {
         warnings.push(Warning::EvidenceUnavailable {
             kind: why.kind.clone(),
             why: why.why.clone(),
@@ -240,15 +276,15 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
             of: settings.subject_replicates,
         });
     }
-    Ok(Located {
+    let located = Located {
         curves: Alignment::BOTH
             .into_iter()
-            .map(|alignment| Curve::of(alignment, &ways, &trials))
+            .map(|alignment| Curve::of(alignment, choice.embedding, ways, trials))
             .collect(),
-        beyond: beyond_landmarks(&material, settled[choice.evidence].axes),
+        beyond: beyond_landmarks(material, settled[choice.evidence].axes),
         choice,
         evidence: Rests {
-            kinds: members,
+            kinds: members.clone(),
             unavailable: unavailable.iter().map(ToString::to_string).collect(),
             transport_replicates,
             ranking_replicates: tally.ranking,
@@ -260,7 +296,8 @@ pub fn locate(study: &Study, watch: &dyn Watch) -> Result<Located, Interrupted> 
         placements,
         judgements,
         warnings,
-    })
+    };
+    Ok((located, seen))
 }
 
 /// Intervals of ranks, one for each listed pair in order.

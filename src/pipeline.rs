@@ -8,7 +8,7 @@ use crate::finished::{Run, RunError};
 use crate::locate::locate;
 use crate::page;
 use crate::prepare::Study;
-use crate::questions::{self, PlanRequest};
+use crate::questions::{self, CheckRequest, PlanRequest};
 use crate::reopen::Reopened;
 use crate::report::{self, AnswerRecord, Identity, Record, RunFolder, Survey, Wall};
 use crate::warning::Warning;
@@ -271,6 +271,74 @@ pub fn rank(
     Ok(Answered {
         text,
         warnings: study.warnings.into_iter().chain(located.warnings).collect(),
+        destination,
+    })
+}
+
+/// Checks whether the positions of named candidates are conserved. The table goes to `out`; without it to
+/// the run that was asked, if one was, among the checks that stand there already.
+///
+/// # Errors
+/// [`Error`] for parcels that cannot be checked, a folder that cannot take the table, or an
+/// interruption.
+pub fn check(
+    asked: Reopened,
+    request: &CheckRequest,
+    as_json: bool,
+    out: Option<&Path>,
+    watch: &dyn Watch,
+    started: Instant,
+) -> Result<Answered, Error> {
+    let Reopened { study, run } = asked;
+    let questions = request.questions(&study)?;
+    let folder = folder_for(&study, out)?;
+    let pool = workers(&study)?;
+    let found = pool.install(|| questions::check(&study, &questions, watch))?;
+    if watch.interrupted() {
+        return Err(Interrupted.into());
+    }
+    let text = match as_json {
+        true => String::from_utf8_lossy(&report::checked_json(&study, &found)).into_owned(),
+        false => report::checked(&study, &found),
+    };
+    let mut warnings: Vec<Warning> = Vec::new();
+    for warning in found.iter().flat_map(|answer| &answer.warnings) {
+        if !warnings.contains(warning) {
+            warnings.push(warning.clone());
+        }
+    }
+    let mut tables = report::checked_tables(&study, &found);
+    let destination = match (folder, run) {
+        (Some(folder), _) => {
+            let wall = Wall {
+                threads: pool.current_num_threads(),
+                wall_seconds: started.elapsed().as_secs_f64(),
+            };
+            let asked = serde_json::json!({"command": "check", "questions": found.len()});
+            let record = AnswerRecord::new(&study, asked, &warnings, &tables, wall).json();
+            Destination::Folder {
+                folder: Box::new(folder),
+                tables,
+                record,
+            }
+        }
+        (None, Some(folder)) => {
+            for (name, bytes) in &mut tables {
+                let new = std::mem::take(bytes);
+                *bytes = report::with_earlier_rows(&folder, name, new, report::CHECK_KEY)?;
+            }
+            Destination::Run {
+                folder,
+                tables,
+                // Earlier checks are among the rows, so nothing is lost.
+                replace: true,
+            }
+        }
+        (None, None) => Destination::Nowhere,
+    };
+    Ok(Answered {
+        text,
+        warnings: study.warnings.into_iter().chain(warnings).collect(),
         destination,
     })
 }

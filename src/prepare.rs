@@ -7,15 +7,17 @@ use serde::Serialize;
 use crate::affinity;
 use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{Hemispheres, Landmarks, Pair, RowsAre, Side, Tracer, Transform, WeightKind};
-use crate::embed::{self, DiffusionError};
+use crate::embed::{self, DiffusionError, Embedding, Recipe};
 use crate::evidence::{Evidence, Fingerprint, Material, Transport};
+use crate::holdout::{self, Asked, Questions};
 use crate::input::{self, InputError, InputFile, ParcelFault, Place, Problem, Source, SpeciesFile};
-use crate::place::Candidates;
+use crate::place::{self, Candidates};
 use crate::settings::{Axes, Conduct, EvidenceChoice, Request, Settings};
 use crate::species::Species;
 use crate::transform;
 use crate::transport::Mass;
 use crate::warning::Warning;
+use crate::watch::Unwatched;
 
 mod again;
 mod arrange;
@@ -31,7 +33,8 @@ mod suspicion;
 
 pub use again::{drawn_again, Again};
 pub use cohort::Cohort;
-use embedding::embed_strengths;
+pub use embedding::embedded_by;
+use embedding::{embed_strengths, recipes};
 pub use parts::Parts;
 pub use raw_facts::{Filled, RawFacts, SumsToOne};
 use reading::{read_species, Raw};
@@ -89,6 +92,31 @@ where
         .all(|files| files.into_iter().next().is_none())
 }
 
+/// How coordinates were made, and what left-out landmarks said about it.
+#[derive(Debug, Clone, PartialEq, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub struct Embedded {
+    /// The recipe of both species' coordinates.
+    #[serde(flatten)]
+    pub recipe: Recipe,
+    /// What it was chosen among; empty where there was no choice.
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    pub tried: Vec<Tried>,
+}
+
+/// One recipe that was tried.
+#[derive(Debug, Clone, Copy, PartialEq, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub struct Tried {
+    /// The recipe.
+    #[serde(flatten)]
+    pub recipe: Recipe,
+    /// Left-out error of the alignment that would rank, on its axes: mean over blocks.
+    pub error: f64,
+    /// Its standard error over blocks.
+    pub standard_error: f64,
+}
+
 /// A study that has passed every check, embedded.
 #[derive(Debug, Clone)]
 pub struct Study {
@@ -98,6 +126,8 @@ pub struct Study {
     pub species: Pair<Species>,
     /// The landmarks.
     pub landmarks: Landmarks,
+    /// How their coordinates were made.
+    pub embedded: Embedded,
     /// Numbers of axes to try; one where a number was asked for.
     pub axes: Vec<usize>,
     /// What was done to the matrices.
@@ -136,8 +166,12 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         })?;
     let rectangular = |raw: &Raw| raw.facts.rectangular.is_some();
     if asked.embedding.is_none() && (rectangular(&raw.a) || rectangular(&raw.b)) {
-        settings.embedding = embed::Method::OF_RECTANGULAR;
+        settings.embedding = embed::Method::OF_RECTANGULAR.into();
     }
+    let recipes = recipes(
+        settings.embedding,
+        rectangular(&raw.a) || rectangular(&raw.b),
+    );
     let mut warnings = [&raw.a.warnings[..], &raw.b.warnings[..]].concat();
 
     let table = Source::read(&description.landmarks)?;
@@ -186,9 +220,10 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         a: raw.a.cohort.take(),
         b: raw.b.cohort.take(),
     };
-    let species = raw.try_map_at_once(conduct.threads, |side, raw| {
-        embed_species(raw, side, &treatment[side], &settings, most)
+    let mut species = raw.try_map_at_once(conduct.threads, |side, raw| {
+        embed_species(raw, side, &treatment[side], &settings, &recipes, most)
     })?;
+    let recipes = leave_usable(&mut species, recipes, settings.axes);
 
     for side in Side::BOTH {
         if species[side].embedding.axes() == 0 {
@@ -200,7 +235,12 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         .map_err(|problem| InputError::new(Place::file(&inputs.study.path), problem))?;
     let available = Side::BOTH
         .into_iter()
-        .map(|side| species[side].embedding.axes())
+        .flat_map(|side| {
+            [&species[side].embedding]
+                .into_iter()
+                .chain(&species[side].tried)
+        })
+        .map(Embedding::axes)
         .min()
         .unwrap_or(0);
     let axes = match settings.axes {
@@ -239,9 +279,18 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
             axes_to_try(settings.axes, landmarks.blocks(), available)
         }
     };
+    let embedded = choose_embedding(
+        &mut species,
+        &recipes,
+        &landmarks,
+        &candidates,
+        &axes,
+        &settings,
+    );
     Ok(Study {
         title: description.title,
         species,
+        embedded,
         landmarks,
         axes,
         treatment,
@@ -254,6 +303,83 @@ pub fn prepare(study: &Path, asked: Request) -> Result<Study, InputError> {
         conduct,
         warnings,
     })
+}
+
+/// Drops the recipes by which a species has too few axes, as long as one is left.
+fn leave_usable(species: &mut Pair<Species>, recipes: Vec<Recipe>, axes: Axes) -> Vec<Recipe> {
+    let needed = match axes {
+        Axes::Number(axes) => axes,
+        Axes::Auto => 1,
+    };
+    let has = |at: usize| {
+        Side::BOTH
+            .iter()
+            .all(|side| species[*side].tried[at].axes() >= needed)
+    };
+    let keep: Vec<usize> = (0..species.a.tried.len()).filter(|&at| has(at)).collect();
+    let Some(&first) = keep.first() else {
+        for side in Side::BOTH {
+            species[side].tried.clear();
+        }
+        return recipes.into_iter().take(1).collect();
+    };
+    for side in Side::BOTH {
+        species[side].embedding = species[side].tried[first].clone();
+        species[side].tried = match keep.len() {
+            1 => Vec::new(),
+            _ => keep
+                .iter()
+                .map(|&at| species[side].tried[at].clone())
+                .collect(),
+        };
+    }
+    keep.into_iter().map(|at| recipes[at]).collect()
+}
+
+/// Lets left-out landmarks choose among the embeddings that were tried and makes the chosen one that of
+/// both species. The others stay, since the choice is made again without each landmark.
+fn choose_embedding(
+    species: &mut Pair<Species>,
+    recipes: &[Recipe],
+    landmarks: &Landmarks,
+    candidates: &Candidates,
+    axes: &[usize],
+    settings: &Settings,
+) -> Embedded {
+    if recipes.len() < 2 {
+        return Embedded {
+            recipe: recipes[0],
+            tried: Vec::new(),
+        };
+    }
+    let sizes = species.as_ref().map(|s| s.parcels.len());
+    let material = Material::new(species.as_ref(), landmarks);
+    let questions = Questions {
+        open: &place::open_parcels(landmarks, sizes),
+        candidates,
+        asked: &Asked::draw(landmarks, candidates, settings.seed),
+        seed: settings.seed,
+    };
+    let ways = holdout::joint_ways(axes, settings.ridge, material.embeddings());
+    let trials = holdout::run(&material, &ways, &questions, &Unwatched)
+        .expect("nobody interrupts who does not watch");
+    let alignment = settings.evidence.alignment();
+    let chosen = holdout::choose(&ways, &trials, alignment, None).embedding;
+    let errors = holdout::errors_of_embeddings(&ways, &trials, alignment);
+    for side in Side::BOTH {
+        species[side].embedding = species[side].tried[chosen].clone();
+    }
+    let tried = recipes.iter().zip(errors);
+    Embedded {
+        recipe: recipes[chosen],
+        tried: tried
+            .map(|(&recipe, (error, standard_error))| Tried {
+                recipe,
+                error,
+                standard_error,
+            })
+            .collect(),
+    }
 }
 
 /// Whether evidence that was asked for by name has what it needs. In a mixture a kind that lacks it
@@ -355,14 +481,17 @@ fn embed_species(
     side: Side,
     treatment: &Treatment,
     settings: &Settings,
+    recipes: &[Recipe],
     axes: usize,
 ) -> Result<Species, InputError> {
     let network = transform::apply(raw.network, treatment.weights, treatment.transform);
-    let embedding = embed_strengths(&network, treatment, settings, axes).map_err(
-        |DiffusionError::Disconnected| {
+    let tried: Vec<Embedding> = recipes
+        .iter()
+        .map(|&recipe| embed_strengths(&network, treatment, settings, recipe, axes))
+        .collect::<Result<_, _>>()
+        .map_err(|DiffusionError::Disconnected| {
             InputError::new(Place::file(&raw.place), Problem::Disconnected { side })
-        },
-    )?;
+        })?;
     let areas = raw.attributes.iter().map(|a| a.extent?.area()).collect();
     Ok(Species {
         areas,
@@ -371,6 +500,7 @@ fn embed_species(
         geometry: raw.geometry,
         network,
         profiles: treatment.affinity,
-        embedding,
+        embedding: tried[0].clone(),
+        tried,
     })
 }

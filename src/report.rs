@@ -2,6 +2,7 @@
 //! nothing that a table does not show.
 
 mod answers;
+mod checked;
 mod derived;
 mod finished;
 mod gifti;
@@ -14,7 +15,8 @@ mod run_folder;
 mod summary;
 mod tables;
 
-pub use answers::{add_to_run, AnswerRecord};
+pub use answers::{add_to_run, with_earlier_rows, AnswerRecord};
+pub use checked::{checked, checked_json, checked_tables, CHECK_KEY};
 pub use derived::{sealed, write_derived, FilesError, FIGURES, PAGE};
 pub use finished::{read_record, RecordError};
 pub use gifti::{gifti, SurfaceMap};

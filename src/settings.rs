@@ -6,9 +6,10 @@ pub use request::{BadSetting, Request};
 
 use serde::{Serialize, Serializer};
 
+use crate::align::Alignment;
 use crate::bootstrap::Resampling;
 use crate::domain::{choices, Hemispheres, Seed};
-use crate::embed;
+use crate::embed::Method;
 use crate::transport::Mass;
 
 choices! {
@@ -26,6 +27,39 @@ choices! {
         Grown = "grown",
         /// Transport between the networks, averaged over replicates.
         Transport = "transport",
+    }
+}
+
+impl EvidenceChoice {
+    /// The alignment that was asked for by name.
+    #[must_use]
+    pub fn alignment(self) -> Option<Alignment> {
+        match self {
+            EvidenceChoice::Procrustes => Some(Alignment::Procrustes),
+            EvidenceChoice::Canonical => Some(Alignment::Canonical),
+            _ => None,
+        }
+    }
+}
+
+choices! {
+    /// How a species' connectivity becomes coordinates.
+    pub enum EmbeddingChoice {
+        /// Diffusion map of the affinity.
+        Diffusion = "diffusion",
+        /// Principal components of the profiles.
+        Components = "components",
+        /// Whichever left-out landmarks favour.
+        Auto = "auto",
+    }
+}
+
+impl From<Method> for EmbeddingChoice {
+    fn from(method: Method) -> Self {
+        match method {
+            Method::Diffusion => EmbeddingChoice::Diffusion,
+            Method::Components => EmbeddingChoice::Components,
+        }
     }
 }
 
@@ -91,7 +125,7 @@ pub struct Settings {
     /// Axes of the joint spaces.
     pub axes: Axes,
     /// How a species' connectivity becomes coordinates.
-    pub embedding: embed::Method,
+    pub embedding: EmbeddingChoice,
     /// Density exponent of the diffusion map, in [0, 1].
     pub density_exponent: f64,
     /// Diffusion time; 0 weighs all scales together.

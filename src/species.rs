@@ -20,6 +20,9 @@ pub struct Species {
     pub profiles: affinity::Params,
     /// Their coordinates.
     pub embedding: Embedding,
+    /// All embeddings among which left-out landmarks choose, the same recipes in the same order for
+    /// both species; empty where there is no choice.
+    pub tried: Vec<Embedding>,
     /// Their areas, all positive, where these are known.
     pub areas: Option<Vec<f64>>,
 }

@@ -52,6 +52,7 @@ fn species(
         network,
         profiles,
         embedding,
+        tried: Vec::new(),
         areas: None,
     }
 }

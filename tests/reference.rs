@@ -803,6 +803,7 @@ fn joint_distances_do_not_depend_on_the_frame() {
                 alignment,
                 axes: AXES,
                 ridge,
+                embedding: 0,
             };
             let found = |embedded: Pair<&Array2<f64>>| {
                 let anchors = embedded.map(|all| all.slice(s![..LANDMARKS, ..]).to_owned());

@@ -45,6 +45,17 @@ fn mean_and_error(trials: &[f64]) -> (f64, f64) {
 /// which shows that the test could fail.
 #[test]
 fn unrelated_species_come_out_at_chance_after_every_choice() {
+    come_out_at_chance(&FEW);
+}
+
+/// The same where landmarks also choose the embedding, which is then chosen again without each.
+#[test]
+fn unrelated_species_come_out_at_chance_after_a_choice_of_embedding() {
+    let chosen = [("embedding", "auto"), ("evidence", "canonical")];
+    come_out_at_chance(&[&FEW[..], &chosen].concat());
+}
+
+fn come_out_at_chance(settings: &[(&str, &str)]) {
     let plan = Plan {
         parcels: 40,
         landmarks: 12,
@@ -56,7 +67,7 @@ fn unrelated_species_come_out_at_chance_after_every_choice() {
     let (mut reciprocal, mut firsts, mut percentile) = (Vec::new(), Vec::new(), Vec::new());
     let (mut shown, mut flattering) = (Vec::new(), Vec::new());
     for trial in 0..150 {
-        let (_, found) = run(&plan.draw(trial), &FEW);
+        let (_, found) = run(&plan.draw(trial), settings);
         let placed: Vec<_> = found
             .left_out
             .iter()

@@ -2,12 +2,16 @@
 //!
 //! The values come from POT (Python Optimal Transport; Flamary et al. 2021, JMLR 22:78) and scipy's
 //! linear programmes through `tests/data/reference/make_transport.py`; versions stand in
-//! `transport.json`. No reference value was made by this crate.
+//! `transport.json`. Agreement of carried links comes from numpy's weighted covariance through
+//! `tests/data/reference/make_agreement.py`. No reference value was made by this crate.
 
 use std::fs::File;
 use std::io::BufReader;
 
-use kinmark::transport::{Fused, Marginals, Masses, Structure, Structures, Transportation};
+use kinmark::domain::Pair;
+use kinmark::transport::{
+    agreement, shares_of, Fused, Marginals, Masses, Structure, Structures, Transportation,
+};
 use ndarray::{Array2, Axis};
 use rand::{Rng, SeedableRng};
 use rand_xoshiro::Xoshiro256PlusPlus;
@@ -18,10 +22,11 @@ use serde_json::Value;
 const TOLERANCE: f64 = 1e-7;
 
 fn reference() -> Value {
-    let path = concat!(
-        env!("CARGO_MANIFEST_DIR"),
-        "/tests/data/reference/transport.json"
-    );
+    read("transport.json")
+}
+
+fn read(name: &str) -> Value {
+    let path = format!("{}/tests/data/reference/{name}", env!("CARGO_MANIFEST_DIR"));
     let file = File::open(path).expect("the reference values are there");
     serde_json::from_reader(BufReader::new(file)).expect("they are JSON")
 }
@@ -224,4 +229,71 @@ fn a_shuffled_copy_is_recovered() {
             .count();
         assert_eq!(right, n);
     }
+}
+
+fn agree(a: &Structure, b: &Structure, rows: &Array2<f64>, columns: &Array2<f64>) -> Array2<f64> {
+    agreement(
+        Pair { a, b },
+        Pair {
+            a: rows,
+            b: columns,
+        },
+    )
+}
+
+/// Directed and symmetric networks, complete and with links missing.
+#[test]
+fn agreement_of_carried_links_agrees_with_numpy() {
+    let all = read("agreement.json");
+    let cases = all["cases"].as_array().expect("a list");
+    assert_eq!(cases.len(), 4);
+    for case in cases {
+        let complete = case["complete"].as_bool().expect("a truth value");
+        let structure = |links: &str, seen: &str| {
+            let mask = (!complete).then(|| matrix(&case[seen]));
+            Structure::new(matrix(&case[links]), mask)
+        };
+        let (a, b) = (structure("a", "seen_a"), structure("b", "seen_b"));
+        let found = agree(&a, &b, &matrix(&case["rows"]), &matrix(&case["columns"]));
+        let worst = (&found - &matrix(&case["expected"])).fold(0.0, |m: f64, x| m.max(x.abs()));
+        assert!(worst < 1e-12, "{worst:e}, {}", all["versions"]);
+    }
+}
+
+/// A network and its copy in another order, every link of one parcel of the copy a third: with shares that
+/// send everyone home each parcel agrees with itself and with nobody else, that one too. Where
+/// nothing varies nothing agrees. Shares by agreement sum to 1 and favour what agrees.
+#[test]
+fn agreement_does_not_ask_how_strong_a_parcel_is() {
+    let n = 12;
+    let mut rng = Xoshiro256PlusPlus::seed_from_u64(4);
+    let links = Array2::from_shape_fn((n, n), |(i, j)| {
+        if i == j {
+            0.0
+        } else {
+            rng.gen_range(0.0..1.0_f64)
+        }
+    });
+    let home = |i: usize| (5 * i + 2) % n;
+    let weak = |i: usize| if i == 3 { 1.0 / 3.0 } else { 1.0 };
+    let mut copy = Array2::zeros((n, n));
+    for ((i, j), x) in links.indexed_iter() {
+        copy[(home(i), home(j))] = x * weak(i) * weak(j);
+    }
+    let (a, b) = (Structure::new(links, None), Structure::new(copy, None));
+    let sent = Array2::from_shape_fn((n, n), |(i, j)| f64::from(u8::from(j == home(i))));
+    let found = agree(&a, &b, &sent, &sent);
+    for i in 0..n {
+        let best = (0..n).max_by(|&j, &k| found[(i, j)].total_cmp(&found[(i, k)]));
+        assert_eq!(best, Some(home(i)));
+        // Its own links are all a third; of the others' links one is.
+        assert!(found[(i, home(i))] > if i == 3 { 1.0 - 1e-9 } else { 0.6 });
+    }
+    let flat = Structure::new(Array2::ones((n, n)), None);
+    assert!(agree(&a, &flat, &sent, &sent).iter().all(|x| *x == 0.0));
+    let shares = shares_of(&found, 16.0);
+    for lane in shares.a.rows().into_iter().chain(shares.b.columns()) {
+        assert!((lane.sum() - 1.0).abs() < 1e-12);
+    }
+    assert!(shares.a[(3, home(3))] > 0.9);
 }

@@ -3,9 +3,9 @@
 use std::path::PathBuf;
 
 use clap::{Args, Parser, Subcommand};
-use kinmark::input::{InputError, Source};
+use kinmark::input::{read_pairs, InputError, Source};
 use kinmark::paint::PaintRequest;
-use kinmark::questions::PlanRequest;
+use kinmark::questions::{CheckRequest, PlanRequest};
 use kinmark::settings::Request;
 
 /// Map homologous brain parcels between two species.
@@ -36,6 +36,8 @@ pub enum Command {
     Inspect(Inspect),
     /// Place every parcel of either species in the other's space and write the tables
     Locate(Locate),
+    /// Check whether a named candidate's position is conserved: conserved, displaced, or neither can be said
+    Check(Check),
     /// Hold landmarks out: what they are worth, whether the pairing matters, how much each moves the rest
     Holdout(Holdout),
     /// Rank all parcels by how surely they correspond, with their candidate sets
@@ -141,6 +143,71 @@ pub struct Inspect {
 
     #[command(flatten)]
     settings: SettingOptions,
+}
+
+/// Options of `check`. On a finished run the settings are those of the run.
+#[derive(Debug, Args)]
+#[command(after_help = kinmark::report::CAUTION)]
+pub struct Check {
+    /// Study file, or folder of a finished run, whose inputs are then read again and must not have
+    /// changed
+    #[arg(value_name = "STUDY|RUN")]
+    pub asked: PathBuf,
+
+    /// The parcel in question; without --against: where it falls, and no verdict
+    #[arg(long, value_name = "LABEL", required_unless_present = "pairs")]
+    parcel: Option<String>,
+
+    /// Its candidates in the other species, named before looking, separated by commas; may be repeated
+    #[arg(long, value_name = "LABELS", requires = "parcel")]
+    against: Vec<String>,
+
+    /// Species of the parcel: its name, or a or b [default: a]
+    #[arg(long, value_name = "NAME", requires = "parcel")]
+    species: Option<String>,
+
+    /// Table of pairs to check, with the columns a and b
+    #[arg(long, value_name = "FILE")]
+    pairs: Option<PathBuf>,
+
+    /// Write the answer as JSON, for other programs
+    #[arg(long)]
+    pub json: bool,
+
+    /// Folder for checks.csv and a record, as for locate [default: RUN gets the table; for a STUDY
+    /// nothing is written]
+    #[arg(long, value_name = "DIR")]
+    pub out: Option<PathBuf>,
+
+    #[command(flatten)]
+    settings: SettingOptions,
+}
+
+impl Check {
+    /// The settings asked for.
+    pub fn request(&self) -> Request {
+        self.settings.request()
+    }
+
+    /// What is to be checked.
+    ///
+    /// # Errors
+    /// A table of pairs that cannot be read.
+    pub fn what(&self) -> Result<CheckRequest, InputError> {
+        let pairs = match &self.pairs {
+            Some(file) => read_pairs(&Source::read(file)?)?,
+            None => Vec::new(),
+        };
+        let against = self.against.iter().flat_map(|list| list.split(','));
+        let against = against.map(|name| name.trim().to_owned());
+        Ok(CheckRequest {
+            species: self.species.clone(),
+            parcel: self.parcel.clone(),
+            against: against.filter(|name| !name.is_empty()).collect(),
+            pairs,
+            file: self.pairs.clone(),
+        })
+    }
 }
 
 /// Options of `rank`. On a finished run the settings are those of the run.
@@ -278,9 +345,9 @@ struct SettingOptions {
     #[arg(long, value_name = "auto|N", value_parser = checked("axes"))]
     axes: Option<String>,
 
-    /// How connectivity becomes coordinates: diffusion map, or principal components of profiles
-    /// [default: diffusion]
-    #[arg(long, value_name = "diffusion|components", value_parser = checked("embedding"))]
+    /// How connectivity becomes coordinates: diffusion map, or principal components of profiles; auto
+    /// lets left-out landmarks choose [default: diffusion]
+    #[arg(long, value_name = "diffusion|components|auto", value_parser = checked("embedding"))]
     embedding: Option<String>,
 
     /// Density exponent of the diffusion map, 0 to 1: 1 removes the density of parcels from it

@@ -115,6 +115,27 @@ impl Landmarks {
         Ok(Landmarks { list, block_names })
     }
 
+    /// The landmarks of other blocks, these numbered anew.
+    ///
+    /// # Errors
+    /// [`LandmarkError::TooFew`] where too few remain.
+    pub fn without(&self, blocks: &[usize]) -> Result<Landmarks, LandmarkError> {
+        let stay: Vec<usize> = (0..self.blocks()).filter(|b| !blocks.contains(b)).collect();
+        let list = self
+            .list
+            .iter()
+            .filter_map(|landmark| {
+                let block = stay.binary_search(&landmark.block).ok()?;
+                Some(Landmark {
+                    block,
+                    ..landmark.clone()
+                })
+            })
+            .collect();
+        let names = stay.iter().map(|&b| self.block_name(b).to_owned());
+        Landmarks::new(list, names.collect())
+    }
+
     /// The landmarks, in the order of the table.
     #[must_use]
     pub fn list(&self) -> &[Landmark] {

@@ -13,6 +13,9 @@ use crate::place;
 
 /// Axes of the first alignment.
 const FIRST_AXES: usize = 2;
+/// Of several embeddings the first is used: a choice among them by landmarks would have to be made again
+/// for every landmark that is left out.
+const EMBEDDING: usize = 0;
 /// Weight of all grown anchors together, as a share of that of all landmarks; a plain choice.
 const GROWN_WEIGHT: f64 = 1.0;
 
@@ -40,13 +43,14 @@ impl Evidence for Grown {
             kind: self.name(),
             why: e.to_string(),
         };
-        let embedded = material.embedded();
+        let embedded = material.embedded_in(EMBEDDING);
         let free = Pair::from_fn(|side: Side| {
             let owners = material.landmarks.owners(side, embedded[side].nrows());
             let open = |parcel: &usize| owners[*parcel].is_none_or(|at| weights[at] == 0.0);
             (0..owners.len()).filter(open).collect::<Vec<usize>>()
         });
-        let mut anchors = material.anchors.clone();
+        let own = material.anchors_in(EMBEDDING);
+        let mut anchors = own.map(Clone::clone);
         let mut all_weights = weights.to_vec();
         let mut axes = FIRST_AXES.min(self.axes);
         let mut distances = Array2::zeros((free.a.len(), free.b.len()));
@@ -55,6 +59,7 @@ impl Evidence for Grown {
                 alignment: Alignment::Canonical,
                 axes,
                 ridge: self.ridge,
+                embedding: EMBEDDING,
             };
             let map = align::fit(params, anchors.as_ref(), &all_weights).map_err(unavailable)?;
             let positions = Positions::new(map.positions(embedded));
@@ -79,7 +84,7 @@ impl Evidence for Grown {
             };
             anchors = Pair::from_fn(|side| {
                 let grown = embedded[side].select(Axis(0), &ends[side]);
-                concatenate(Axis(0), &[material.anchors[side].view(), grown.view()])
+                concatenate(Axis(0), &[own[side].view(), grown.view()])
                     .expect("anchors and parcels have the same axes")
             });
             all_weights = weights.to_vec();

@@ -24,11 +24,14 @@ impl Evidence for JointDistance {
         _chance: &mut Stream,
     ) -> Result<Box<dyn Fitted + 'm>, Unavailable> {
         let map =
-            align::fit(self.0, material.anchors.as_ref(), weights).map_err(|e| Unavailable {
-                kind: self.name(),
-                why: e.to_string(),
+            align::fit(self.0, material.anchors_in(self.0.embedding), weights).map_err(|e| {
+                Unavailable {
+                    kind: self.name(),
+                    why: e.to_string(),
+                }
             })?;
-        Ok(Box::new(Positions::new(map.positions(material.embedded()))))
+        let embedded = material.embedded_in(self.0.embedding);
+        Ok(Box::new(Positions::new(map.positions(embedded))))
     }
 }
 

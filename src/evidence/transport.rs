@@ -8,7 +8,7 @@ use super::fingerprint::{fingerprints, unlikeness, Basis};
 use super::{Evidence, Expression, Fitted, Kind, Material, Unavailable};
 use crate::bootstrap::Stream;
 use crate::domain::Pair;
-use crate::transport::{Fused, Marginals, Mass, Masses};
+use crate::transport::{self, Fused, Marginals, Mass, Masses, Structure};
 
 /// Range from which the weight of the networks beside the cost is drawn.
 const FUSED: std::ops::Range<f64> = 0.2..0.6;
@@ -17,6 +17,10 @@ const FUSED: std::ops::Range<f64> = 0.2..0.6;
 const PULL: f64 = 5.0;
 /// Part of the cost (of mean 1) in the ranking, which orders candidates without a share.
 const COST_IN_RANKING: f64 = 0.02;
+/// Part of the shares by agreement in the ranking, beside those of the plan.
+const AGREEMENT_IN_RANKING: f64 = 0.6;
+/// How fast a share by agreement falls with the correlation of links: by e for a sixteenth less.
+const AGREEMENT_SHARPNESS: f64 = 16.0;
 /// Most steps of a fit: on the real pairs 15 steps rank as well as 60 (docs/method.md).
 const STEPS: usize = 15;
 /// A fit ends when a step gains less than this share of the objective.
@@ -132,8 +136,25 @@ impl Evidence for Transport {
                 }
             }
         };
-        Ok(Box::new(Carried { shares, cost }))
+        let agreeing = agreeing(&material.compared(self.expression).links, &shares);
+        Ok(Box::new(Carried {
+            shares,
+            agreeing,
+            cost,
+        }))
     }
+}
+
+/// Shares by how well parcels agree when their links are carried over, first by the plan, then by plan and
+/// agreement together: what the plan could not send to a second and third counterpart is there then.
+fn agreeing(links: &Pair<Structure>, planned: &Pair<Array2<f64>>) -> Pair<Array2<f64>> {
+    let once = |shares: &Pair<Array2<f64>>| {
+        let found = transport::agreement(links.as_ref(), shares.as_ref());
+        transport::shares_of(&found, AGREEMENT_SHARPNESS)
+    };
+    let first = once(planned);
+    let both = Pair::from_fn(|side| (&planned[side] + &first[side]) / 2.0);
+    once(&both)
 }
 
 /// Entries as shares of their row.
@@ -178,6 +199,8 @@ fn cost(material: &Material<'_>, weights: &[f64], expression: Expression) -> Arr
 /// Where mass goes, as shares of what each parcel has, and what it costs.
 struct Carried {
     shares: Pair<Array2<f64>>,
+    /// Shares by agreement of carried links.
+    agreeing: Pair<Array2<f64>>,
     cost: Array2<f64>,
 }
 
@@ -185,8 +208,11 @@ impl Fitted for Carried {
     fn dissimilarities(&self, a: &[usize], b: &[usize], out: &mut Array2<f64>) {
         for (row, &i) in a.iter().enumerate() {
             for (column, &j) in b.iter().enumerate() {
-                let share = (self.shares.a[(i, j)] + self.shares.b[(i, j)]) / 2.0;
-                out[(row, column)] = COST_IN_RANKING * self.cost[(i, j)] - share;
+                let planned = (self.shares.a[(i, j)] + self.shares.b[(i, j)]) / 2.0;
+                let agreeing = (self.agreeing.a[(i, j)] + self.agreeing.b[(i, j)]) / 2.0;
+                out[(row, column)] = COST_IN_RANKING * self.cost[(i, j)]
+                    - (1.0 - AGREEMENT_IN_RANKING) * planned
+                    - AGREEMENT_IN_RANKING * agreeing;
             }
         }
     }

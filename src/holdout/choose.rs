@@ -33,6 +33,9 @@ pub struct Choice {
     pub axes: PerAlignment<usize>,
     /// The alignment whose distances rank.
     pub evidence: Alignment,
+    /// Which of the embeddings that were tried.
+    #[serde(skip)]
+    pub embedding: usize,
     /// Index of the way of ranking that this amounts to.
     #[serde(skip)]
     pub way: usize,
@@ -48,7 +51,8 @@ pub struct Choice {
 /// several numbers of axes, of which the largest is taken: too few axes put different parcels in one
 /// place, while a surplus is held in check by the ridge and by the axes' own decreasing weight. Of
 /// both alignments canonical correlation is taken, unless Procrustes is better by more than the
-/// standard error or `evidence` names one. docs/method.md has the measurements behind both rules.
+/// standard error or `evidence` names one. Of several embeddings the one is taken whose alignment, so
+/// chosen, has the least mean error. docs/method.md has the measurements behind these rules.
 ///
 /// # Panics
 /// If `ways` lacks an alignment.
@@ -59,12 +63,49 @@ pub fn choose(
     evidence: Option<Alignment>,
     without: Option<usize>,
 ) -> Choice {
+    (0..embeddings(ways))
+        .map(|embedding| choose_in(embedding, ways, trials, evidence, without))
+        .min_by(|x, y| mean(&x.1).total_cmp(&mean(&y.1)))
+        .expect("there is an embedding")
+        .0
+}
+
+/// What each embedding's best comes to: mean left-out error over blocks and its standard error.
+#[must_use]
+pub fn errors_of_embeddings(
+    ways: &[Way],
+    trials: &Trials,
+    evidence: Option<Alignment>,
+) -> Vec<(f64, f64)> {
+    (0..embeddings(ways))
+        .map(|embedding| choose_in(embedding, ways, trials, evidence, None).1)
+        .map(|errors| (mean(&errors), standard_error(&errors)))
+        .collect()
+}
+
+/// Number of embeddings that were tried.
+fn embeddings(ways: &[Way]) -> usize {
+    let last = ways.iter().filter_map(Way::joint).map(|p| p.embedding);
+    last.max().map_or(1, |last| last + 1)
+}
+
+/// What to settle on in one embedding, and its left-out errors.
+fn choose_in(
+    embedding: usize,
+    ways: &[Way],
+    trials: &Trials,
+    evidence: Option<Alignment>,
+    without: Option<usize>,
+) -> (Choice, Vec<f64>) {
     let axes = |at: usize| ways[at].joint().map_or(0, |params| params.axes);
     let best = PerAlignment::from_fn(|alignment| {
         let tried: Vec<(usize, Vec<f64>)> = ways
             .iter()
             .enumerate()
-            .filter(|(_, way)| way.joint().is_some_and(|p| p.alignment == alignment))
+            .filter(|(_, way)| {
+                way.joint()
+                    .is_some_and(|p| p.alignment == alignment && p.embedding == embedding)
+            })
             .map(|(at, _)| (at, trials.errors(at, without)))
             .collect();
         let (_, least) = tried
@@ -85,12 +126,14 @@ pub fn choose(
             Alignment::Canonical
         }
     });
-    Choice {
+    let choice = Choice {
         axes: PerAlignment::from_fn(|alignment| axes(best[alignment].0)),
         evidence,
+        embedding,
         way: best[evidence].0,
         ways: PerAlignment::from_fn(|alignment| best[alignment].0),
-    }
+    };
+    (choice, best[evidence].1.clone())
 }
 
 /// Whether errors are smaller than others by more than the standard error of the difference.
@@ -100,16 +143,16 @@ fn clearly_less(errors: &[f64], others: &[f64]) -> bool {
 }
 
 impl Curve {
-    /// The whole curve of an alignment, for people to look at.
+    /// The whole curve of an alignment in one embedding, for people to look at.
     #[must_use]
-    pub fn of(alignment: Alignment, ways: &[Way], trials: &Trials) -> Curve {
+    pub fn of(alignment: Alignment, embedding: usize, ways: &[Way], trials: &Trials) -> Curve {
         Curve {
             alignment,
             points: ways
                 .iter()
                 .enumerate()
                 .filter_map(|(at, way)| Some((at, way.joint()?)))
-                .filter(|(_, params)| params.alignment == alignment)
+                .filter(|(_, p)| p.alignment == alignment && p.embedding == embedding)
                 .map(|(at, params)| {
                     let errors = trials.errors(at, None);
                     Point {

@@ -66,6 +66,25 @@ impl Way {
     }
 }
 
+/// Distance in a joint space, in either alignment on each of these numbers of axes in each embedding.
+#[must_use]
+pub fn joint_ways(axes: &[usize], ridge: f64, embeddings: usize) -> Vec<Way> {
+    let mut ways = Vec::with_capacity(2 * axes.len() * embeddings);
+    for embedding in 0..embeddings {
+        for alignment in Alignment::BOTH {
+            ways.extend(axes.iter().map(|&axes| {
+                Way::Joint(Params {
+                    alignment,
+                    axes,
+                    ridge,
+                    embedding,
+                })
+            }));
+        }
+    }
+    ways
+}
+
 /// The member of each landmark that is asked for when the landmark is left out, drawn by the seed. A
 /// landmark of several parcels is asked by one of them, since a centroid is less noisy than the
 /// single parcels that users ask about.

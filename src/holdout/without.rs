@@ -22,6 +22,8 @@ pub struct Ranked<'r> {
     pub trials: &'r Trials,
     /// The kinds that rank, with their weights and ways.
     pub members: &'r [Member],
+    /// The alignment that was asked for by name, if one was.
+    pub alignment: Option<Alignment>,
     /// Whether ranks are blended; else the only kind ranks by its own dissimilarities.
     pub blends: bool,
     /// Replicates of costly kinds.
@@ -62,7 +64,7 @@ impl Ranked<'_> {
         let landmarks = self.material.landmarks;
         let landmark = &landmarks.list()[at];
         let block = landmark.block;
-        let joint = choose(self.ways, self.trials, None, Some(block));
+        let joint = choose(self.ways, self.trials, self.alignment, Some(block));
         let way_of = |member: &Member| match member.kind {
             Kind::Procrustes => joint.ways[Alignment::Procrustes],
             Kind::Canonical => joint.ways[Alignment::Canonical],

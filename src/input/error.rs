@@ -385,6 +385,17 @@ pub enum Problem {
         /// Columns found.
         found: String,
     },
+    /// A table of pairs without a column it needs.
+    #[error("the table of pairs lacks the column {missing:?}; found {found}. Expected a,b: a parcel of either species in each row")]
+    PairColumn {
+        /// The column.
+        missing: &'static str,
+        /// Columns found.
+        found: String,
+    },
+    /// A table of pairs without a row.
+    #[error("expected rows of a parcel of a and a parcel of b, found none; add pairs")]
+    NoPairs,
     /// A column that came before.
     #[error("the column {0:?} came before in this line; keep one of them")]
     ColumnTwice(String),

@@ -13,7 +13,7 @@ use rand::Rng;
 use serde::Serialize;
 
 use crate::bootstrap::{Purpose, Stream};
-use crate::domain::{Landmarks, Pair, Side};
+use crate::domain::{Landmarks, Pair, Seed, Side};
 use crate::evidence::Kind;
 use crate::holdout::{Compared, Questions};
 use crate::linalg::median;
@@ -77,6 +77,21 @@ pub struct Calibration<'c> {
     counts: Mutex<Counts>,
 }
 
+/// The landmark that stands for each block where blocks are counted, drawn by the seed: two sides of
+/// one area are not two landmarks.
+#[must_use]
+pub fn stand_ins(landmarks: &Landmarks, seed: Seed) -> Vec<usize> {
+    (0..landmarks.blocks())
+        .map(|block| {
+            let own: Vec<usize> = (0..landmarks.len())
+                .filter(|&at| landmarks.list()[at].block == block)
+                .collect();
+            let mut chance = Stream::new(seed, Purpose::StandsForBlock, block as u64);
+            own[chance.gen_range(0..own.len())]
+        })
+        .collect()
+}
+
 /// Counts over landmarks; sums of whole numbers, so that the order of additions does not matter.
 struct Counts {
     /// Landmarks with a smaller score than a candidate `(open parcels, open parcels opposite)`.
@@ -86,24 +101,14 @@ struct Counts {
 }
 
 impl<'c> Calibration<'c> {
-    /// Nothing yet. Where a block has several landmarks one stands for it, drawn by the seed: two
-    /// sides of one area are not two landmarks.
+    /// Nothing yet.
     pub fn new(landmarks: &'c Landmarks, questions: &Questions<'c>, level: f64) -> Calibration<'c> {
-        let stands = (0..landmarks.blocks())
-            .map(|block| {
-                let own: Vec<usize> = (0..landmarks.len())
-                    .filter(|&at| landmarks.list()[at].block == block)
-                    .collect();
-                let mut chance = Stream::new(questions.seed, Purpose::StandsForBlock, block as u64);
-                own[chance.gen_range(0..own.len())]
-            })
-            .collect();
         let open = questions.open.as_ref().map(Vec::len);
         Calibration {
             questions: *questions,
             landmarks,
             level: SetLevel::new(level, landmarks.blocks()),
-            stands,
+            stands: stand_ins(landmarks, questions.seed),
             counts: Mutex::new(Counts {
                 smaller: Pair {
                     a: Array2::zeros((open.a, open.b)),
@@ -264,7 +269,8 @@ impl<'s> Seen<'s> {
 
     /// Shares of a row's mass over the admissible candidates that count: those that transport carries,
     /// or else falling exponentially with unlikeness.
-    fn shares(&self, row: usize, counts: impl Fn(usize) -> bool) -> Vec<f64> {
+    #[must_use]
+    pub fn shares(&self, row: usize, counts: impl Fn(usize) -> bool) -> Vec<f64> {
         let scores = self.scores.row(row);
         let takes = |c: usize| counts(c) && scores[c] < f64::INFINITY;
         let mut shares: Vec<f64> = match &self.mass {

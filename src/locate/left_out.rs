@@ -75,9 +75,9 @@ pub fn firsts(landmarks: &Landmarks, left_out: &[LeftOut]) -> Vec<Pair<FirstOf>>
 /// The joint space of all landmarks but one block, in standard units.
 pub fn map_without(material: &Material<'_>, params: Params, block: usize) -> JointMap {
     let weights = material.weights(|b| if b == block { 0.0 } else { 1.0 });
-    align::fit(params, material.anchors.as_ref(), &weights)
+    align::fit(params, material.anchors_in(params.embedding), &weights)
         .expect("two landmarks or more remain, with checked weights")
-        .in_standard_units(material.embedded())
+        .in_standard_units(material.embedded_in(params.embedding))
 }
 
 fn distance_without(
@@ -86,7 +86,8 @@ fn distance_without(
     block: usize,
     members: Pair<usize>,
 ) -> f64 {
-    let positions = map_without(material, params, block).positions(material.embedded());
+    let embedded = material.embedded_in(params.embedding);
+    let positions = map_without(material, params, block).positions(embedded);
     let gap = &positions.a.row(members.a) - &positions.b.row(members.b);
     gap.dot(&gap).sqrt()
 }

@@ -1,5 +1,7 @@
 //! What ranks: one kind of evidence or a mixture, on the full sample and in a replicate.
 
+use std::sync::Arc;
+
 use ndarray::{Array2, ArrayView1};
 
 use super::candidate_sets::{CandidateSets, Seen};
@@ -22,7 +24,7 @@ pub enum Ranker {
         /// The kinds and their ways of ranking.
         members: Vec<(Member, Way)>,
         /// Replicates of transport, if it is among them.
-        bagged: Option<Box<OutOfBag>>,
+        bagged: Option<Arc<OutOfBag>>,
         /// Replicates that rank.
         replicates: usize,
     },

@@ -4,6 +4,7 @@
 use ndarray::{Array2, ArrayView2, Axis};
 
 use super::ranking::{Ranker, Ranking};
+use super::watched::{gaps, Watched};
 use super::{intervals, Space, StandardErrors, SubjectErrors};
 use crate::align::{self, Alignment, JointMap, PerAlignment};
 use crate::bootstrap::{accumulate, Purpose, Spread, Stream};
@@ -22,6 +23,8 @@ pub struct Tally {
     spreads: [PerAlignment<Pair<Spread>>; Again::ALL.len()],
     /// Ranks of all listed pairs, for each replicate that ranks.
     ranks: Pair<Vec<Vec<u32>>>,
+    /// What becomes of the watched pairs.
+    watched: Watched,
     /// Replicates with too few distinct landmarks.
     pub(super) degenerate: usize,
     /// Replicates that found nearest candidates.
@@ -63,6 +66,7 @@ impl Tally {
                 })
             }),
             ranks: Pair::default(),
+            watched: Watched::default(),
             degenerate: 0,
             ranking: 0,
             drawn: false,
@@ -81,11 +85,17 @@ impl Tally {
                 }
             }
         }
+        self.watched.append(block.watched);
         self.degenerate += block.degenerate;
         self.ranking += block.ranking;
         self.drawn |= block.drawn;
         self.drawn_again += block.drawn_again;
         self.unusable += block.unusable;
+    }
+
+    /// What became of the watched pairs.
+    pub(super) fn take_watched(&mut self) -> Watched {
+        std::mem::take(&mut self.watched)
     }
 
     /// Share of replicates in which a candidate came first, both as places among the open parcels.
@@ -126,8 +136,12 @@ pub struct Job<'j, 'm> {
     pub material: &'j Material<'m>,
     /// Its joint spaces.
     pub spaces: &'j PerAlignment<Space>,
+    /// The one that shows distances.
+    pub shown: Alignment,
     /// What ranks.
     pub ranking: &'j Ranking,
+    /// Pairs of open parcels to follow.
+    pub watched: &'j [Pair<usize>],
 }
 
 /// Runs all replicates. Where no draw of subjects can be used, they are run without subjects, so that
@@ -179,7 +193,9 @@ fn one(
         study,
         material,
         spaces,
+        shown,
         ranking,
+        watched,
     } = job;
     let settings = &study.settings;
     let index = replicate as u64;
@@ -209,6 +225,10 @@ fn one(
         );
     }
 
+    if !watched.is_empty() && !draw_subjects {
+        let found = gaps(spaces[shown].params, material, &weights, watched);
+        tally.watched.distances.push(found);
+    }
     let ranks_here = replicate < ranking.ranker.replicates(settings.replicates);
     if draw_subjects {
         tally.drawn = true;
@@ -254,6 +274,10 @@ fn one(
                 );
             }
         }
+        if !watched.is_empty() {
+            let found = gaps(spaces[shown].params, &material, &both, watched);
+            tally.watched.distances.push(found);
+        }
         if !ranks_here {
             return;
         }
@@ -270,6 +294,10 @@ fn one(
         return;
     }
     tally.ranking += 1;
+    if !watched.is_empty() {
+        let found = Watched::ranks(dissimilarities, &ranking.open, watched);
+        tally.watched.ranks.push(found);
+    }
     let nearest = place::nearest(dissimilarities);
     for side in Side::BOTH {
         for (parcel, first) in nearest[side].iter().enumerate() {

@@ -1,7 +1,9 @@
 //! Every kind of evidence judged and weighed by left-out landmarks: what ranks, and on what grounds.
 
+use std::sync::Arc;
+
 use super::left_out::{firsts, summarise, LeftOut};
-use crate::align::{Alignment, Params};
+use crate::align::Alignment;
 use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{Pair, Seed};
 use crate::evidence::{Evidence, Expression, Grown, Kind, Material, Transport, Unavailable};
@@ -25,7 +27,7 @@ pub struct Weighed {
     /// Whether their ranks are blended.
     pub blends: bool,
     /// Replicates of transport, where it takes part.
-    pub bagged: Option<OutOfBag>,
+    pub bagged: Option<Arc<OutOfBag>>,
     /// Kinds that have nothing to say about this study.
     pub unavailable: Vec<Unavailable>,
     /// The alignment that was asked for, if one was.
@@ -48,17 +50,7 @@ impl Weighed {
         questions: &Questions<'_>,
         watch: &dyn Watch,
     ) -> Result<Weighed, Interrupted> {
-        let joint = |alignment, axes| {
-            Way::Joint(Params {
-                alignment,
-                axes,
-                ridge: settings.ridge,
-            })
-        };
-        let mut ways: Vec<Way> = Alignment::BOTH
-            .into_iter()
-            .flat_map(|alignment| axes.iter().map(move |&axes| joint(alignment, axes)))
-            .collect();
+        let mut ways = holdout::joint_ways(axes, settings.ridge, material.embeddings());
         let mut unavailable = Vec::new();
         for way in further_ways(settings, axes) {
             match can_be_fitted(&way, material, questions.seed) {
@@ -72,7 +64,7 @@ impl Weighed {
                 let placed = holdout::placed_out_of_bag(material, &bagged, questions);
                 ways.push(Way::Transport);
                 trials.add(placed);
-                Some(bagged)
+                Some(Arc::new(bagged))
             }
             Some(Err(why)) => {
                 unavailable.push(why);
@@ -80,11 +72,7 @@ impl Weighed {
             }
             None => None,
         };
-        let alignment = match settings.evidence {
-            EvidenceChoice::Procrustes => Some(Alignment::Procrustes),
-            EvidenceChoice::Canonical => Some(Alignment::Canonical),
-            _ => None,
-        };
+        let alignment = settings.evidence.alignment();
         let choice = holdout::choose(&ways, &trials, alignment, None);
         let members = members(settings.evidence, &ways, &trials, &choice);
         Ok(Weighed {
@@ -114,8 +102,9 @@ impl Weighed {
             ways: &self.ways,
             trials: &self.trials,
             members: &self.members,
+            alignment: self.alignment,
             blends: self.blends,
-            bagged: self.bagged.as_ref(),
+            bagged: self.bagged.as_deref(),
             questions: *questions,
         }
     }

@@ -154,12 +154,12 @@
     const half = (of) => (mean(landmark.parcels[0], of) + mean(landmark.parcels[1], of)) / 2;
     return [half(at.x), half(at.y)];
   }
+  /** A line from a mark to its label further out. */
+  const leader = (x, y, dx, dy) =>
+    draw("path", { d: `M${x} ${y}L${x + 0.86 * dx} ${y + 0.86 * (dy - 3.25)}`, stroke: "#56626a", "stroke-width": 0.8 });
   /** A label at one of the places that are fixed for all drawings. */
   function name(group, id, x, y, [dx, dy, anchor, led], bold) {
-    if (led) {
-      const end = `${x + 0.86 * dx} ${y + 0.86 * (dy - 3.25)}`;
-      group.append(draw("path", { d: `M${x} ${y}L${end}`, stroke: "#56626a", "stroke-width": 0.8 }));
-    }
+    if (led) group.append(leader(x, y, dx, dy));
     const text = draw("text", {
       x: x + dx, y: y + dy, "text-anchor": anchor, fill: bold ? "#1d2427" : "#56626a",
       "font-weight": bold ? "bold" : "normal", stroke: "#fff", "stroke-width": 3,
@@ -195,23 +195,29 @@
     const room = plot.radius + 6, half = 1.6 * plot.radius;
     const marks = shown.map((p) => ({ p, x: at.x[p] - half, y: at.y[p] - half, width: 2 * half, height: 2 * half }));
     const meet = (one, other) => one.x < other.x + other.width && other.x < one.x + one.width && one.y < other.y + other.height && other.y < one.y + one.height;
-    for (const p of shown) {
-      let text = null, fits = false;
+    const texts = shown.map((p) => name(picks, p, at.x[p], at.y[p], J.places[0], true));
+    // Asked once, and of all together: each question after a change lays the drawing out again.
+    const widths = texts.map((text) => text.getComputedTextLength());
+    const out = 1 + room / plot.radius / 4;
+    shown.forEach((p, k) => {
+      const [text, width] = [texts[k], widths[k]];
+      let fits = false;
       for (let place = 0; place < J.places.length && !fits; place++) {
         const [dx, dy, anchor, led] = J.places[place];
-        const out = room / plot.radius;
-        const move = led ? [dx, dy, anchor, led] : [dx * (1 + out / 4), dy, anchor, led];
-        if (!text) text = name(picks, p, at.x[p], at.y[p], move, true);
-        text.setAttribute("x", at.x[p] + move[0]);
-        text.setAttribute("y", at.y[p] + move[1]);
-        text.setAttribute("text-anchor", anchor);
-        const box = text.getBBox();
-        const inside = box.x > plot.left && box.x + box.width < plot.right && box.y > plot.top && box.y + box.height < plot.bottom;
+        const [x, y] = [at.x[p] + (led ? dx : dx * out), at.y[p] + dy];
+        const left = anchor === "start" ? x : anchor === "end" ? x - width : x - width / 2;
+        const box = { x: left, y: y - 10, width, height: 14 };
+        const inside = box.x > plot.left && left + width < plot.right && box.y > plot.top && box.y + box.height < plot.bottom;
         fits = inside && !taken.some((other) => meet(box, other)) && !marks.some((other) => other.p !== p && meet(box, other));
-        if (fits) taken.push(box);
+        if (!fits) continue;
+        text.setAttribute("x", x);
+        text.setAttribute("y", y);
+        text.setAttribute("text-anchor", anchor);
+        taken.push(box);
+        if (led) text.before(leader(at.x[p], at.y[p], dx, dy));
       }
-      if (text && !fits) text.remove();
-    }
+      if (!fits) text.remove();
+    });
   }
 
   function refreshPlot() {

@@ -61,11 +61,24 @@ fn one(study: &Study, side: Side, replicate: usize) -> Option<(Cow<'_, Species>,
         .filter(|&j| network.row_of_column(j).is_none_or(|i| connected[i]))
         .collect();
     let axes = full.embedding.axes();
+    let recipe = study.embedded.recipe;
     let found = if rows.len() == n {
-        embed_strengths(&network, treatment, &study.settings, AXES_SOUGHT * axes)
+        embed_strengths(
+            &network,
+            treatment,
+            &study.settings,
+            recipe,
+            AXES_SOUGHT * axes,
+        )
     } else {
         let part = network.select(&rows, &columns);
-        embed_strengths(&part, treatment, &study.settings, AXES_SOUGHT * axes)
+        embed_strengths(
+            &part,
+            treatment,
+            &study.settings,
+            recipe,
+            AXES_SOUGHT * axes,
+        )
     }
     .ok()?;
     let there = Embedding {
@@ -84,6 +97,8 @@ fn one(study: &Study, side: Side, replicate: usize) -> Option<(Cow<'_, Species>,
             coordinates,
             ..full.embedding.clone()
         },
+        // There is nothing left to choose: the draw was brought to the axes of the embedding chosen.
+        tried: Vec::new(),
         ..full.clone()
     };
     Some((Cow::Owned(species), connected))

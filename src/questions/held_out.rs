@@ -149,7 +149,10 @@ pub fn hold_out(
             if watch.interrupted() {
                 return Err(Interrupted);
             }
-            let kept = kept(&study.landmarks, set);
+            let kept = study
+                .landmarks
+                .without(set)
+                .expect("the plan leaves enough landmarks");
             let material = material.with_landmarks(&kept);
             let rerun = Rerun::new(study, &material, &questions, watch)?;
             let fingerprint = has_fingerprint(&material, &questions);
@@ -216,26 +219,6 @@ pub fn hold_out(
     })
 }
 
-/// The landmarks of other blocks, these numbered anew.
-fn kept(landmarks: &Landmarks, out: &[usize]) -> Landmarks {
-    let stay: Vec<usize> = (0..landmarks.blocks())
-        .filter(|b| !out.contains(b))
-        .collect();
-    let list = landmarks
-        .list()
-        .iter()
-        .filter_map(|landmark| {
-            let block = stay.binary_search(&landmark.block).ok()?;
-            Some(Landmark {
-                block,
-                ..landmark.clone()
-            })
-        })
-        .collect();
-    let names = stay.iter().map(|&b| landmarks.block_name(b).to_owned());
-    Landmarks::new(list, names.collect()).expect("the plan leaves enough landmarks")
-}
-
 fn has_fingerprint(material: &Material<'_>, questions: &Questions<'_>) -> bool {
     use crate::bootstrap::{Purpose, Stream};
     use crate::evidence::Evidence;
@@ -279,10 +262,12 @@ impl<'r> Rerun<'r> {
             alignment,
             axes: weighed.choice.axes[alignment],
             ridge: settings.ridge,
+            embedding: weighed.choice.embedding,
         };
-        let map = align::fit(space, material.anchors.as_ref(), &material.weights(|_| 1.0))
+        let anchors = material.anchors_in(space.embedding);
+        let map = align::fit(space, anchors, &material.weights(|_| 1.0))
             .expect("landmarks were checked")
-            .in_standard_units(material.embedded());
+            .in_standard_units(material.embedded_in(space.embedding));
         Ok(Rerun {
             material,
             weighed,
@@ -322,7 +307,9 @@ impl<'r> Rerun<'r> {
         let ranked = self.ranked(questions);
         let placed = place(&ranked.full(candidates.clone()));
         let fingerprint = fingerprint.then(|| place(&ranked.alone(candidates, &Fingerprint)));
-        let positions = self.map.positions(self.material.embedded());
+        let positions = self
+            .map
+            .positions(self.material.embedded_in(self.space.embedding));
         let gap = &positions.a.row(asked.a) - &positions.b.row(asked.b);
         HeldOutLandmark {
             set,

@@ -116,6 +116,8 @@ fn judges(settings: &Settings, axes: usize) -> Vec<(Kind, Box<dyn Evidence>)> {
             alignment,
             axes,
             ridge: settings.ridge,
+            // The first of those that were tried: the landmarks have had no say in it.
+            embedding: 0,
         })
     };
     match settings.evidence {

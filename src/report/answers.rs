@@ -7,6 +7,7 @@ use serde_json::Value;
 
 use super::map_folder::{write_files, Hold, MapsError};
 use super::record::json;
+use super::tables::Table;
 use super::{Identity, Wall};
 use crate::prepare::Study;
 use crate::warning::Warning;
@@ -78,4 +79,53 @@ pub fn add_to_run(
         MapsError::Foreign(path) => MapsError::OtherTable(path),
         other => other,
     })
+}
+
+/// A table with the rows that stand in the run already, except those that the new ones replace: rows alike
+/// in the first `key` cells. A table with another header is left to [`add_to_run`], which refuses it.
+///
+/// # Errors
+/// [`MapsError`] where the table is there and cannot be read.
+pub fn with_earlier_rows(
+    run: &Path,
+    name: &str,
+    new: Vec<u8>,
+    key: usize,
+) -> Result<Vec<u8>, MapsError> {
+    let path = run.join(name);
+    let there = match std::fs::read(&path) {
+        Ok(bytes) => bytes,
+        Err(error) if error.kind() == std::io::ErrorKind::NotFound => return Ok(new),
+        Err(source) => {
+            return Err(MapsError::System {
+                doing: "read",
+                path,
+                source,
+            })
+        }
+    };
+    let rows = |bytes: &[u8]| -> Option<Vec<csv::StringRecord>> {
+        csv::ReaderBuilder::new()
+            .has_headers(false)
+            .from_reader(bytes)
+            .into_records()
+            .collect::<Result<_, _>>()
+            .ok()
+    };
+    let (Some(earlier), Some(added)) = (rows(&there), rows(&new)) else {
+        return Ok(new);
+    };
+    if earlier.first() != added.first() {
+        return Ok(new);
+    }
+    let is_replaced = |row: &csv::StringRecord| {
+        let same = |other: &csv::StringRecord| other.iter().take(key).eq(row.iter().take(key));
+        added.iter().any(same)
+    };
+    let mut table = Table::new(added.first().into_iter().flatten());
+    let kept = earlier.iter().skip(1).filter(|row| !is_replaced(row));
+    for row in kept.chain(added.iter().skip(1)) {
+        table.row(row);
+    }
+    Ok(table.bytes())
 }

@@ -5,7 +5,7 @@ use serde::Serialize;
 use crate::domain::{Pair, Side};
 use crate::holdout::{Choice, Curve};
 use crate::locate::{Located, Rests, SetLevel};
-use crate::prepare::{Inputs, Study, Treatment};
+use crate::prepare::{Embedded, Inputs, Study, Treatment};
 use crate::settings::Settings;
 use crate::warning::Warning;
 
@@ -88,6 +88,7 @@ pub struct Record<'s> {
     species: Pair<SpeciesCounts<'s>>,
     landmarks: usize,
     landmark_blocks: usize,
+    embedding: &'s Embedded,
     choice: Choice,
     evidence: &'s Rests,
     candidate_sets: SetLevel,
@@ -125,6 +126,7 @@ impl<'s> Record<'s> {
             }),
             landmarks: study.landmarks.len(),
             landmark_blocks: study.landmarks.blocks(),
+            embedding: &study.embedded,
             choice: located.choice,
             evidence: &located.evidence,
             candidate_sets: located.set_level,

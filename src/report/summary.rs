@@ -117,6 +117,7 @@ fn trust(text: &mut String, study: &Study, located: &Located) -> Result {
             contradicted.join(", ")
         )?;
     }
+    embedded_by(text, study)?;
     ranked_by(text, located)?;
     uncertainty(text, study, located)
 }
@@ -144,6 +145,25 @@ fn uncertainty(text: &mut String, study: &Study, located: &Located) -> Result {
         "Uncertainty of positions from subjects rather than landmarks: {};\n  \
          support and rank intervals draw both again, in {replicates} replicates.\n",
         shares.join(", ")
+    )
+}
+
+/// The embedding that left-out landmarks chose, where they did.
+fn embedded_by(text: &mut String, study: &Study) -> Result {
+    let tried: Vec<String> = study
+        .embedded
+        .tried
+        .iter()
+        .map(|tried| format!("{} {:.2}", tried.recipe.in_words(), tried.error))
+        .collect();
+    if tried.is_empty() {
+        return Ok(());
+    }
+    writeln!(
+        text,
+        "  Embedding chosen by left-out landmarks: {};\n  errors of those tried: {}.",
+        study.embedded.recipe.in_words(),
+        tried.join(", ")
     )
 }
 

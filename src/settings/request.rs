@@ -4,10 +4,10 @@ use std::ops::RangeInclusive;
 
 use thiserror::Error;
 
-use super::{Axes, Conduct, EvidenceChoice, Settings, Top};
+use super::{Axes, Conduct, EmbeddingChoice, EvidenceChoice, Settings, Top};
 use crate::bootstrap::Resampling;
 use crate::domain::{Choice, Hemispheres, Seed};
-use crate::embed;
+use crate::embed::Method;
 use crate::transport::Mass;
 
 /// A setting that cannot be used.
@@ -95,8 +95,8 @@ request! {
     };
     /// Replicates that also draw subjects again, where there are any.
     subject_replicates: usize = "subject-replicates", |key, text| whole(key, text, 2..=100_000, "a whole number from 2 to 100000");
-    /// How connectivity becomes coordinates.
-    embedding: embed::Method = "embedding", choice;
+    /// How connectivity becomes coordinates, or "auto": left-out landmarks choose.
+    embedding: EmbeddingChoice = "embedding", choice;
     /// Density exponent of the diffusion map, 0 to 1: 1 removes the density of parcels from it.
     density_exponent: f64 = "density-exponent", |key, text| number(key, text, 0.0..=1.0, "a number from 0 to 1");
     /// Diffusion time in steps: larger keeps coarser structure, 0 weighs all times together.
@@ -183,7 +183,7 @@ impl Request {
                 .min(replicates),
             seed: Seed(self.seed.unwrap_or(SEED)),
             axes: self.axes.unwrap_or(Axes::Auto),
-            embedding: self.embedding.unwrap_or(embed::Method::OF_SQUARE),
+            embedding: self.embedding.unwrap_or(Method::OF_SQUARE.into()),
             density_exponent: self.density_exponent.unwrap_or(DENSITY_EXPONENT),
             diffusion_time: self.diffusion_time.unwrap_or(DIFFUSION_TIME),
             evidence: self.evidence.unwrap_or(EvidenceChoice::Mixture),

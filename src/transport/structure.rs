@@ -48,6 +48,12 @@ impl Structure {
             .is_none_or(|mask| mask[(source, target)] > 0.0)
     }
 
+    /// One where a link was observed, zero elsewhere; `None` where all were.
+    #[must_use]
+    pub fn observed(&self) -> Option<&Array2<f64>> {
+        self.observed.as_ref()
+    }
+
     /// Number of parcels.
     #[must_use]
     pub fn len(&self) -> usize {
@@ -60,7 +66,9 @@ impl Structure {
         self.links.is_empty()
     }
 
-    fn is_symmetric(&self) -> bool {
+    /// Whether every link equals the one the other way.
+    #[must_use]
+    pub fn is_symmetric(&self) -> bool {
         self.links == self.links.t() && self.observed.as_ref().is_none_or(|mask| mask == mask.t())
     }
 }

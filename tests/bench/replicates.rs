@@ -33,6 +33,7 @@ fn replicates(c: &mut Criterion) {
             alignment,
             axes: AXES,
             ridge: 0.4,
+            embedding: 0,
         };
         c.bench_function(&format!("{alignment}, 16 landmarks, 8 axes"), |b| {
             b.iter(|| black_box(align::fit(params, anchors.as_ref(), &weights)));
