@@ -27,10 +27,13 @@ fn rows(table: &Path) -> Vec<BTreeMap<String, String>> {
     reader.deserialize().map(|row| row.unwrap()).collect()
 }
 
-/// The run of the demo with what `holdout` adds.
+/// The run of the demo with what `holdout` and `check` add.
 fn demo() -> Study {
     let study = Study::demo();
     study.run(&[]).succeeded();
+    let mut check = program();
+    check.arg("check").arg(study.out()).arg("--quiet");
+    Run::of(check.args(["--parcel", "Drelmi", "--against", "Swevos,Plurdo"])).succeeded();
     let mut holdout = program();
     let answered = holdout
         .arg("holdout")
@@ -534,6 +537,25 @@ fn the_page_shows_what_the_tables_hold() {
         .unwrap();
     let moves = format!("{}{}", largest["held_out"], fixed(&largest["moved"], 3));
     assert!(card.contains(&moves), "{moves}: {card}");
+    let checks = rows(&run.join("checks.csv"));
+    assert_eq!(checks.len(), 2);
+    for check in &checks {
+        assert!(card.contains(&check["why"]), "{card}");
+        let verdict = format!(
+            "{} with {}, asked from Loamick",
+            check["verdict"], check["b"]
+        );
+        assert!(card.contains(&verdict), "{verdict}: {card}");
+        let counted = checks
+            .iter()
+            .filter(|c| c["verdict"] == check["verdict"])
+            .count();
+        let told = text(&browser, "#answer article:nth-child(3)");
+        assert!(
+            told.contains(&format!("{counted} {}", check["verdict"])),
+            "{told}"
+        );
+    }
     // It is marked everywhere: in the drawing, the table, the matrix.
     let marked = browser.run(
         r##"return [document.querySelectorAll(".drawing.wide .marks .on").length,

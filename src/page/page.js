@@ -44,7 +44,7 @@
     const found = Array.from({ length: N }, () => []);
     if (!D.checks) return found;
     const at = (name) => D.checks.header.indexOf(name);
-    const [a, b, verdict, why] = ["a", "b", "verdict", "why"].map(at);
+    const [a, b, verdict, why, asked] = ["a", "b", "verdict", "why", "asked_from"].map(at);
     if (a < 0 || b < 0 || verdict < 0) return found;
     const index = [new Map(), new Map()];
     for (let p = 0; p < N; p++) index[side(p)].set(P.label[p], p);
@@ -54,9 +54,10 @@
         if (pair[which] == null) continue;
         const rest = D.checks.header
           .map((name, k) => [name, row[k]])
-          .filter(([, cell], k) => ![a, b, verdict, why].includes(k) && cell !== "");
+          .filter(([, cell], k) => ![a, b, verdict, why, asked].includes(k) && cell !== "");
         found[pair[which]].push({
           other: pair[1 - which], label: row[which ? a : b], verdict: row[verdict], why: row[why] || "", rest,
+          from: D.species[["a", "b"].indexOf(row[asked])],
         });
       }
     }
@@ -389,8 +390,12 @@
     const parts = [el("h4", {}, "Verdict")];
     for (const check of checks[p]) {
       parts.push(el("p", {}, el("strong", {}, `${VERDICTS[check.verdict] || "–"} `, bdi(check.verdict)), " with ",
-        check.other == null ? bdi(check.label) : button(check.other), check.why ? ". " : "", bdi(check.why)));
-      if (check.rest.length) parts.push(el("p", { class: "hint" }, bdi(check.rest.map(([key, cell]) => `${key} ${short(cell)}`).join(" · "))));
+        check.other == null ? bdi(check.label) : button(check.other),
+        ...(check.from ? [", asked from ", bdi(check.from)] : []), check.why ? ". " : "", bdi(check.why)));
+      if (check.rest.length) {
+        parts.push(el("details", {}, el("summary", {}, "Its numbers"),
+          table("Numbers of a check", ["Column", "Value"], check.rest.map(([key, cell]) => [bdi(key), bdi(short(cell))]))));
+      }
     }
     if (!checks[p].length) {
       parts.push(el("p", { class: "hint" }, D.checks ? "Not among the pairs checked." : "No pair is checked yet; kinmark check on this run adds verdicts."));

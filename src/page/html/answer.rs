@@ -157,15 +157,16 @@ fn checked(model: &Model) -> Markup {
         h3 { "Which candidates were checked?" }
         @if let Some((checks, (a, b, verdict, why))) = found {
             @let counts = counts(checks, verdict);
-            p.big { (checks.rows.len()) " " span.small { @if checks.rows.len() == 1 { "pair checked" } @else { "pairs checked" } } }
+            p.big { (checks.rows.len()) " " span.small { @if checks.rows.len() == 1 { "check" } @else { "checks" } " of named pairs" } }
             ul.verdicts {
                 @for (word, count) in &counts {
                     li { span.glyph aria-hidden="true" { (glyph(word)) } " " strong { (count) } " " bdi { (word) } }
                 }
             }
+            @let asked = checks.column("asked_from");
             @let pair = |row: &Vec<String>| html! {
                 li {
-                    bdi { (row[a]) } " – " bdi { (row[b]) } ": "
+                    bdi { (row[a]) } " – " bdi { (row[b]) } @if let Some(side) = asked.and_then(|at| from(model, &row[at])) { " (asked from " bdi { (side) } ")" } ": "
                     strong { span aria-hidden="true" { (glyph(&row[verdict])) " " } bdi { (row[verdict]) } }
                     @if let Some(why) = why { ". " span.why { bdi { (row[why]) } } }
                 }
@@ -181,7 +182,7 @@ fn checked(model: &Model) -> Markup {
         } @else {
             p.big { "None " span.small { "checked yet" } }
             p {
-                "The run holds no checks.csv. " code { "kinmark check" } " on this run compares the connections of a pair of parcels with those of their surroundings and adds a verdict: conserved, displaced, undetermined, or that it cannot be shown."
+                "The run holds no checks.csv. " code { "kinmark check" } " on this run asks whether the position of a named pair is conserved, and adds a verdict: conserved, displaced, undetermined, or that these data cannot show it."
             }
         }
         h4 { "Best first candidates" }
@@ -203,6 +204,14 @@ fn checked(model: &Model) -> Markup {
             }
         }
     }
+}
+
+/// The species that a check was asked from, by its letter.
+fn from<'m>(model: &'m Model, letter: &str) -> Option<&'m str> {
+    Side::BOTH
+        .into_iter()
+        .find(|side| side.letter() == letter)
+        .map(|side| model.species[side].as_str())
 }
 
 /// How often each verdict was given, in the order of the words.
