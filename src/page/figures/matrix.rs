@@ -31,7 +31,7 @@ enum Class {
 impl Class {
     const ALL: [Class; 4] = [Class::Listed, Class::Near, Class::First, Class::Mutual];
 
-    fn of(ranks: [Option<usize>; 2]) -> Class {
+    fn of(ranks: Ranks) -> Class {
         let best = ranks.into_iter().flatten().min().unwrap_or(usize::MAX);
         match (ranks, best) {
             ([Some(1), Some(1)], _) => Class::Mutual,
@@ -107,9 +107,14 @@ pub fn figure(model: &Model) -> Figure {
     }
 }
 
-/// Ranks of every listed pair, from a and from b.
-fn pairs(model: &Model) -> Vec<((usize, usize), [Option<usize>; 2])> {
-    let mut found: HashMap<(usize, usize), [Option<usize>; 2]> = HashMap::new();
+/// A parcel of a and one of b.
+type Couple = (usize, usize);
+/// A rank from a and one from b, where they are listed.
+type Ranks = [Option<usize>; 2];
+
+/// Ranks of every listed pair, in order.
+fn pairs(model: &Model) -> Vec<(Couple, Ranks)> {
+    let mut found: HashMap<Couple, Ranks> = HashMap::new();
     for (at, parcel) in model.parcels.iter().enumerate() {
         for candidate in &parcel.candidates {
             let (pair, which) = match parcel.side {
