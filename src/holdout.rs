@@ -8,7 +8,7 @@ mod trials;
 mod without;
 
 pub use choose::{choose, errors_of_embeddings, Choice, Curve, Point};
-pub use contradiction::{contradicted, log_odds};
+pub use contradiction::contradicted;
 pub use mixture::{leave_out, placed_out_of_bag, weigh, Blend, FirstOf, LeftOutOfMixture, Member};
 pub use out_of_bag::{out_of_bag, OutOfBag, FEWEST_REPLICATES};
 pub use trials::{joint_ways, place_each, place_one, run, Asked, Placed, Questions, Trials, Way};

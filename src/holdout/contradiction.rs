@@ -42,8 +42,7 @@ pub fn contradicted(trials: &Trials, way: usize) -> Vec<bool> {
 }
 
 /// Log odds of a candidate being ahead of the counterpart, mean of both directions.
-#[must_use]
-pub fn log_odds(placed: Pair<Placed>) -> f64 {
+fn log_odds(placed: Pair<Placed>) -> f64 {
     let odds = |p: Placed| {
         let (rank, candidates) = (p.rank as f64, p.candidates as f64);
         ((rank - 0.5) / (candidates - rank + 0.5)).ln()

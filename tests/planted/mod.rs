@@ -2,6 +2,9 @@
 
 #![allow(dead_code)] // Each test program uses its own part.
 
+pub mod trials;
+pub mod world;
+
 use std::fmt::Write as _;
 use std::path::{Path, PathBuf};
 

@@ -4,16 +4,16 @@
 use super::contrast::pair_of;
 use super::ground::Ground;
 use super::nearer::nearer;
-use super::ruling::{level_of, reaches, Grounds, Ruling, Verdict};
+use super::ruling::{level_of, reaches, Grounds, Ruling, Verdict, SEARCH};
 use super::selected::Selected;
 use super::separation::{conformal, Separation};
 use super::spot::strained;
-use super::view::View;
+use super::view::{log_rank, View};
 use crate::align::{Alignment, Params};
 use crate::domain::{Pair, Side};
 use crate::embed::Method;
 use crate::evidence::{JointDistance, Kind, Material};
-use crate::holdout::{log_odds, Questions, Way};
+use crate::holdout::{Questions, Way};
 use crate::prepare::{embedded_by, Study};
 
 /// Numbers of axes about the one that was chosen.
@@ -36,8 +36,8 @@ pub struct Variation {
     pub verdict: Verdict,
 }
 
-/// Rules on a pair under every other setting. A kind that carries no distance is judged by ranks, as log
-/// odds; in joint spaces the pair's interval keeps its width.
+/// Rules on a pair under every other setting. A kind that carries no distance is judged by ranks, as mean
+/// logarithms; in joint spaces the pair's interval keeps its width.
 #[must_use]
 pub fn variations(
     ground: &Ground,
@@ -54,14 +54,7 @@ pub fn variations(
             continue;
         }
         if let Some(view) = ground.view.by(kind) {
-            all.push(by_ranks(
-                ground,
-                from,
-                pair,
-                &view,
-                Some(kind),
-                format!("{kind} alone"),
-            ));
+            all.push(by_ranks(ground, from, pair, &view, format!("{kind} alone")));
         }
     }
     if ground.weighed.blends {
@@ -72,7 +65,6 @@ pub fn variations(
                 from,
                 pair,
                 &ground.view,
-                None,
                 String::from("what ranks, by ranks"),
             ),
         );
@@ -143,34 +135,22 @@ fn by_ranks(
     from: Side,
     pair: Pair<usize>,
     view: &View,
-    alone: Option<Kind>,
     setting: String,
 ) -> Variation {
     let study = &ground.study;
     let nearer = nearer(view, pair, &ground.located.beyond, &study.candidates);
-    let own = log_odds(view.placed(pair));
+    let own = log_rank(view.placed(pair));
     let separation = Separation {
         own,
         interval: (own, own),
-        left_out: view.left_out_odds(&study.landmarks, &ground.asked),
+        left_out: view.left_out_ranks(&study.landmarks, &ground.asked),
         unrelated: nearer
             .pairs
             .iter()
-            .map(|pair| log_odds(view.placed(*pair)))
+            .map(|pair| log_rank(view.placed(*pair)))
             .collect(),
     };
-    let carried = match alone {
-        None | Some(Kind::Transport) => ground.agreement.as_ref(),
-        Some(_) => None,
-    };
-    let selected = Selected::of(
-        view,
-        &ground.lie,
-        carried,
-        pair,
-        &study.landmarks,
-        &ground.asked,
-    );
+    let selected = Selected::of(view, &ground.lie, pair, &study.landmarks, &ground.asked);
     varied(
         study,
         from,
@@ -217,14 +197,7 @@ fn in_space(
             .collect(),
         unrelated: strained(&material, space, &[], &nearer.pairs),
     };
-    let selected = Selected::of(
-        &view,
-        &ground.lie,
-        None,
-        pair,
-        &study.landmarks,
-        &ground.asked,
-    );
+    let selected = Selected::of(&view, &ground.lie, pair, &study.landmarks, &ground.asked);
     let ranks = view.placed(pair).map(|p| p.rank);
     Some(varied(
         study,
@@ -253,7 +226,7 @@ fn varied(
     let grounds = Grounds {
         is_further: reaches(p_further, level),
         is_nearer: reaches(p_nearer, level),
-        is_no_selection: reaches(p_selected, level),
+        is_no_selection: reaches(p_selected, SEARCH * level),
         is_within: separation.is_within(),
         limit_tells: separation.limit_tells(),
         enough_landmarks: reaches(least, level),

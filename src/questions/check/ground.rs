@@ -2,20 +2,17 @@
 
 use std::sync::Mutex;
 
-use ndarray::Array2;
-
 use super::selected::Lie;
 use super::separation::Usual;
 use super::spot::logarithm;
 use super::view::View;
 use crate::bootstrap::interval_of;
 use crate::domain::{LandmarkError, Landmarks, Pair};
-use crate::evidence::{Expression, Material};
+use crate::evidence::Material;
 use crate::holdout::{Asked, Compared, Questions};
 use crate::locate::{locate_by, map_without, stand_ins, strain, Located, Watched, Weighed};
 use crate::place;
 use crate::prepare::{axes_to_try, Study};
-use crate::transport::agreement;
 use crate::watch::{Interrupted, Watch};
 
 /// What ranks, what was located with it, and named pairs followed through the replicates.
@@ -34,9 +31,6 @@ pub struct Ground {
     pub view: View,
     /// Where everyone lies.
     pub lie: Lie,
-    /// How well the links of every pair agree when carried over by transport `(parcels of a, parcels of
-    /// b)`, where it takes part.
-    pub agreement: Option<Array2<f64>>,
     /// Pairs that were followed.
     pub pairs: Vec<Pair<usize>>,
     /// What became of them.
@@ -108,11 +102,6 @@ impl Ground {
             usual: usual.centre.exp(),
             limit: usual.limit.exp(),
         };
-        let agreement = weighed.bagged.as_ref().and_then(|bagged| {
-            let links = &material.compared(Expression::Scores).links;
-            let shares = bagged.shares.as_ref()?;
-            Some(agreement(links.as_ref(), shares.as_ref()))
-        });
         drop(material);
         Ok(Ground {
             open,
@@ -121,7 +110,6 @@ impl Ground {
             located,
             view,
             lie,
-            agreement,
             pairs,
             watched,
             study,

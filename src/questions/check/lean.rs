@@ -2,7 +2,7 @@
 
 use super::ground::Ground;
 use super::nearer::nearer;
-use super::ruling::{level_of, reaches, Grounds, Ruling, Verdict};
+use super::ruling::{level_of, reaches, Grounds, Ruling, Verdict, SEARCH};
 use super::separation::{conformal, Separation};
 use super::spot::strained;
 use super::view::View;
@@ -64,7 +64,7 @@ pub fn leans(ground: &Ground, from: Side, pair: Pair<usize>, ruling: &Ruling) ->
             let grounds = Grounds {
                 is_further: reaches(p_further, level),
                 is_nearer: reaches(nearer.p, level),
-                is_no_selection: reaches(ruling.selected.p(from, Some(block)), level),
+                is_no_selection: reaches(ruling.selected.p(from, Some(block)), SEARCH * level),
                 is_within: separation.is_within(),
                 limit_tells: separation.limit_tells(),
                 enough_landmarks: reaches(least, level),

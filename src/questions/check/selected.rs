@@ -45,15 +45,10 @@ impl Selected {
     /// Compares the pair with what left-out landmarks find when their counterpart is not there. Both come
     /// from one and the same ranking without the landmark, in the manner of CV+. By whatever rule a user
     /// picked the candidate, it holds no more strongly than the best one.
-    ///
-    /// Where transport takes part, the strength of a pair is how well its links agree when carried over
-    /// (`agreement`); a landmark's own pairing has no part in that. Else it is the mutual hold times how
-    /// likely the distance is.
     #[must_use]
     pub fn of(
         view: &View,
         lie: &Lie,
-        agreement: Option<&Array2<f64>>,
         pair: Pair<usize>,
         landmarks: &Landmarks,
         asked: &Asked,
@@ -67,31 +62,6 @@ impl Selected {
                 let own = &landmarks.list()[*at].parcels;
                 // Only what would pass for near is found by a search for what is near.
                 let is_near = |pair: Pair<usize>| distance(positions, pair) <= lie.limit;
-                if let Some(agreement) = agreement {
-                    let wanted = agreement[(pair.a, pair.b)];
-                    return Some(Pair::from_fn(|from: Side| {
-                        let to = from.opposite();
-                        let parcel = asked.of(*at)[from];
-                        let row = compared.row(from, parcel);
-                        compared.candidates[to]
-                            .iter()
-                            .zip(&row)
-                            .filter(|(candidate, score)| {
-                                !own[to].contains(candidate) && **score < f64::INFINITY
-                            })
-                            .map(|(&candidate, _)| match from {
-                                Side::A => Pair {
-                                    a: parcel,
-                                    b: candidate,
-                                },
-                                Side::B => Pair {
-                                    a: candidate,
-                                    b: parcel,
-                                },
-                            })
-                            .any(|other| agreement[(other.a, other.b)] >= wanted && is_near(other))
-                    }));
-                }
                 let hold = Hold::new(compared, own);
                 let wanted = hold.of(pair) * likely(distance(positions, pair), lie.usual);
                 let factor = |pair: Pair<usize>| match is_near(pair) {
@@ -107,14 +77,11 @@ impl Selected {
             a: Vec::new(),
             b: Vec::new(),
         };
-        let strength = match agreement {
-            Some(agreement) => agreement[(pair.a, pair.b)],
-            None => {
-                Hold::new(&view.full, &nobody).of(pair)
-                    * likely(distance(&lie.full, pair), lie.usual)
-            }
-        };
-        Selected { strength, matched }
+        Selected {
+            strength: Hold::new(&view.full, &nobody).of(pair)
+                * likely(distance(&lie.full, pair), lie.usual),
+            matched,
+        }
     }
 
     /// p-value for "the parcel of species `from` has no counterpart among the candidates", one block

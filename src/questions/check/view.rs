@@ -5,7 +5,7 @@ use ndarray::{Array2, ArrayView1};
 use crate::bootstrap::{Purpose, Stream};
 use crate::domain::{Landmarks, Pair, Side};
 use crate::evidence::{Evidence, Kind, Material};
-use crate::holdout::{log_odds, Asked, Compared, Placed, Questions};
+use crate::holdout::{Asked, Compared, Placed, Questions};
 use crate::locate::Seen;
 use crate::place;
 
@@ -90,19 +90,25 @@ impl View {
         Pair::from_fn(|from: Side| self.full.placed(from, pair[from], &[pair[from.opposite()]]))
     }
 
-    /// How far left-out counterparts come from first, as log odds, for each block.
+    /// How far left-out counterparts come from first, for each block (see [`log_rank`]).
     #[must_use]
-    pub fn left_out_odds(&self, landmarks: &Landmarks, asked: &Asked) -> Vec<f64> {
+    pub fn left_out_ranks(&self, landmarks: &Landmarks, asked: &Asked) -> Vec<f64> {
         self.without
             .iter()
             .map(|(at, compared)| {
                 let members = &landmarks.list()[*at].parcels;
-                log_odds(Pair::from_fn(|from: Side| {
+                log_rank(Pair::from_fn(|from: Side| {
                     compared.placed(from, asked.of(*at)[from], &members[from.opposite()])
                 }))
             })
             .collect()
     }
+}
+
+/// Mean logarithm of both ranks. Whatever the number of candidates, first is first.
+#[must_use]
+pub fn log_rank(placed: Pair<Placed>) -> f64 {
+    ((placed.a.rank as f64).ln() + (placed.b.rank as f64).ln()) / 2.0
 }
 
 /// How strongly both parcels of a pair take each other alone: the geometric mean of the share of the
