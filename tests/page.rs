@@ -10,6 +10,7 @@ mod planted;
 
 use std::collections::{BTreeMap, HashSet};
 use std::fs;
+use std::io::Write;
 use std::path::{Path, PathBuf};
 
 use serde_json::{json, Value};
@@ -936,7 +937,7 @@ fn large_pages_stay_small_and_quick() {
             told += &format!(", {what} {took:.0} ms");
             assert!(took < limit, "{told}");
         }
-        eprintln!("{told}");
+        let _ = writeln!(std::io::stderr(), "{told}");
         assert_eq!(browser.complaints(), [""; 0]);
     }
 }
