@@ -224,16 +224,19 @@ impl Account<'_> {
             shown(ruling.selected.p(side, None))
         )?;
         paragraph(text, &self.reach(pair.map(Some)))?;
-        let pass: Vec<String> = checked
-            .would_pass
-            .iter()
-            .map(|&p| self.label(to, p).to_owned())
-            .collect();
+        let pass = checked.would_pass.as_ref().map(|pass| -> Vec<String> {
+            pass.iter().map(|&p| self.label(to, p).to_owned()).collect()
+        });
         paragraph(
             text,
-            &match pass.is_empty() {
-                true => String::from("Told apart by position from every other candidate."),
-                false => format!("Not told apart by position from {}.", listed(&pass)),
+            &match pass {
+                None => String::from(
+                    "Whether other candidates would pass was not asked: too many pairs at once; check this one alone.",
+                ),
+                Some(pass) if pass.is_empty() => {
+                    String::from("Told apart by position from every other candidate.")
+                }
+                Some(pass) => format!("Not told apart by position from {}.", listed(&pass)),
             },
         )?;
         paragraph(text, &self.leans(checked))?;
@@ -531,7 +534,7 @@ fn one_json(account: &Account<'_>) -> Value {
                 "with-all-landmarks": ruling_json(r, side),
                 "without-flagged": checked.without_flagged.as_ref().map(|r| ruling_json(r, side)),
                 "beyond-landmarks": checked_beyond(answer, checked.pair),
-                "not-told-apart": names(to, &checked.would_pass),
+                "not-told-apart": checked.would_pass.as_ref().map(|pass| names(to, pass)),
                 "without-each-block": checked.leans.iter().map(|lean| json!({
                     "block": answer.told[lean.block],
                     "verdict": lean.verdict,
@@ -675,6 +678,7 @@ pub fn checked_tables(study: &Study, answers: &[Checked]) -> Vec<(&'static str, 
             let told: Vec<String> = checked
                 .would_pass
                 .iter()
+                .flatten()
                 .map(|&p| account.label(to, p).to_owned())
                 .collect();
             let leans: Vec<String> = checked
