@@ -260,22 +260,35 @@ impl Account<'_> {
     }
 
     fn leans(&self, checked: &CheckedPair) -> String {
-        let changed: Vec<String> = checked
-            .leans
-            .iter()
-            .filter(|lean| lean.verdict != checked.ruling.verdict)
-            .map(|lean| format!("{} ({})", self.answer.told[lean.block], lean.verdict))
-            .collect();
-        match changed.is_empty() {
-            true => format!(
+        let mut changed: Vec<(Verdict, Vec<String>)> = Vec::new();
+        for lean in &checked.leans {
+            if lean.verdict == checked.ruling.verdict {
+                continue;
+            }
+            let name = self.answer.told[lean.block].clone();
+            match changed
+                .iter_mut()
+                .find(|(verdict, _)| *verdict == lean.verdict)
+            {
+                Some((_, names)) => names.push(name),
+                None => changed.push((lean.verdict, vec![name])),
+            }
+        }
+        if changed.is_empty() {
+            return format!(
                 "Leans on no single landmark: the same without any one of {}.",
                 checked.leans.len()
-            ),
-            false => format!(
-                "Leans on landmarks; without one it is otherwise: {}.",
-                listed(&changed)
-            ),
+            );
         }
+        let each: Vec<String> = changed
+            .iter()
+            .map(|(verdict, names)| format!("{verdict} without {}", listed(names)))
+            .collect();
+        format!(
+            "Leans on landmarks, of {}: {}.",
+            checked.leans.len(),
+            each.join("; ")
+        )
     }
 
     fn contrast(&self, text: &mut String, contrast: &Contrast) -> Result {
@@ -301,7 +314,15 @@ impl Account<'_> {
                 100.0 * contrast.landmarks.low,
                 100.0 * contrast.landmarks.high
             ),
-        )
+        )?;
+        match contrast.share_before < 0.5 {
+            true => paragraph(
+                text,
+                "Distance and rank disagree. What ranks may use links between all parcels, the joint space only what the \
+                 landmarks span; neither decides alone.",
+            ),
+            false => Ok(()),
+        }
     }
 
     /// A paragraph for a paper, with every number.
@@ -429,13 +450,13 @@ fn why(ruling: &Ruling, level: f64, side: Side) -> String {
 fn settings(text: &mut String, checked: &CheckedPair) -> Result {
     writeln!(
         text,
-        "  {:<34}{:>11}{:>9}{:>9}{:>8}  verdict",
+        "  {:<40}{:>11}{:>9}{:>9}{:>8}  verdict",
         "under other settings", "ranks", "further", "nearer", "found"
     )?;
     for row in &checked.variations {
         writeln!(
             text,
-            "    {:<32}{:>11}{:>9}{:>9}{:>8}  {}",
+            "    {:<38}{:>11}{:>9}{:>9}{:>8}  {}",
             row.setting,
             format!("{}, {}", row.ranks.a, row.ranks.b),
             shown(row.p_further),
