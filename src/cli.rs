@@ -11,13 +11,14 @@ use std::time::Instant;
 use clap::Parser;
 use kinmark::draft::draft;
 use kinmark::error::Error;
+use kinmark::page;
 use kinmark::paint;
 use kinmark::pipeline::{self, Answered, Finished};
 use kinmark::prepare::prepare;
 use kinmark::reopen::reopen;
 use kinmark::report::{self, CAUTION};
 
-use args::{Check, Cli, Command, Holdout, Inspect, Locate, New, Paint, Rank};
+use args::{Check, Cli, Command, Holdout, Inspect, Locate, New, Paint, Rank, Report};
 use progress::Progress;
 
 /// Exit code after Ctrl-C: 128 and the number of the signal.
@@ -32,6 +33,7 @@ pub fn run() -> Result<(), Error> {
         Command::Check(options) => check(&options),
         Command::Holdout(options) => holdout(&options),
         Command::Rank(options) => rank(&options),
+        Command::Report(options) => report_of(&options),
         Command::Paint(options) => paint(options),
     }
 }
@@ -132,6 +134,16 @@ fn paint(options: Paint) -> Result<(), Error> {
     Ok(())
 }
 
+fn report_of(options: &Report) -> Result<(), Error> {
+    let written = page::write(&options.run, options.replace)?;
+    let mut text = String::new();
+    for path in &written {
+        text += &format!("{}\n", path.display());
+    }
+    say(format!("{text}\n{CAUTION}\n").as_bytes());
+    Ok(())
+}
+
 /// Writes to standard output.
 fn say(bytes: &[u8]) {
     let mut out = std::io::stdout();
@@ -151,6 +163,10 @@ fn show(finished: &Finished, quiet: bool) {
             let _ = writeln!(err, "warning: {warning}");
         }
         let _ = writeln!(err, "Tables and run record: {}", finished.folder.display());
+        let page = finished.folder.join(report::PAGE);
+        if page.exists() {
+            let _ = writeln!(err, "To look at: {}", page.display());
+        }
         let _ = err.flush();
     }
     let _ = writeln!(out, "\n{CAUTION}");

@@ -4,6 +4,7 @@ use thiserror::Error;
 
 use crate::draft::DraftError;
 use crate::input::InputError;
+use crate::page::PageError;
 use crate::paint::PaintError;
 use crate::questions::{AskError, PlanError};
 use crate::reopen::ReopenError;
@@ -25,6 +26,9 @@ pub enum Error {
     /// A run or a surface that cannot be painted.
     #[error(transparent)]
     Paint(#[from] PaintError),
+    /// A run that cannot be shown.
+    #[error(transparent)]
+    Page(#[from] PageError),
     /// A run that cannot be asked anything.
     #[error(transparent)]
     Reopen(#[from] ReopenError),
@@ -60,6 +64,7 @@ impl Error {
             | Error::Folder(_)
             | Error::Draft(_)
             | Error::Paint(_)
+            | Error::Page(_)
             | Error::Reopen(_)
             | Error::Plan(_)
             | Error::Ask(_)

@@ -33,6 +33,6 @@ pub use recognise::{
     is_binary, recognise, Form, LandmarkLooks, Looks, MatrixLooks, ParcelLooks, Pick,
 };
 pub use sides::{differ_only_by_side, without_side, SideMark};
-pub use source::{InputFile, Source};
+pub use source::{Bytes, InputFile, Source};
 pub use study_file::{read as read_study_file, SpeciesFile, StudyFile};
 pub use subjects::{read as read_subjects, Subject, SubjectFiles};

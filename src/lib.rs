@@ -9,7 +9,8 @@
 //! ([`transform`], [`affinity`]) and embeds ([`mod@embed`]) them; [`mod@locate`] aligns
 //! ([`mod@align`]), ranks ([`evidence`], [`place`]), leaves landmarks out ([`holdout`]) and
 //! bootstraps ([`bootstrap`]); [`report`] writes. [`pipeline`] runs these in order, and [`mod@paint`]
-//! puts a finished run back onto surfaces.
+//! puts a finished run back onto surfaces, and
+//! [`page`] makes it a page to look at; both read it through [`finished`].
 //!
 //! Everything found is a statistical hypothesis about homology, never a target for stimulation or
 //! surgery.
@@ -25,11 +26,13 @@ pub mod draft;
 pub mod embed;
 pub mod error;
 pub mod evidence;
+pub mod finished;
 pub mod holdout;
 pub mod input;
 pub mod inspect;
 pub mod linalg;
 pub mod locate;
+pub mod page;
 pub mod paint;
 pub mod pipeline;
 pub mod place;

@@ -5,9 +5,7 @@ mod account;
 mod fault;
 mod maps;
 mod request;
-mod run;
 mod surface;
-mod table;
 
 use std::collections::BTreeMap;
 use std::path::{Path, PathBuf};
@@ -16,11 +14,11 @@ pub use fault::{OtherParcellation, PaintError};
 pub use request::PaintRequest;
 
 use crate::domain::Side;
+use crate::finished::Run;
 use crate::input::{nearest_few, read_surface_labels};
 use crate::report::{self, CAUTION};
 use crate::warning::Warning;
 use maps::Maps;
-use run::Run;
 use surface::Surface;
 
 /// What was painted.
@@ -69,7 +67,7 @@ pub fn paint(request: &PaintRequest) -> Result<Painted, PaintError> {
     report::keep_out_of_run(&folder, &request.run)?;
     let stems = stems(&request.labels)?;
     let run = Run::read(&request.run)?;
-    let side = run.side(&request.species)?;
+    let side = side(&run, &request.species)?;
     let maps = Maps::of(&run, side, request.alignment.as_deref(), &request.parcels)?;
 
     let mut surfaces = Vec::new();
@@ -132,6 +130,21 @@ pub fn paint(request: &PaintRequest) -> Result<Painted, PaintError> {
         surfaces: painted,
         warnings,
     })
+}
+
+/// The species of a name; `a` and `b` will do where no species is called so.
+fn side(run: &Run, name: &str) -> Result<Side, PaintError> {
+    let called = |side: &Side| run.species[*side].name == name;
+    let lettered = |side: &Side| side.letter() == name;
+    Side::BOTH
+        .into_iter()
+        .find(called)
+        .or_else(|| Side::BOTH.into_iter().find(lettered))
+        .ok_or_else(|| PaintError::NoSpecies {
+            found: name.to_owned(),
+            a: run.species.a.name.clone(),
+            b: run.species.b.name.clone(),
+        })
 }
 
 /// What the names of the maps of each label file begin with.

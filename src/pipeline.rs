@@ -4,7 +4,9 @@ use std::path::{Path, PathBuf};
 use std::time::Instant;
 
 use crate::error::Error;
+use crate::finished::{Run, RunError};
 use crate::locate::locate;
+use crate::page;
 use crate::prepare::Study;
 use crate::questions::{self, CheckRequest, PlanRequest};
 use crate::reopen::Reopened;
@@ -60,13 +62,41 @@ pub fn run(
         wall_seconds: started.elapsed().as_secs_f64(),
     };
     let record = Record::new(&study, &located, wall).json();
-    let folder = folder.finish(&report::tables(&study, &located), &record)?;
+    let tables = report::tables(&study, &located);
+    let page = if study.conduct.no_report {
+        Ok(Vec::new())
+    } else {
+        page_of(folder.path(), &record, &tables)
+    };
+    // A run is not lost for want of its page.
+    let (page, fault) = match page {
+        Ok(page) => (page, None),
+        Err(error) => (Vec::new(), Some(Warning::NoPage(error.to_string()))),
+    };
+    let folder = folder.finish(&[tables, page].concat(), &record)?;
     Ok(Finished {
         summary: report::summary(&study, &located),
-        warnings: study.warnings.into_iter().chain(located.warnings).collect(),
+        warnings: study
+            .warnings
+            .into_iter()
+            .chain(located.warnings)
+            .chain(fault)
+            .collect(),
         folder,
     })
 }
+
+/// The page and the figures of a run that is not in its folder yet.
+fn page_of(
+    folder: &Path,
+    record: &[u8],
+    tables: &[NamedBytes],
+) -> Result<Vec<NamedBytes>, RunError> {
+    page::files(&Run::of_unwritten(folder, record, tables)?)
+}
+
+/// A file within a run: its name and what it holds.
+type NamedBytes = (&'static str, Vec<u8>);
 
 /// Worker threads for a study.
 fn workers(study: &Study) -> Result<rayon::ThreadPool, Error> {
@@ -115,10 +145,11 @@ pub enum Destination {
 }
 
 impl Destination {
-    /// Writes the tables; returns the folder that holds them.
+    /// Writes the tables; returns the folder that holds them. The page of a run shows them from then on.
     ///
     /// # Errors
-    /// [`Error`] where the folder does not take them; nothing that was there has then changed.
+    /// [`Error`] where the folder does not take them; nothing that was there has then changed. Where only
+    /// the page cannot be written anew, the tables are there all the same.
     pub fn write(self) -> Result<Option<PathBuf>, Error> {
         match self {
             Destination::Nowhere => Ok(None),
@@ -128,6 +159,7 @@ impl Destination {
                 replace,
             } => {
                 report::add_to_run(&folder, &tables, replace)?;
+                page::refresh(&folder)?;
                 Ok(Some(folder))
             }
             Destination::Folder {

@@ -3,6 +3,7 @@
 
 mod answers;
 mod checked;
+mod derived;
 mod finished;
 mod gifti;
 mod held_out;
@@ -16,6 +17,7 @@ mod tables;
 
 pub use answers::{add_to_run, with_earlier_rows, AnswerRecord};
 pub use checked::{checked, checked_json, checked_tables, CHECK_KEY};
+pub use derived::{sealed, write_derived, FilesError, FIGURES, PAGE};
 pub use finished::{read_record, RecordError};
 pub use gifti::{gifti, SurfaceMap};
 

@@ -157,4 +157,6 @@ pub struct Conduct {
     pub quiet: bool,
     /// Replace a finished run.
     pub replace: bool,
+    /// Write no page and no figures.
+    pub no_report: bool,
 }

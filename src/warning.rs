@@ -180,6 +180,8 @@ pub enum Warning {
         /// Parcels of the species.
         of: usize,
     },
+    /// A run whose page could not be made.
+    NoPage(String),
     /// Two landmarks that are the two sides of one area but may be left out one at a time.
     SidesNotBlocked {
         /// One.
@@ -604,6 +606,10 @@ impl fmt::Display for Warning {
                 "{species}: {} of {of} parcels of the run lie on no vertex of the label files: {}; give the files of both hemispheres in one command, or compare the labels",
                 parcels.len(),
                 listed(parcels)
+            ),
+            Warning::NoPage(why) => write!(
+                f,
+                "the run is complete but has no page: {why}"
             ),
             Warning::LeftOutUnderdetermined { axes, blocks } => write!(
                 f,

@@ -12,7 +12,7 @@ use std::path::{Path, PathBuf};
 use std::process::{Child, Command, Stdio};
 use std::time::{Duration, Instant};
 
-use common::{contents, names, program, read, record, tool, Run, Study, RUN};
+use common::{contents, delete, names, program, read, record, tool, Run, Study, RUN};
 use serde_json::{json, Value};
 use sha2::{Digest, Sha256};
 use tempfile::TempDir;
@@ -58,7 +58,12 @@ fn beside(study: &Study) -> Vec<String> {
 fn copy_folder(from: &Path, to: &Path) {
     fs::create_dir_all(to).expect("the temporary folder can be written");
     for name in names(from) {
-        fs::copy(from.join(&name), to.join(&name)).expect("the temporary folder can be written");
+        let (from, to) = (from.join(&name), to.join(&name));
+        if from.is_dir() {
+            copy_folder(&from, &to);
+        } else {
+            fs::copy(from, to).expect("the temporary folder can be written");
+        }
     }
 }
 
@@ -132,12 +137,11 @@ fn a_finished_run_is_replaced_where_that_is_asked_for() {
 #[test]
 fn foreign_files_are_left_alone() {
     type Mess = fn(&Path);
-    let messes: [(&str, Mess, &str); 7] = [
+    let messes: [(&str, Mess, &str); 8] = [
         (
             "a file in a folder without a run",
             |out| {
-                RUN.iter()
-                    .for_each(|name| fs::remove_file(out.join(name)).unwrap());
+                RUN.iter().for_each(|name| delete(&out.join(name)));
                 fs::write(out.join("thesis.txt"), "three years of work").unwrap();
             },
             "thesis.txt",
@@ -154,8 +158,13 @@ fn foreign_files_are_left_alone() {
         ),
         (
             "a folder",
-            |out| fs::create_dir(out.join("figures")).unwrap(),
-            "figures",
+            |out| fs::create_dir(out.join("drafts")).unwrap(),
+            "drafts",
+        ),
+        (
+            "a file among the figures",
+            |out| fs::write(out.join("figures/mine.svg"), "<svg/>").unwrap(),
+            "figures/mine.svg",
         ),
         (
             "tables without a record",
@@ -170,8 +179,7 @@ fn foreign_files_are_left_alone() {
         (
             "a file beside an unfinished run",
             |out| {
-                RUN.iter()
-                    .for_each(|name| fs::remove_file(out.join(name)).unwrap());
+                RUN.iter().for_each(|name| delete(&out.join(name)));
                 fs::write(out.join("unfinished.json"), "").unwrap();
                 fs::write(out.join("notes.md"), "stopped it").unwrap();
             },
@@ -624,7 +632,7 @@ fn a_full_disk_leaves_no_folder() {
 
 #[test]
 fn a_full_disk_leaves_the_finished_run() {
-    let Some(disk) = Disk::mount("a_full_disk_leaves_the_finished_run", "64k") else {
+    let Some(disk) = Disk::mount("a_full_disk_leaves_the_finished_run", "4m") else {
         return;
     };
     let (study, out) = (Study::new(), disk.path("run"));

@@ -42,6 +42,8 @@ pub enum Command {
     Holdout(Holdout),
     /// Rank all parcels by how surely they correspond, with their candidate sets
     Rank(Rank),
+    /// Write the page of a finished run, to look at in a browser, and its figures
+    Report(Report),
     /// Paint a finished run onto a species' surfaces: maps over vertices for a viewer
     Paint(Paint),
 }
@@ -67,6 +69,18 @@ pub struct New {
     /// Folder with the matrices and the landmark table; study.toml is written to it, never over
     /// another
     pub folder: PathBuf,
+}
+
+/// Options of `report`.
+#[derive(Debug, Args)]
+#[command(after_help = kinmark::report::CAUTION)]
+pub struct Report {
+    /// Folder of a finished run, as locate wrote it; gets report.html and figures/
+    pub run: PathBuf,
+
+    /// Replace a page and figures that were changed by hand; others are always written anew
+    #[arg(long)]
+    pub replace: bool,
 }
 
 /// Options of `paint`.
@@ -396,7 +410,7 @@ struct SettingOptions {
     #[arg(long)]
     replace: bool,
 
-    /// Write no report page (accepted for later versions; there is no report page yet)
+    /// Write no page and no figures (locate); kinmark report writes them later
     #[arg(long)]
     no_report: bool,
 }

@@ -41,17 +41,23 @@ impl Bytes {
                 _ => Problem::Unreadable(e.to_string()),
             })
         })?;
+        Ok(Bytes::of(path, bytes))
+    }
+
+    /// Takes bytes for those of a file.
+    #[must_use]
+    pub fn of(path: &Path, bytes: Vec<u8>) -> Bytes {
         let sha256 = Sha256::digest(&bytes)
             .iter()
             .map(|b| format!("{b:02x}"))
             .collect();
-        Ok(Bytes {
+        Bytes {
             file: InputFile {
                 path: path.to_path_buf(),
                 sha256,
             },
             bytes,
-        })
+        }
     }
 }
 

@@ -4,8 +4,9 @@ use std::path::PathBuf;
 
 use thiserror::Error;
 
-use crate::input::{InputError, Place};
-use crate::report::{MapsError, RecordError};
+use crate::finished::{hint, RunError};
+use crate::input::InputError;
+use crate::report::MapsError;
 
 /// Labels named in a message before the rest is only counted.
 const NAMED: usize = 4;
@@ -19,29 +20,9 @@ pub enum PaintError {
     /// Maps that cannot be written.
     #[error(transparent)]
     Maps(#[from] MapsError),
-    /// A folder without a finished run.
+    /// A run that cannot be read.
     #[error(transparent)]
-    Record(#[from] RecordError),
-    /// A table without a column that is needed.
-    #[error("{place}: the table lacks the column {column:?}{}; run kinmark locate again", hint(.near))]
-    NoColumn {
-        /// The file.
-        place: Box<Place>,
-        /// The column.
-        column: String,
-        /// Near names among those there are.
-        near: Vec<String>,
-    },
-    /// A cell of a table that the program did not write so.
-    #[error("{place}: expected {expected}, found {found:?}; the table was changed after its run: run kinmark locate again")]
-    Cell {
-        /// Where.
-        place: Box<Place>,
-        /// What was expected.
-        expected: String,
-        /// What came.
-        found: String,
-    },
+    Run(#[from] RunError),
     /// A species that the run does not know.
     #[error("the run has no species {found:?}; its species are {a:?} (a) and {b:?} (b)")]
     NoSpecies {
@@ -119,15 +100,6 @@ pub struct OtherParcellation {
     pub near: Option<(String, String)>,
     /// The other species, where the labels are its parcels.
     pub of_other: Option<String>,
-}
-
-/// Near spellings in words, with a blank before; empty where there are none.
-fn hint(near: &[String]) -> String {
-    if near.is_empty() {
-        return String::new();
-    }
-    let words: Vec<String> = near.iter().map(|word| format!("{word:?}")).collect();
-    format!(" (did you mean {}?)", words.join(" or "))
 }
 
 fn also(found_in: &Option<String>, near: &[String]) -> String {

@@ -1,9 +1,9 @@
 //! The maps of a species: from the tables of a run to one number for each parcel. Nothing is
 //! computed, only looked up.
 
-use super::run::{Run, Species};
 use super::PaintError;
 use crate::domain::Side;
+use crate::finished::{Run, RunError, Species};
 use crate::input::nearest_few;
 
 /// What is said of vertices without a number.
@@ -121,7 +121,7 @@ fn axes(
 }
 
 /// A column of `positions.csv`.
-fn of_positions(run: &Run, side: Side, column: &str) -> Result<Vec<f64>, PaintError> {
+fn of_positions(run: &Run, side: Side, column: &str) -> Result<Vec<f64>, RunError> {
     let at = run.positions.column(column)?;
     run.species[side]
         .rows

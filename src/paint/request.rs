@@ -3,6 +3,7 @@
 use std::path::{Path, PathBuf};
 
 use super::PaintError;
+use crate::finished::RunError;
 use crate::report::RecordError;
 
 /// What is to be painted, of which run, and where to.
@@ -38,10 +39,10 @@ impl PaintRequest {
         named(&self.run)
             .or_else(|| named(&self.run.canonicalize().ok()?))
             .ok_or_else(|| {
-                RecordError::NotARun {
+                RunError::from(RecordError::NotARun {
                     folder: self.run.clone(),
                     why: "there is no such folder".to_owned(),
-                }
+                })
                 .into()
             })
     }

@@ -3,7 +3,7 @@
 use std::collections::BTreeSet;
 
 use super::maps::ParcelMap;
-use super::run::Species;
+use crate::finished::Species;
 use crate::input::{nearest_few, SurfaceLabels};
 use crate::report::SurfaceMap;
 use crate::warning::Warning;

@@ -5,7 +5,7 @@ use std::path::{Path, PathBuf};
 use serde::Serialize;
 use serde_json::Value;
 
-use super::map_folder::{write_files, MapsError};
+use super::map_folder::{write_files, Hold, MapsError};
 use super::record::json;
 use super::tables::Table;
 use super::{Identity, Wall};
@@ -73,7 +73,7 @@ pub fn add_to_run(
     let header =
         |bytes: &[u8]| -> Vec<u8> { bytes.iter().copied().take_while(|b| *b != b'\n').collect() };
     write_files(run, &files, replace, &|there, new| {
-        header(there) == header(new)
+        Hold::of_ours(header(there) == header(new))
     })
     .map_err(|error| match error {
         MapsError::Foreign(path) => MapsError::OtherTable(path),

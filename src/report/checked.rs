@@ -224,16 +224,19 @@ impl Account<'_> {
             shown(ruling.selected.p(side, None))
         )?;
         paragraph(text, &self.reach(pair.map(Some)))?;
-        let pass: Vec<String> = checked
-            .would_pass
-            .iter()
-            .map(|&p| self.label(to, p).to_owned())
-            .collect();
+        let pass = checked.would_pass.as_ref().map(|pass| -> Vec<String> {
+            pass.iter().map(|&p| self.label(to, p).to_owned()).collect()
+        });
         paragraph(
             text,
-            &match pass.is_empty() {
-                true => String::from("Told apart by position from every other candidate."),
-                false => format!("Not told apart by position from {}.", listed(&pass)),
+            &match pass {
+                None => String::from(
+                    "Whether other candidates would pass was not asked: too many pairs at once; check this one alone.",
+                ),
+                Some(pass) if pass.is_empty() => {
+                    String::from("Told apart by position from every other candidate.")
+                }
+                Some(pass) => format!("Not told apart by position from {}.", listed(&pass)),
             },
         )?;
         paragraph(text, &self.leans(checked))?;
@@ -257,22 +260,35 @@ impl Account<'_> {
     }
 
     fn leans(&self, checked: &CheckedPair) -> String {
-        let changed: Vec<String> = checked
-            .leans
-            .iter()
-            .filter(|lean| lean.verdict != checked.ruling.verdict)
-            .map(|lean| format!("{} ({})", self.answer.told[lean.block], lean.verdict))
-            .collect();
-        match changed.is_empty() {
-            true => format!(
+        let mut changed: Vec<(Verdict, Vec<String>)> = Vec::new();
+        for lean in &checked.leans {
+            if lean.verdict == checked.ruling.verdict {
+                continue;
+            }
+            let name = self.answer.told[lean.block].clone();
+            match changed
+                .iter_mut()
+                .find(|(verdict, _)| *verdict == lean.verdict)
+            {
+                Some((_, names)) => names.push(name),
+                None => changed.push((lean.verdict, vec![name])),
+            }
+        }
+        if changed.is_empty() {
+            return format!(
                 "Leans on no single landmark: the same without any one of {}.",
                 checked.leans.len()
-            ),
-            false => format!(
-                "Leans on landmarks; without one it is otherwise: {}.",
-                listed(&changed)
-            ),
+            );
         }
+        let each: Vec<String> = changed
+            .iter()
+            .map(|(verdict, names)| format!("{verdict} without {}", listed(names)))
+            .collect();
+        format!(
+            "Leans on landmarks, of {}: {}.",
+            checked.leans.len(),
+            each.join("; ")
+        )
     }
 
     fn contrast(&self, text: &mut String, contrast: &Contrast) -> Result {
@@ -298,7 +314,15 @@ impl Account<'_> {
                 100.0 * contrast.landmarks.low,
                 100.0 * contrast.landmarks.high
             ),
-        )
+        )?;
+        match contrast.share_before < 0.5 {
+            true => paragraph(
+                text,
+                "Distance and rank disagree. What ranks may use links between all parcels, the joint space only what the \
+                 landmarks span; neither decides alone.",
+            ),
+            false => Ok(()),
+        }
     }
 
     /// A paragraph for a paper, with every number.
@@ -426,13 +450,13 @@ fn why(ruling: &Ruling, level: f64, side: Side) -> String {
 fn settings(text: &mut String, checked: &CheckedPair) -> Result {
     writeln!(
         text,
-        "  {:<34}{:>11}{:>9}{:>9}{:>8}  verdict",
+        "  {:<40}{:>11}{:>9}{:>9}{:>8}  verdict",
         "under other settings", "ranks", "further", "nearer", "found"
     )?;
     for row in &checked.variations {
         writeln!(
             text,
-            "    {:<32}{:>11}{:>9}{:>9}{:>8}  {}",
+            "    {:<38}{:>11}{:>9}{:>9}{:>8}  {}",
             row.setting,
             format!("{}, {}", row.ranks.a, row.ranks.b),
             shown(row.p_further),
@@ -531,7 +555,7 @@ fn one_json(account: &Account<'_>) -> Value {
                 "with-all-landmarks": ruling_json(r, side),
                 "without-flagged": checked.without_flagged.as_ref().map(|r| ruling_json(r, side)),
                 "beyond-landmarks": checked_beyond(answer, checked.pair),
-                "not-told-apart": names(to, &checked.would_pass),
+                "not-told-apart": checked.would_pass.as_ref().map(|pass| names(to, pass)),
                 "without-each-block": checked.leans.iter().map(|lean| json!({
                     "block": answer.told[lean.block],
                     "verdict": lean.verdict,
@@ -675,6 +699,7 @@ pub fn checked_tables(study: &Study, answers: &[Checked]) -> Vec<(&'static str, 
             let told: Vec<String> = checked
                 .would_pass
                 .iter()
+                .flatten()
                 .map(|&p| account.label(to, p).to_owned())
                 .collect();
             let leans: Vec<String> = checked

@@ -81,16 +81,40 @@ pub fn write_maps(
     files: &[(String, Vec<u8>)],
     replace: bool,
 ) -> Result<Vec<PathBuf>, MapsError> {
-    write_files(folder, files, replace, &|there, _| is_ours(there))
+    write_files(folder, files, replace, &|there, _| {
+        Hold::of_ours(is_ours(there))
+    })
 }
 
-/// Writes files, all of them complete before the first takes its place. One that is there with the
-/// same bytes stays; `is_ours(there, new)` says whether one that differs may be replaced at all.
+/// How a file that is there and differs may be replaced.
+#[derive(Debug, Clone, Copy, PartialEq, Eq)]
+pub(super) enum Hold {
+    /// Not at all: it is none of this program's.
+    Never,
+    /// If that was asked for.
+    UnlessAsked,
+    /// At any time: nothing is lost.
+    Freely,
+}
+
+impl Hold {
+    /// The rule for results: one of this program's may be replaced if that was asked for.
+    pub(super) fn of_ours(is_ours: bool) -> Hold {
+        match is_ours {
+            true => Hold::UnlessAsked,
+            false => Hold::Never,
+        }
+    }
+}
+
+/// Writes files, all of them complete before the first takes its place; names may lead into folders
+/// below. One that is there with the same bytes stays; `hold(there, new)` says how one that differs may
+/// be replaced.
 pub(super) fn write_files(
     folder: &Path,
     files: &[(String, Vec<u8>)],
     replace: bool,
-    is_ours: &dyn Fn(&[u8], &[u8]) -> bool,
+    hold: &dyn Fn(&[u8], &[u8]) -> Hold,
 ) -> Result<Vec<PathBuf>, MapsError> {
     if folder.exists() && !folder.is_dir() {
         return Err(MapsError::NotAFolder(folder.to_owned()));
@@ -101,10 +125,14 @@ pub(super) fn write_files(
         let path = folder.join(name);
         match fs::read(&path) {
             Ok(there) if there == *bytes => {}
-            Ok(there) if !is_ours(&there, bytes) => return Err(MapsError::Foreign(path)),
-            Ok(_) if !replace => return Err(MapsError::Exists(path)),
-            Ok(_) => new.push((path.clone(), bytes)),
-            Err(e) if e.kind() == io::ErrorKind::NotFound => new.push((path.clone(), bytes)),
+            Ok(there) => match hold(&there, bytes) {
+                Hold::Never => return Err(MapsError::Foreign(path)),
+                Hold::UnlessAsked if !replace => return Err(MapsError::Exists(path)),
+                Hold::UnlessAsked | Hold::Freely => new.push((path.clone(), bytes, true)),
+            },
+            Err(e) if e.kind() == io::ErrorKind::NotFound => {
+                new.push((path.clone(), bytes, replace));
+            }
             Err(_) if path.is_dir() => return Err(MapsError::Foreign(path)),
             Err(e) => return Err(on("read", &path)(e)),
         }
@@ -112,7 +140,11 @@ pub(super) fn write_files(
     }
     let made = !folder.exists();
     fs::create_dir_all(folder).map_err(on("create the folder", folder))?;
-    let placed = place(folder, &new, replace);
+    for (path, ..) in &new {
+        let below = path.parent().unwrap_or(folder);
+        fs::create_dir_all(below).map_err(on("create the folder", below))?;
+    }
+    let placed = place(folder, &new);
     if placed.is_err() && made {
         // Goes only if nothing has come into it.
         let _ = fs::remove_dir(folder);
@@ -120,15 +152,16 @@ pub(super) fn write_files(
     placed.map(|()| paths)
 }
 
-fn place(folder: &Path, files: &[(PathBuf, &Vec<u8>)], replace: bool) -> Result<(), MapsError> {
+/// Puts files in place: paths, bytes, and whether one that is there may be replaced.
+fn place(folder: &Path, files: &[(PathBuf, &Vec<u8>, bool)]) -> Result<(), MapsError> {
     let mut whole = Vec::new();
-    for (path, bytes) in files {
+    for (path, bytes, replace) in files {
         let mut file = hidden(folder).map_err(on("write into", folder))?;
         file.write_all(bytes).map_err(on("write", path))?;
         file.as_file().sync_all().map_err(on("write", path))?;
-        whole.push((path, file));
+        whole.push((path, file, *replace));
     }
-    for (path, file) in whole {
+    for (path, file, replace) in whole {
         let kept = if replace {
             file.persist(path)
         } else {

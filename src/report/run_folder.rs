@@ -10,6 +10,8 @@ use std::path::{Path, PathBuf};
 
 use thiserror::Error;
 
+use super::derived::{FIGURES, FIGURES_FOLDER, PAGE};
+
 /// The record of a finished run, the last file to be written.
 pub const RECORD: &str = "run.json";
 /// What an unfinished run says about itself.
@@ -278,7 +280,16 @@ fn state(target: &Path) -> Result<State, FolderError> {
     let mut names = Vec::new();
     for entry in fs::read_dir(target).map_err(on("list", target))? {
         let entry = entry.map_err(on("list", target))?;
-        names.push(entry.file_name().to_string_lossy().into_owned());
+        let name = entry.file_name().to_string_lossy().into_owned();
+        if name == FIGURES_FOLDER && entry.path().is_dir() {
+            // What somebody has put beside the figures is no part of the run either.
+            for below in fs::read_dir(entry.path()).map_err(on("list", target))? {
+                let below = below.map_err(on("list", target))?.file_name();
+                names.push(format!("{name}/{}", below.to_string_lossy()));
+            }
+        } else {
+            names.push(name);
+        }
     }
     names.sort();
     let has = |name: &str| names.iter().any(|n| n == name);
@@ -287,7 +298,10 @@ fn state(target: &Path) -> Result<State, FolderError> {
     } else if has(UNFINISHED) && !has(RECORD) {
         (State::Unfinished, vec![UNFINISHED])
     } else {
-        (State::Finished, [&TABLES[..], &ANSWERS[..]].concat())
+        (
+            State::Finished,
+            [&TABLES[..], &ANSWERS[..], &[PAGE], &FIGURES[..]].concat(),
+        )
     };
     let foreign = names
         .iter()
@@ -337,7 +351,10 @@ fn build(
 ) -> Result<(), FolderError> {
     fs::create_dir(folder).map_err(on("create the folder", folder))?;
     for (name, bytes) in tables {
-        write(&folder.join(name), bytes)?;
+        let path = folder.join(name);
+        let below = path.parent().unwrap_or(folder);
+        fs::create_dir_all(below).map_err(on("create the folder", below))?;
+        write(&path, bytes)?;
     }
     let record_path = folder.join(RECORD);
     let part = folder.join(".run.json.part");

@@ -198,6 +198,7 @@ impl Request {
         let conduct = Conduct {
             threads: self.threads.unwrap_or(0),
             quiet: self.quiet.unwrap_or(false),
+            no_report: self.no_report.unwrap_or(false),
             replace: self.replace.unwrap_or(false),
         };
         (settings, conduct)

@@ -13,13 +13,15 @@ use std::process::{Command, Output};
 use serde_json::Value;
 use tempfile::TempDir;
 
-/// The files a finished run consists of.
-pub const RUN: [&str; 6] = [
+/// What a finished run consists of; its figures are in a folder.
+pub const RUN: [&str; 8] = [
     "axes.csv",
     "counterparts.csv",
+    "figures",
     "landmarks.csv",
     "parcels.csv",
     "positions.csv",
+    "report.html",
     "run.json",
 ];
 /// The tables among them.
@@ -357,6 +359,15 @@ pub fn contents(folder: &Path) -> BTreeMap<PathBuf, Vec<u8>> {
         }
     }
     found
+}
+
+/// Deletes a file, or a folder with all that is in it.
+pub fn delete(path: &Path) {
+    let deleted = match path.is_dir() {
+        true => fs::remove_dir_all(path),
+        false => fs::remove_file(path),
+    };
+    deleted.expect("it is there and can be deleted");
 }
 
 /// Names of what is in a folder, in order.

@@ -242,7 +242,7 @@ fn varied(
 }
 
 /// Other candidates of `parcel` that lie as near as homologous pairs do and nearer than unrelated ones:
-/// by position they would pass too.
+/// by position they would pass too. `None` where they were not followed.
 #[must_use]
 pub fn would_pass(
     ground: &Ground,
@@ -250,26 +250,21 @@ pub fn would_pass(
     parcel: usize,
     but: usize,
     ruling: &Ruling,
-) -> Vec<usize> {
+) -> Option<Vec<usize>> {
     let level = level_of(&ground.study.settings);
-    let to = from.opposite();
-    ground.open[to]
-        .iter()
-        .copied()
-        .filter(|&other| other != but && ground.study.candidates.admit(from, parcel, other))
-        .filter(|&other| {
-            let pair = pair_of(from, parcel, other);
-            ground.upper_end(pair) <= ruling.usual.limit
-                && reaches(
-                    nearer(
-                        &ground.view,
-                        pair,
-                        &ground.located.beyond,
-                        &ground.study.candidates,
-                    )
-                    .p,
-                    level,
-                )
-        })
-        .collect()
+    let candidates = &ground.study.candidates;
+    let mut passing = Vec::new();
+    for &other in &ground.open[from.opposite()] {
+        if other == but || !candidates.admit(from, parcel, other) {
+            continue;
+        }
+        let pair = pair_of(from, parcel, other);
+        if ground.upper_end(pair)? <= ruling.usual.limit {
+            let near = nearer(&ground.view, pair, &ground.located.beyond, candidates);
+            if reaches(near.p, level) {
+                passing.push(other);
+            }
+        }
+    }
+    Some(passing)
 }

@@ -8,7 +8,6 @@ use super::lean::{leans, Lean};
 use super::ruling::{level_of, rule, Ruling, Verdict};
 use crate::align::Params;
 use crate::domain::{Pair, Side};
-use crate::evidence::Material;
 use crate::locate::{Judged, Placement, Rests, SetLevel};
 use crate::place;
 use crate::prepare::Study;
@@ -26,8 +25,9 @@ pub struct CheckedPair {
     pub ruling: Ruling,
     /// Without the landmarks that the others contradict, where there are any and enough others.
     pub without_flagged: Option<Ruling>,
-    /// Other candidates that would pass too, by position.
-    pub would_pass: Vec<usize>,
+    /// Other candidates that would pass too, by position; `None` where so many pairs are checked at once
+    /// that their candidates were not followed.
+    pub would_pass: Option<Vec<usize>>,
     /// The verdict without each block.
     pub leans: Vec<Lean>,
     /// The verdict under other settings.
@@ -135,25 +135,40 @@ pub fn check(
     Ok(answers.expect("every question belongs to a group"))
 }
 
-/// Pairs to follow: every asked parcel with every candidate.
+/// Most distances that are kept of followed pairs, over all replicates: 160 MB.
+const MOST_KEPT: usize = 20_000_000;
+
+/// Pairs to follow: every asked parcel with every candidate, or with those that are named where these are
+/// too many.
 fn followed(study: &Study, aside: &[usize], asked: &[&Question]) -> Vec<Pair<usize>> {
     let told = study.landmarks.without(aside);
     let told = told.expect("questions leave enough landmarks");
-    let material = Material::new(study.species.as_ref(), &told);
-    let open = place::open_parcels(&told, material.sizes());
-    let mut pairs = Vec::new();
-    for question in asked {
-        for &candidate in &open[question.side.opposite()] {
-            let pair = pair_of(question.side, question.parcel, candidate);
-            let is_admissible = study.candidates.admit(Side::A, pair.a, pair.b);
-            if is_admissible && !question.against.is_empty() {
-                pairs.push(pair);
-            }
-        }
+    let open = place::open_parcels(&told, study.species.as_ref().map(|s| s.parcels.len()));
+    let pairs = |all: bool| {
+        let mut pairs: Vec<Pair<usize>> = asked
+            .iter()
+            .filter(|question| !question.against.is_empty())
+            .flat_map(|question| {
+                let candidates = match all {
+                    true => &open[question.side.opposite()],
+                    false => &question.against,
+                };
+                let side = question.side;
+                candidates
+                    .iter()
+                    .map(move |&candidate| pair_of(side, question.parcel, candidate))
+            })
+            .filter(|pair| study.candidates.admit(Side::A, pair.a, pair.b))
+            .collect();
+        pairs.sort_unstable_by_key(|pair| (pair.a, pair.b));
+        pairs.dedup();
+        pairs
+    };
+    let every = pairs(true);
+    match every.len() * study.settings.replicates <= MOST_KEPT {
+        true => every,
+        false => pairs(false),
     }
-    pairs.sort_unstable_by_key(|pair| (pair.a, pair.b));
-    pairs.dedup();
-    pairs
 }
 
 fn answer(ground: &Ground, calmer: Option<&Ground>, question: &Question) -> Checked {

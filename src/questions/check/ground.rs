@@ -116,16 +116,17 @@ impl Ground {
         })
     }
 
-    /// Upper end of a followed pair's interval, as the logarithm of its distance over its strain.
+    /// Upper end of a pair's interval, as the logarithm of its distance over its strain; `None` where it
+    /// was not followed.
     #[must_use]
-    pub fn upper_end(&self, pair: Pair<usize>) -> f64 {
+    pub fn upper_end(&self, pair: Pair<usize>) -> Option<f64> {
+        let index = self.pairs.iter().position(|other| *other == pair)?;
         let material = Material::new(self.study.species.as_ref(), &self.study.landmarks);
         let space = self.located.spaces[self.located.choice.evidence].params;
         let strain = strain(&material, space, &[], &[pair])[0];
-        let index = self.index(pair);
         let all = self.watched.distances.iter();
         let all = all.map(|distances| logarithm(distances[index] / strain));
-        interval_of(all.collect()).map_or(f64::INFINITY, |(_, high)| high)
+        interval_of(all.collect()).map(|(_, high)| high)
     }
 
     /// Where a followed pair stands among the pairs.

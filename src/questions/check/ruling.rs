@@ -222,3 +222,49 @@ fn separation(
         unrelated: strained(material, space, &[], unrelated),
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    const SOUND: Grounds = Grounds {
+        is_further: false,
+        is_nearer: true,
+        is_no_selection: true,
+        is_within: true,
+        limit_tells: true,
+        enough_landmarks: true,
+    };
+
+    #[test]
+    fn conserved_wants_everything() {
+        assert_eq!(SOUND.verdict(), Verdict::Conserved);
+        let lacking: [fn(&mut Grounds); 3] = [
+            |g| g.is_nearer = false,
+            |g| g.is_no_selection = false,
+            |g| g.is_within = false,
+        ];
+        for lack in lacking {
+            let mut grounds = SOUND;
+            lack(&mut grounds);
+            assert_eq!(grounds.verdict(), Verdict::Undetermined);
+            grounds.limit_tells = false;
+            assert_eq!(grounds.verdict(), Verdict::CannotShow);
+            grounds.is_further = true;
+            assert_eq!(grounds.verdict(), Verdict::Displaced);
+        }
+    }
+
+    #[test]
+    fn of_two_accounts_the_cautious_one_counts() {
+        use Verdict::{CannotShow, Conserved, Displaced, Undetermined};
+        for both in [Conserved, Displaced, Undetermined, CannotShow] {
+            assert_eq!(both.and(both), both);
+            assert_eq!(both.and(Undetermined), Undetermined);
+            assert_eq!(Undetermined.and(both), Undetermined);
+        }
+        assert_eq!(Conserved.and(Displaced), Undetermined);
+        assert_eq!(Conserved.and(CannotShow), CannotShow);
+        assert_eq!(Displaced.and(CannotShow), Undetermined);
+    }
+}

@@ -109,3 +109,57 @@ pub fn conformal(own: f64, left_out: &[f64]) -> f64 {
 fn upper_tail_of_t(t: f64, degrees: f64) -> f64 {
     StudentsT::new(0.0, 1.0, degrees).map_or(f64::NAN, |law| law.sf(t))
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn of(own: f64, left_out: &[f64]) -> Separation {
+        let own = own.ln();
+        Separation {
+            own,
+            interval: (own, own),
+            left_out: left_out.iter().map(|x| f64::ln(*x)).collect(),
+            unrelated: vec![0.0, 1.0, 2.0, 3.0],
+        }
+    }
+
+    /// Against `scipy.stats.t.sf` and `median_abs_deviation(scale="normal")` (version 1.17.1) on the
+    /// logarithms of these numbers.
+    #[test]
+    fn the_t_test_and_the_robust_spread_are_scipy_s() {
+        let found = of(2.4, &[0.5, 0.8, 1.0, 1.1, 1.7, 0.9]);
+        assert!((found.p_by_t().unwrap() - 0.041_020_933_049_113_764).abs() < 1e-9);
+        let usual = found.usual();
+        assert!((usual.centre + 0.052_680_257_828_913_14).abs() < 1e-12);
+        // A spread below the least counts as the least; a larger one as it is.
+        assert!((usual.limit - usual.centre - WITHIN * LEAST_DEVIATION).abs() < 1e-12);
+        let wide = of(1.0, &[0.1, 0.4, 1.0, 2.5, 10.0]).usual();
+        let spread = MAD_TO_DEVIATION * f64::ln(2.5);
+        assert!((wide.limit - WITHIN * spread).abs() < 1e-12);
+    }
+
+    #[test]
+    fn one_wrong_landmark_hardly_moves_the_limit() {
+        let good = [0.5, 0.8, 1.0, 1.1, 1.7, 0.9, 1.2, 0.7];
+        let with = [&good[..], &[50.0]].concat();
+        let gap = of(1.0, &with).usual().limit - of(1.0, &good).usual().limit;
+        assert!(gap.abs() < 0.1, "{gap}");
+    }
+
+    #[test]
+    fn p_counts_those_as_far_and_the_pair() {
+        assert_eq!(conformal(3.0, &[1.0, 2.0, 3.0]), 0.5);
+        assert_eq!(conformal(4.0, &[1.0, 2.0, 3.0]), 0.25);
+        assert_eq!(conformal(0.0, &[1.0, 2.0, 3.0]), 1.0);
+    }
+
+    #[test]
+    fn a_limit_above_many_unrelated_pairs_tells_nothing() {
+        let mut found = of(1.0, &[1.0, 1.0, 1.0]);
+        found.unrelated = vec![0.0, 1.0, 1.0, 1.0];
+        assert!(found.limit_tells());
+        found.unrelated = vec![0.0, 0.0, 1.0, 1.0];
+        assert!(!found.limit_tells());
+    }
+}

@@ -209,3 +209,57 @@ fn shares_of_rank(row: ArrayView1<'_, f64>) -> Vec<f64> {
     }
     share
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use ndarray::array;
+
+    /// Two parcels of a and three of b: order from a's first 0, 2, 1; its mass .5, .3, .2.
+    fn compared() -> Compared {
+        Compared {
+            candidates: Pair {
+                a: vec![4, 7],
+                b: vec![1, 2, 3],
+            },
+            kinds: vec![(
+                Kind::Transport,
+                array![[-0.5, -0.3, -0.2], [-0.1, -0.1, -0.6]],
+            )],
+            score: array![[0.0, 0.5, 0.2], [0.3, 0.4, 0.1]],
+        }
+    }
+
+    #[test]
+    fn a_hold_is_mutual() {
+        let compared = compared();
+        let nobody = Pair {
+            a: vec![],
+            b: vec![],
+        };
+        let hold = Hold::new(&compared, &nobody);
+        // .5 of .5 + .3 + .2 there, .5 of .5 + .1 back.
+        let expected = (0.5_f64 * (0.5 / 0.6)).sqrt();
+        assert!((hold.of(Pair { a: 4, b: 1 }) - expected).abs() < 1e-12);
+        // The most is that of the best pair, and less where that one is ruled out.
+        assert!((hold.most(Side::A, 4, &|_| 1.0) - expected).abs() < 1e-12);
+        let second = hold.most(Side::A, 4, &|pair| f64::from(u8::from(pair.b != 1)));
+        assert!((second - (0.3_f64 * (0.3 / 0.4)).sqrt()).abs() < 1e-12);
+        // Own parcels count for nobody but the one that asks.
+        let own = Pair {
+            a: vec![4],
+            b: vec![1],
+        };
+        let bereft = Hold::new(&compared, &own).most(Side::A, 4, &|_| 1.0);
+        assert!((bereft - (0.6_f64 * (0.3 / 0.4)).sqrt()).abs() < 1e-12);
+    }
+
+    #[test]
+    fn the_worse_of_both_ranks_counts() {
+        let found = worse_ranks(&compared().score, &[0, 1], &[0, 2]);
+        // First of three from a's first, first of two back; third of three, second of two.
+        assert!((found[(0, 0)] - 0.5).abs() < 1e-12);
+        assert!((found[(0, 1)] - 1.0).abs() < 1e-12);
+        assert!((found[(1, 1)] - 0.5).abs() < 1e-12);
+    }
+}

@@ -2,8 +2,8 @@
 
 use std::path::Path;
 
-use super::PaintError;
-use crate::input::{nearest_few, InputError, Place, Problem, Source};
+use super::RunError;
+use crate::input::{nearest_few, Bytes, InputError, Place, Problem, Source};
 
 /// A table of a run.
 #[derive(Debug)]
@@ -24,9 +24,21 @@ impl Table {
     /// Reads a table that a run has written.
     ///
     /// # Errors
-    /// [`PaintError`] for a file that is missing or no table.
-    pub fn read(path: &Path) -> Result<Table, PaintError> {
-        let source = Source::read(path)?;
+    /// [`RunError`] for a file that is missing or no table.
+    pub fn read(path: &Path) -> Result<Table, RunError> {
+        Table::of(Source::read(path)?)
+    }
+
+    /// Takes the bytes of a table that has not been written yet for the file that it will be.
+    ///
+    /// # Errors
+    /// [`RunError`] for bytes that are no table.
+    pub fn parse(path: &Path, bytes: Vec<u8>) -> Result<Table, RunError> {
+        Table::of(Source::of(Bytes::of(path, bytes))?)
+    }
+
+    fn of(source: Source) -> Result<Table, RunError> {
+        let path = source.path();
         let unreadable = |e: csv::Error| {
             let line = e.position().map(csv::Position::line);
             let place = line.map_or_else(|| Place::file(path), |line| Place::line(path, line));
@@ -51,11 +63,13 @@ impl Table {
     }
 
     /// Names of the columns.
+    #[must_use]
     pub fn header(&self) -> &[String] {
         &self.header
     }
 
     /// The rows below the header.
+    #[must_use]
     pub fn rows(&self) -> &[Row] {
         &self.rows
     }
@@ -63,10 +77,10 @@ impl Table {
     /// Where a column stands.
     ///
     /// # Errors
-    /// [`PaintError::NoColumn`].
-    pub fn column(&self, name: &str) -> Result<usize, PaintError> {
+    /// [`RunError::NoColumn`].
+    pub fn column(&self, name: &str) -> Result<usize, RunError> {
         let at = self.header.iter().position(|column| column == name);
-        at.ok_or_else(|| PaintError::NoColumn {
+        at.ok_or_else(|| RunError::NoColumn {
             place: Box::new(Place::file(self.source.path())),
             column: name.to_owned(),
             near: nearest_few(name, self.header.iter().map(String::as_str))
@@ -77,6 +91,7 @@ impl Table {
     }
 
     /// A cell; the table is rectangular.
+    #[must_use]
     pub fn text<'r>(&self, row: &'r Row, column: usize) -> &'r str {
         row.cells.get(column).unwrap_or_default()
     }
@@ -84,8 +99,8 @@ impl Table {
     /// A cell as a number, NaN where it is empty.
     ///
     /// # Errors
-    /// [`PaintError::Cell`].
-    pub fn number(&self, row: &Row, column: usize) -> Result<f64, PaintError> {
+    /// [`RunError::Cell`].
+    pub fn number(&self, row: &Row, column: usize) -> Result<f64, RunError> {
         match self.text(row, column) {
             "" => Ok(f64::NAN),
             cell => cell
@@ -95,8 +110,9 @@ impl Table {
     }
 
     /// Says what is wrong with a cell.
-    pub fn fault(&self, row: &Row, column: usize, expected: &str) -> PaintError {
-        PaintError::Cell {
+    #[must_use]
+    pub fn fault(&self, row: &Row, column: usize, expected: &str) -> RunError {
+        RunError::Cell {
             place: Box::new(Place::line(self.source.path(), row.line).column(column + 1)),
             expected: expected.to_owned(),
             found: self.text(row, column).to_owned(),
