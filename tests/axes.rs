@@ -1,8 +1,10 @@
 //! Which joint axes are told from noise, by simulation. Each test says how many trials it runs and by
 //! how much it may miss; no source outside the project but the definition of a valid test.
 
+mod common;
 mod planted;
 
+use common::Tables;
 use kinmark::align::{Alignment, PerAlignment};
 use kinmark::locate::{locate, Located};
 use kinmark::prepare::prepare;
@@ -163,4 +165,43 @@ fn a_shared_axis_replicates_and_those_beside_it_do_not() {
             );
         }
     }
+}
+
+/// The table follows the documented rule, and the summary names the axes of the table.
+#[test]
+fn the_summary_names_the_axes_that_replicate() {
+    let study = common::Study::demo();
+    let run = study.run(&["--evidence", "canonical"]).succeeded();
+    let tables = Tables::of(&study.out());
+    let mut named = Vec::new();
+    for (alignment, word) in [("procrustes", "Procrustes"), ("canonical", "canonical")] {
+        let rows = tables.rows("axes.csv");
+        let axes: Vec<_> = rows
+            .iter()
+            .filter(|r| r["alignment"] == alignment)
+            .collect();
+        let mut found = Vec::new();
+        for row in &axes {
+            let value = |column: &str| row[column].parse::<f64>().unwrap();
+            let (p, reliability) = (value("p"), value("reliability"));
+            assert!((0.005..=1.0).contains(&p) && (0.0..=1.0).contains(&reliability));
+            let holds = value("correlation_left_out") > 0.0 && p <= 0.1 && reliability >= 0.7;
+            assert_eq!(row["replicates"], holds.to_string(), "{row:?}");
+            if holds {
+                found.push(row["axis"].as_str());
+            }
+        }
+        assert!(!found.is_empty() && found.len() < axes.len(), "{alignment}");
+        named.push(format!(
+            "{word} {} of {} ({})",
+            found.len(),
+            axes.len(),
+            found.join(", ")
+        ));
+    }
+    let says = format!(
+        "Axes that replicate: {}; the others are noise",
+        named.join(", ")
+    );
+    assert!(run.stdout.contains(&says), "{says:?} not in {}", run.stdout);
 }

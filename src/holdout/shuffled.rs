@@ -66,3 +66,61 @@ pub fn shuffled(
     }
     None
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::bootstrap::Purpose;
+    use crate::domain::{Hemisphere, Seed, Share};
+
+    fn landmarks(blocks: &[usize]) -> Landmarks {
+        let list = blocks.iter().enumerate().map(|(at, &block)| Landmark {
+            name: at.to_string(),
+            parcels: Pair {
+                a: vec![at],
+                b: vec![at],
+            },
+            weight: Share::ALL,
+            block,
+            basis: None,
+        });
+        let most = blocks.iter().max().unwrap();
+        let names = (0..=*most).map(|block| block.to_string());
+        Landmarks::new(list.collect(), names.collect()).unwrap()
+    }
+
+    fn partners(blocks: &[usize], candidates: &Candidates, draw: u64) -> Option<Vec<usize>> {
+        let mut chance = Stream::new(Seed(1), Purpose::PermutedPairs, draw);
+        let found = shuffled(&landmarks(blocks), candidates, &mut chance)?;
+        Some(found.list().iter().map(|l| l.parcels.b[0]).collect())
+    }
+
+    #[test]
+    fn blocks_change_partners_as_a_whole() {
+        let mut seen = std::collections::BTreeMap::new();
+        for draw in 0..600 {
+            let found = partners(&[0, 0, 1, 1, 2, 3, 4], &Candidates::everywhere(), draw).unwrap();
+            assert!(matches!(found[..4], [0, 1, 2, 3] | [2, 3, 0, 1]));
+            *seen.entry(found).or_insert(0_u32) += 1;
+        }
+        // Two orders of the pairs and six of the single ones, alike likely: 50 each, give or take 5
+        // standard deviations of a binomial.
+        assert_eq!(seen.len(), 12);
+        let spread = 5.0 * (600.0_f64 / 12.0 * 11.0 / 12.0).sqrt();
+        assert!(seen.values().all(|&n| (f64::from(n) - 50.0).abs() < spread));
+    }
+
+    #[test]
+    fn sides_are_kept_where_they_must_be() {
+        use Hemisphere::{Left, Right};
+        let sides = || vec![Some(Left), Some(Left), Some(Right), Some(Right)];
+        let candidates = Candidates::same_side(Pair {
+            a: sides(),
+            b: sides(),
+        });
+        for draw in 0..50 {
+            let found = partners(&[0, 1, 2, 3], &candidates, draw).unwrap();
+            assert!(found[..2].iter().all(|b| *b < 2), "{found:?}");
+        }
+    }
+}

@@ -66,8 +66,12 @@ pub fn left_out(
 }
 
 /// Per axis of either joint space, on as many axes as landmarks chose, the share of pairings, the true
-/// one counted among them, whose left-out correlation on the axis of the same number is as high; `None`
-/// where that of the true one is undefined, or no other pairing is admissible.
+/// one counted among them, that have an axis with a left-out correlation as high; `None` where that of
+/// the true one is undefined, or no other pairing is admissible.
+///
+/// The highest over axes, not the axis of the same number (Westfall & Young 1993, Resampling-Based
+/// Multiple Testing, Wiley): what comes first among the axes beside a shared one behaves as the first
+/// does where nothing is shared, whatever its number.
 ///
 /// # Errors
 /// [`Interrupted`] where the watch says so.
@@ -77,7 +81,7 @@ pub fn p_values(
     spaces: &PerAlignment<Space>,
     watch: &dyn Watch,
 ) -> Result<PerAlignment<Vec<Option<f64>>>, Interrupted> {
-    let found: Vec<Option<PerAlignment<Vec<Option<f64>>>>> = (0..PERMUTATIONS)
+    let found: Vec<Option<PerAlignment<f64>>> = (0..PERMUTATIONS)
         .into_par_iter()
         .map(|index| {
             if watch.interrupted() {
@@ -89,26 +93,28 @@ pub fn p_values(
             let material = Material::new(material.species, &landmarks);
             Some(PerAlignment::from_fn(|alignment| {
                 let space = &spaces[alignment];
-                left_out(&material, &space.moments, space.params, &asked)
+                let found = left_out(&material, &space.moments, space.params, &asked);
+                // A pairing that cannot be told is no reason to believe in an axis.
+                let highest = found.into_iter().flatten().max_by(f64::total_cmp);
+                highest.unwrap_or(f64::INFINITY)
             }))
         })
         .collect();
     if watch.interrupted() {
         return Err(Interrupted);
     }
-    let found: Vec<PerAlignment<Vec<Option<f64>>>> = found.into_iter().flatten().collect();
+    let found: Vec<PerAlignment<f64>> = found.into_iter().flatten().collect();
     Ok(PerAlignment::from_fn(|alignment| {
-        let p = |(axis, observed): (usize, &Option<f64>)| {
+        let p = |observed: &Option<f64>| {
             let observed = observed.filter(|_| !found.is_empty())?;
-            // Where a permuted pairing cannot be told, that is no reason to believe in the axis.
             let as_high = found
                 .iter()
-                .filter(|found| found[alignment][axis].is_none_or(|r| r >= observed - TIE))
+                .filter(|highest| highest[alignment] >= observed - TIE)
                 .count();
             Some((1.0 + as_high as f64) / (1.0 + found.len() as f64))
         };
         let observed = spaces[alignment].correlations_left_out.iter();
-        observed.enumerate().map(p).collect()
+        observed.map(p).collect()
     }))
 }
 

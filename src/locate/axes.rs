@@ -31,7 +31,8 @@ pub struct Space {
     /// The same with every landmark placed by a fit that does without it; `None` where a side does
     /// not vary.
     pub correlations_left_out: Vec<Option<f64>>,
-    /// p-value of the latter over permuted pairings of the landmarks; `None` where it is undefined.
+    /// p-value of the latter against the highest of all axes under permuted pairings of the landmarks;
+    /// `None` where it is undefined.
     pub p: Vec<Option<f64>>,
     /// Mean, over replicates that draw landmarks again, of the absolute correlation of all parcels'
     /// coordinates with those on the replicate's axis of the same number.

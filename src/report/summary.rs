@@ -211,17 +211,17 @@ fn axes(text: &mut String, located: &Located) -> Result {
             .map(|axis| (axis + 1).to_string())
             .collect();
         let which = match found.len() {
-            0 => "none".to_owned(),
-            _ => found.join(", "),
+            0 => String::new(),
+            _ => format!(" ({})", found.join(", ")),
         };
-        format!("{} {which} (of {all})", alignment.in_words())
+        format!("{} {} of {all}{which}", alignment.in_words(), found.len())
     });
     writeln!(
         text,
-        "  Axes that replicate (left-out p at most {REPLICATES_UP_TO_P}, reliability at least \
-         {REPLICATES_FROM_RELIABILITY}): {};\n  \
-         the others are noise, not to be interpreted.\n",
-        each.join("; ")
+        "  Axes that replicate: {}; the others are noise,\n  \
+         not to be interpreted: landmarks do not agree on them when left out (or p above {REPLICATES_UP_TO_P}),\n  \
+         or reliability is below {REPLICATES_FROM_RELIABILITY}.\n",
+        each.join(", ")
     )
 }
 
