@@ -59,10 +59,10 @@ fn at_most_a_tenth(hits: u32, all: u32) -> bool {
     f64::from(hits) <= 0.1 * all + 4.0 * (0.09 * all).sqrt()
 }
 
-/// Unrelated species, 12 landmarks of 40 parcels: on the first axis p is at most .1 in 10 % of trials,
-/// within four standard errors, with three axes fixed (100 trials; either way, since 199 permutations
-/// make the level exact) and with axes chosen by landmarks (100), and axes and embedding (60; these two
-/// not above). No axis is said to replicate more often than that.
+/// Unrelated species, 12 landmarks of 40 parcels: on the first axis p is at most .1 in no more than 10 %
+/// of trials, by four standard errors, with three axes fixed (100 trials), with axes chosen by landmarks
+/// (100), and with axes and embedding chosen (60). No axis is said to replicate more often than that.
+/// With axes fixed it happens at least once, so that the test could fail.
 #[test]
 fn axes_of_unrelated_species_are_noise() {
     let plan = Plan {
@@ -82,7 +82,6 @@ fn axes_of_unrelated_species_are_noise() {
         for trial in 0..trials {
             count(&run(&plan.draw(1000 + trial), settings), &mut counts);
         }
-        println!("{settings:?} {counts:?}");
         for alignment in Alignment::BOTH {
             let first = counts[alignment][0];
             assert!(
@@ -102,9 +101,10 @@ fn axes_of_unrelated_species_are_noise() {
     }
 }
 
-/// Spread of the one latent dimension that both species share, and of the two that they do not. Much
-/// more of the former, and further axes of a diffusion map are waves along it, which are shared too.
-const SHARED: f64 = 1.8;
+/// Spread of the one latent dimension that both species share, and of the two that they do not. With
+/// normal coordinates the second wave along a dimension decays as slowly as the first of one narrower
+/// by the root of 2, so that with much more of the former the next axis of a diffusion map is shared too.
+const SHARED: f64 = 1.4;
 const OWN: f64 = 1.2;
 
 /// Two species of 60 parcels in three latent dimensions, of which the first is the same for parcel i
@@ -152,10 +152,6 @@ fn a_shared_axis_replicates_and_those_beside_it_do_not() {
         let [first, others @ ..] = counts[alignment];
         reliabilities[alignment].sort_by(f64::total_cmp);
         let median = reliabilities[alignment][30];
-        println!(
-            "{alignment} {first:?} {others:?} {median} {:?}",
-            &reliabilities[alignment][..10]
-        );
         assert!(first.replicates >= 54, "{alignment}: {first:?}");
         assert!(median > 0.9, "{alignment}: reliability {median}");
         for axis in others {
