@@ -37,7 +37,7 @@ use crate::align::{Alignment, Params, PerAlignment};
 use crate::bootstrap::interval;
 use crate::domain::Pair;
 use crate::evidence::{Kind, Material};
-use crate::holdout::{Asked, Choice, Compared, Curve, Member, Questions};
+use crate::holdout::{contradicted, Asked, Choice, Compared, Curve, Member, Questions};
 use crate::place;
 use crate::prepare::Study;
 use crate::warning::Warning;
@@ -91,6 +91,9 @@ pub struct Placement {
     pub counterparts: Vec<Counterpart>,
     /// All candidates in its set, best first, listed or not.
     pub candidate_set: Vec<usize>,
+    /// The same if sets are calibrated without the landmarks that the others contradict, where there are
+    /// any.
+    pub calm_set: Option<Vec<usize>>,
     /// How many candidates there are.
     pub candidates: usize,
     /// Share of the parcel's mass on its first candidate, of that on all candidates.
@@ -185,7 +188,8 @@ pub fn locate_by(
     let settled = PerAlignment::from_fn(|alignment| {
         params(alignment, choice.axes[alignment], choice.embedding)
     });
-    let calibration = Calibration::new(&study.landmarks, questions, settings.level);
+    let flags = contradicted(&weighed.trials, choice.way);
+    let calibration = Calibration::new(&study.landmarks, questions, flags, settings.level);
     let (left_out, firsts) = weighed.leave_out(material, questions, &|at, compared| {
         calibration.look(at, compared);
         also(at, compared);

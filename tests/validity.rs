@@ -5,25 +5,15 @@
 mod planted;
 
 use kinmark::locate::{locate, Located};
-use kinmark::prepare::{prepare, Study};
+use kinmark::prepare::Study;
 use kinmark::questions::{hold_out, PlanRequest};
-use kinmark::settings::Request;
 use kinmark::watch::Unwatched;
 use ndarray::Array2;
-use planted::trials::{judge, unit, Count, TRUTHS};
+use planted::trials::{judge, study, unit, Count, TRUTHS};
 use planted::world::World;
 use planted::{label, Plan, Planted};
 use rand::Rng;
 use rand_distr::{Distribution, StandardNormal};
-
-fn study(planted: &Planted, settings: &[(&str, &str)]) -> Study {
-    let folder = tempfile::tempdir().unwrap();
-    let mut asked = Request::default();
-    for (key, value) in settings {
-        asked.set(key, value).unwrap();
-    }
-    prepare(&planted.write(folder.path()), asked).unwrap()
-}
 
 /// Mean of independent trials and its standard error.
 fn mean_and_error(trials: &[f64]) -> (f64, f64) {

@@ -74,7 +74,15 @@ pub struct Calibration<'c> {
     level: SetLevel,
     /// The landmark that stands for each block.
     stands: Vec<usize>,
-    counts: Mutex<Counts>,
+    /// Whether the others contradict each landmark.
+    contradicted: Vec<bool>,
+    counts: Mutex<Both>,
+}
+
+/// Counts over all landmarks, and over those that are not contradicted.
+struct Both {
+    all: Counts,
+    calm: Counts,
 }
 
 /// The landmark that stands for each block where blocks are counted, drawn by the seed: two sides of
@@ -100,21 +108,48 @@ struct Counts {
     at_least: Pair<Vec<u32>>,
 }
 
+impl Counts {
+    fn none(open: &Pair<usize>) -> Counts {
+        Counts {
+            smaller: Pair {
+                a: Array2::zeros((open.a, open.b)),
+                b: Array2::zeros((open.b, open.a)),
+            },
+            at_least: open.map(|n| vec![0; n]),
+        }
+    }
+
+    /// Adds what one landmark says, seen from one species.
+    fn add(&mut self, from: Side, smaller: &[Vec<bool>], at_least: &[bool]) {
+        for (mut counted, row) in self.smaller[from].rows_mut().into_iter().zip(smaller) {
+            for (count, is_smaller) in counted.iter_mut().zip(row) {
+                *count += u32::from(*is_smaller);
+            }
+        }
+        for (count, is_more) in self.at_least[from].iter_mut().zip(at_least) {
+            *count += u32::from(*is_more);
+        }
+    }
+}
+
 impl<'c> Calibration<'c> {
-    /// Nothing yet.
-    pub fn new(landmarks: &'c Landmarks, questions: &Questions<'c>, level: f64) -> Calibration<'c> {
+    /// Nothing yet. `contradicted` tells of each landmark whether the others contradict it.
+    pub fn new(
+        landmarks: &'c Landmarks,
+        questions: &Questions<'c>,
+        contradicted: Vec<bool>,
+        level: f64,
+    ) -> Calibration<'c> {
         let open = questions.open.as_ref().map(Vec::len);
         Calibration {
             questions: *questions,
             landmarks,
             level: SetLevel::new(level, landmarks.blocks()),
             stands: stand_ins(landmarks, questions.seed),
-            counts: Mutex::new(Counts {
-                smaller: Pair {
-                    a: Array2::zeros((open.a, open.b)),
-                    b: Array2::zeros((open.b, open.a)),
-                },
-                at_least: open.map(|n| vec![0; n]),
+            contradicted,
+            counts: Mutex::new(Both {
+                all: Counts::none(&open),
+                calm: Counts::none(&open),
             }),
         }
     }
@@ -160,26 +195,26 @@ impl<'c> Calibration<'c> {
                 at_least.push(lone >= seen.first_share(row, |c| !is_own[c]));
             }
             let mut counts = self.counts.lock().expect("no one panics while counting");
-            for (mut counted, row) in counts.smaller[from].rows_mut().into_iter().zip(&smaller) {
-                for (count, is_smaller) in counted.iter_mut().zip(row) {
-                    *count += u32::from(*is_smaller);
-                }
-            }
-            for (count, is_more) in counts.at_least[from].iter_mut().zip(&at_least) {
-                *count += u32::from(*is_more);
+            counts.all.add(from, &smaller, &at_least);
+            if !self.contradicted[at] {
+                counts.calm.add(from, &smaller, &at_least);
             }
         }
     }
 
     /// What was calibrated.
     pub fn finish(self) -> CandidateSets {
-        let counts = self
+        let Both { all, calm } = self
             .counts
             .into_inner()
             .expect("no one panics while counting");
+        let flagged = self.stands.iter().filter(|at| self.contradicted[**at]);
+        let (flagged, blocks) = (flagged.count(), self.stands.len());
         CandidateSets {
             level: self.level,
-            counts,
+            counts: all,
+            calm: (flagged > 0 && flagged < blocks)
+                .then(|| (SetLevel::new(self.level.asked, blocks - flagged), calm)),
         }
     }
 }
@@ -189,6 +224,8 @@ pub struct CandidateSets {
     /// Their level.
     pub level: SetLevel,
     counts: Counts,
+    /// The same by the landmarks that are not contradicted, where some are.
+    calm: Option<(SetLevel, Counts)>,
 }
 
 impl CandidateSets {
@@ -196,6 +233,19 @@ impl CandidateSets {
     /// candidate always is (`is_first`): that only adds to coverage.
     pub fn holds(&self, side: Side, parcel: usize, candidate: usize, is_first: bool) -> bool {
         is_first || (self.counts.smaller[side][(parcel, candidate)] as usize) < self.level.needed
+    }
+
+    /// The same by the landmarks that the others do not contradict; `None` where none is contradicted.
+    pub fn holds_calmly(
+        &self,
+        side: Side,
+        parcel: usize,
+        candidate: usize,
+        is_first: bool,
+    ) -> Option<bool> {
+        let (level, counts) = self.calm.as_ref()?;
+        let smaller = counts.smaller[side][(parcel, candidate)] as usize;
+        Some(is_first || smaller < level.needed)
     }
 
     /// How rarely left-out landmarks whose counterpart is taken away have a best candidate that takes

@@ -258,6 +258,12 @@ impl Ranking {
                 .filter(|(place, &c)| sets.holds(side, at, c, *place == 0))
                 .map(|(_, &c)| c)
                 .collect();
+            let calmly = |(place, &candidate): (usize, &usize)| {
+                let holds = sets.holds_calmly(side, at, candidate, place == 0)?;
+                Some((candidate, holds))
+            };
+            let calm: Option<Vec<(usize, bool)>> =
+                admissible.iter().enumerate().map(calmly).collect();
             let mut is_in_set = vec![false; row.len()];
             in_set.iter().for_each(|&c| is_in_set[c] = true);
             let counterparts = listed
@@ -290,6 +296,10 @@ impl Ranking {
                 parcel,
                 counterparts,
                 candidate_set: in_set.iter().map(|&c| self.open[other][c]).collect(),
+                calm_set: calm.map(|calm| {
+                    let held = calm.into_iter().filter(|(_, holds)| *holds);
+                    held.map(|(c, _)| self.open[other][c]).collect()
+                }),
                 candidates: admissible.len(),
                 strength: seen.first_share(at, |_| true),
                 p_of_none: sets.p_of_none(side, at),

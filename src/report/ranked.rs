@@ -64,7 +64,7 @@ enum Section {
 impl Section {
     fn of(located: &Located, side: Side, placement: &Placement) -> Section {
         let judged = located.judgements[side][placement.parcel];
-        let is_wide = placement.candidate_set.len() as f64 > WIDE * placement.candidates as f64;
+        let is_wide = settled_set(placement).len() as f64 > WIDE * placement.candidates as f64;
         let is_doubtful = judged.doubt.is_some_and(|doubt| doubt.p <= DOUBTFUL);
         match (judged.too_little_data, is_wide || is_doubtful) {
             (true, _) => Section::TooLittleData,
@@ -72,6 +72,13 @@ impl Section {
             (false, false) => Section::Best,
         }
     }
+}
+
+/// The set that says whether a parcel is settled: the one calibrated without contradicted landmarks, where
+/// there are any, since with a dozen landmarks a single wrong one lets nearly everything in.
+fn settled_set(placement: &Placement) -> &[usize] {
+    let calm = placement.calm_set.as_ref();
+    calm.unwrap_or(&placement.candidate_set)
 }
 
 /// The account for people.
@@ -108,15 +115,19 @@ fn heading(text: &mut String, study: &Study, located: &Located) -> Result {
             (1.0 / (1.0 - level.asked) - 1.0 - 1e-9).ceil()
         )?;
     }
-    let contradicted = located
+    let contradicted: Vec<&str> = located
         .left_out
         .iter()
-        .filter(|l| l.contradicted.is_some())
-        .count();
-    if contradicted > 0 {
+        .zip(study.landmarks.list())
+        .filter(|(l, _)| l.contradicted.is_some())
+        .map(|(_, landmark)| landmark.name.as_str())
+        .collect();
+    if !contradicted.is_empty() {
         writeln!(
             text,
-            "  {contradicted} contradicted landmarks are among those that calibrate, which can only widen the sets."
+            "  Sets are shown as calibrated without {}, which the others contradict; in brackets with all\n  \
+             landmarks, as it must be if they are right after all.",
+            contradicted.join(", ")
         )?;
     }
     let least = 1.0 / (level.blocks + 1) as f64;
@@ -202,7 +213,7 @@ fn header(text: &mut String) -> Result {
 fn line(text: &mut String, study: &Study, located: &Located, side: Side, row: &Row<'_>) -> Result {
     let labels = study.species[side.opposite()].parcels.labels();
     let own = study.species[side].parcels.labels();
-    let set = &row.placement.candidate_set;
+    let set = settled_set(row.placement);
     let more: Vec<&str> = set
         .iter()
         .filter(|&&p| p != row.first.parcel)
@@ -228,7 +239,10 @@ fn line(text: &mut String, study: &Study, located: &Located, side: Side, row: &R
         row.first.support,
         if row.first.mutual { "yes" } else { "no" },
         p_value(row.q, 0.1),
-        set.len()
+        match row.placement.calm_set {
+            Some(_) => format!("{} ({})", set.len(), row.placement.candidate_set.len()),
+            None => set.len().to_string(),
+        }
     )
 }
 
@@ -261,6 +275,8 @@ pub fn ranked_tables(study: &Study, located: &Located) -> Vec<(&'static str, Vec
         "p",
         "q",
         "beyond_landmarks",
+        "candidate_set_uncontradicted",
+        "set_size_uncontradicted",
     ]);
     for side in Side::BOTH {
         let (own, other) = (
@@ -274,6 +290,9 @@ pub fn ranked_tables(study: &Study, located: &Located) -> Vec<(&'static str, Vec
                 .iter()
                 .map(|&p| other.labels()[p].as_str())
                 .collect();
+            let calm = row.placement.calm_set.as_ref().map(|set| -> Vec<&str> {
+                set.iter().map(|&p| other.labels()[p].as_str()).collect()
+            });
             let (low, high) = row.first.rank_interval;
             table.row([
                 own.species().to_owned(),
@@ -293,6 +312,9 @@ pub fn ranked_tables(study: &Study, located: &Located) -> Vec<(&'static str, Vec
                 row.placement.p_of_none.to_string(),
                 row.q.to_string(),
                 located.beyond[side][row.placement.parcel].to_string(),
+                calm.as_ref()
+                    .map_or_else(String::new, |set| set.join(PARCEL_SEPARATOR)),
+                calm.map_or_else(String::new, |set| set.len().to_string()),
             ]);
         }
     }

@@ -63,7 +63,8 @@ impl Count {
     }
 }
 
-fn study(planted: &Planted, settings: &[(&str, &str)]) -> Study {
+/// A planted study, prepared under some settings.
+pub fn study(planted: &Planted, settings: &[(&str, &str)]) -> Study {
     let folder = tempfile::tempdir().unwrap();
     let mut asked = Request::default();
     for (key, value) in settings {
