@@ -16,10 +16,10 @@ use crate::locate::{gaps, strain, LeftOut};
 use crate::settings::Settings;
 
 /// Level of the test against a search, as a multiple of that of the others. What it lets through must
-/// still lie as near as homologous pairs: in the simulations of docs/validity.md both together call few
-/// parcels without counterpart conserved, while at the level itself a dozen landmarks could never do
-/// with one that happens to find something good.
-pub const SEARCH: f64 = 2.0;
+/// still lie as near as homologous pairs, so that both together let through less. At twice the level
+/// 13 % of parcels without counterpart were called conserved at medium noise (docs/validity.md); at the
+/// level itself sixteen landmarks could never do with a single one that happens to find something good.
+pub const SEARCH: f64 = 1.5;
 /// Room for rounding in the comparison of a p-value with a level.
 const ROUNDING: f64 = 1e-9;
 
