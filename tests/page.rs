@@ -692,17 +692,13 @@ fn the_page_shows_what_the_tables_hold() {
         }
         assert_eq!(cells[5], fixed(&row["correlation_in_sample"], 2));
         assert_eq!(cells[6], fixed(&row["correlation_left_out"], 2));
-        let left_out: f64 = row["correlation_left_out"].parse().unwrap();
-        let verdict = if left_out >= 0.6 {
-            "replicates"
-        } else if left_out > 0.0 {
-            "uncertain"
-        } else {
-            "does not replicate"
+        assert_eq!(cells[7], fixed(&row["p"], 3));
+        assert_eq!(cells[8], fixed(&row["reliability"], 2));
+        let verdict = match row["replicates"].as_str() {
+            "true" => "replicates",
+            _ => "noise",
         };
-        assert!(
-            cells[7].ends_with(verdict) && !(verdict == "replicates" && cells[7].contains("not"))
-        );
+        assert!(cells[9].ends_with(verdict), "{cells:?}");
     }
 
     // The record.

@@ -12,9 +12,6 @@ use crate::finished::{Row, Run, RunError, Table};
 pub const STABLE: f64 = 0.5;
 /// p-value of doubt from which a parcel is marked, as in the sections of `rank`.
 pub const DOUBTFUL: f64 = 0.1;
-/// Left-out correlation from which an axis is said to replicate: pairings shuffled at random reached it
-/// on the leading axis (docs/method.md, section 8).
-pub const REPLICATES: f64 = 0.6;
 /// Candidates of a parcel that the page keeps beside those of its candidate set.
 pub const KEPT: usize = 10;
 
@@ -135,19 +132,24 @@ pub struct Axis {
     pub in_sample: f64,
     /// The same, each landmark left out.
     pub left_out: Option<f64>,
+    /// p-value against permuted pairings.
+    pub p: Option<f64>,
+    /// Mean correlation with the axis of a replicate.
+    pub reliability: Option<f64>,
+    /// Whether it is told from noise; `None` in runs of versions that did not say.
+    pub replicates: Option<bool>,
     /// Parcels at the low end, then at the high end, outermost first; as indices.
     pub ends: Pair<[Vec<usize>; 2]>,
 }
 
 impl Axis {
-    /// Whether landmarks that were left out agree on it.
+    /// Whether it is told from noise, in words.
     #[must_use]
     pub fn verdict(&self) -> &'static str {
-        match self.left_out {
+        match self.replicates {
             None => "cannot be said",
-            Some(r) if r >= REPLICATES => "replicates",
-            Some(r) if r > 0.0 => "uncertain",
-            Some(_) => "does not replicate",
+            Some(true) => "replicates",
+            Some(false) => "noise",
         }
     }
 }
@@ -582,6 +584,11 @@ fn spaces(run: &Run, directory: &Directory<'_>) -> Result<Vec<Space>, RunError> 
             .filter_map(|label| directory.find(side, label))
             .collect()
     };
+    // Columns that earlier versions did not write.
+    let added = |name: &str, row: &Row| {
+        let at = table.column(name).ok()?;
+        table.number(row, at).ok()
+    };
     let mut spaces: Vec<Space> = Vec::new();
     for row in columns.rows() {
         let name = columns.text(row, 0);
@@ -611,6 +618,12 @@ fn spaces(run: &Run, directory: &Directory<'_>) -> Result<Vec<Space>, RunError> 
             },
             in_sample: columns.number(row, 3)?,
             left_out: columns.optional(row, 4)?,
+            p: added("p", row),
+            reliability: added("reliability", row),
+            replicates: match table.column("replicates") {
+                Ok(at) => Some(table.text(row, at) == "true"),
+                Err(_) => None,
+            },
             ends: Pair::from_fn(|side| ["low", "high"].map(|end| ends(row, side, end))),
         });
     }

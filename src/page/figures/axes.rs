@@ -1,9 +1,9 @@
 //! What each axis is worth: the correlation of landmarks in sample, and left out.
 
 use super::scale::Scale;
-use super::svg::{n, Anchor, Drawing, ALARM, FAINT, INK, MUTED};
+use super::svg::{n, Anchor, Drawing, FAINT, INK, MUTED};
 use super::{Figure, Layout};
-use crate::page::model::{Model, Space, REPLICATES};
+use crate::page::model::{Model, Space};
 
 /// Height of a row.
 const ROW: f64 = 21.0;
@@ -32,7 +32,7 @@ pub fn figure(model: &Model) -> Figure {
         name: "axes",
         title: "Agreement of landmarks on each axis, in sample and left out".to_owned(),
         description: format!(
-            "Correlations of the landmarks on each joint axis, in sample (rings) and left out (squares). {}.",
+            "Correlations of the landmarks on each joint axis, in sample (rings) and left out (squares, filled where the axis replicates). {}.",
             held.join(", ")
         ),
         wide: Some(draw(model, Layout::Wide)),
@@ -65,15 +65,10 @@ fn draw(model: &Model, layout: Layout) -> Drawing {
 fn legend(d: &mut Drawing) {
     ring(d, (6.0, 35.5));
     d.text((16.0, 40.0), Anchor::Start, "in sample", &[]);
-    square(d, (102.0, 35.5), INK);
-    d.text((112.0, 40.0), Anchor::Start, "left out", &[]);
-    d.line(
-        (188.0, 27.0),
-        (188.0, 43.0),
-        &[("stroke", &MUTED), ("stroke-dasharray", &"4 3")],
-    );
-    let word = format!("replicates from {REPLICATES}");
-    d.text((196.0, 40.0), Anchor::Start, &word, &[]);
+    square(d, (102.0, 35.5), true);
+    d.text((112.0, 40.0), Anchor::Start, "left out, replicates", &[]);
+    square(d, (252.0, 35.5), false);
+    d.text((262.0, 40.0), Anchor::Start, "noise", &[]);
 }
 
 fn ring(d: &mut Drawing, (x, y): (f64, f64)) {
@@ -90,8 +85,14 @@ fn ring(d: &mut Drawing, (x, y): (f64, f64)) {
     );
 }
 
-fn square(d: &mut Drawing, (x, y): (f64, f64), colour: &str) {
-    d.rect((x - 4.0, y - 4.0), (8.0, 8.0), &[("fill", &colour)]);
+/// Filled where an axis replicates, else empty.
+fn square(d: &mut Drawing, (x, y): (f64, f64), replicates: bool) {
+    let fill = if replicates { INK } else { "#fff" };
+    d.rect(
+        (x - 4.0, y - 4.0),
+        (8.0, 8.0),
+        &[("fill", &fill), ("stroke", &INK), ("stroke-width", &1.4)],
+    );
 }
 
 fn one(d: &mut Drawing, space: &Space, (left, top): (f64, f64), width: f64) {
@@ -123,11 +124,6 @@ fn one(d: &mut Drawing, space: &Space, (left, top): (f64, f64), width: f64) {
             &[("fill", &MUTED)],
         );
     }
-    d.line(
-        (x.at(REPLICATES), top + 20.0),
-        (x.at(REPLICATES), bottom),
-        &[("stroke", &MUTED), ("stroke-dasharray", &"4 3")],
-    );
     d.text(
         ((x.at(-1.0) + x.at(1.0)) / 2.0, bottom + 34.0),
         Anchor::Middle,
@@ -152,7 +148,6 @@ fn one(d: &mut Drawing, space: &Space, (left, top): (f64, f64), width: f64) {
             &[("stroke", &MUTED), ("stroke-width", &1.4)],
         );
         ring(d, (x.at(axis.in_sample), y));
-        let colour = if left_out > 0.0 { INK } else { ALARM };
-        square(d, (x.at(left_out), y), colour);
+        square(d, (x.at(left_out), y), axis.replicates == Some(true));
     }
 }
