@@ -60,7 +60,7 @@ pub fn write(folder: &Path, replace: bool) -> Result<Vec<PathBuf>, PageError> {
 /// changed by hand is left as it is.
 ///
 /// # Errors
-/// [`PageError`] as for [`write`].
+/// [`PageError`] as for [`write()`].
 pub fn refresh(folder: &Path) -> Result<(), PageError> {
     if !folder.join(PAGE).exists() {
         return Ok(());

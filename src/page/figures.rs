@@ -29,7 +29,7 @@ pub enum Layout {
 
 impl Layout {
     /// Width in pixels at natural size. On a screen of 390 pixels a narrow figure is shown at its
-    /// natural size or larger, so that no letter is smaller than [`svg::SIZE`].
+    /// natural size or larger, so that no letter is smaller than `svg::SIZE`.
     #[must_use]
     pub fn width(self) -> f64 {
         match self {

@@ -90,7 +90,7 @@ impl View {
         Pair::from_fn(|from: Side| self.full.placed(from, pair[from], &[pair[from.opposite()]]))
     }
 
-    /// How far left-out counterparts come from first, for each block (see [`log_rank`]).
+    /// How far left-out counterparts come from first, for each block (see `log_rank`).
     #[must_use]
     pub fn left_out_ranks(&self, landmarks: &Landmarks, asked: &Asked) -> Vec<f64> {
         self.without
