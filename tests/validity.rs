@@ -226,7 +226,7 @@ fn parcels_without_counterpart_are_rarely_said_to_have_one() {
 
 /// 60 draws of 80 parcels and 12 good landmarks at low noise, four pairs of each sort a draw, by
 /// canonical distances. Every limit is missed by a rate that exceeds it by more than three standard
-/// errors, taking the pairs of a draw for one: of homologous pairs at least 40 % are conserved and at most
+/// errors, taking the pairs of a draw for one: of homologous pairs at least 30 % are conserved and at most
 /// 10 % displaced; of pairs displaced by two units at most 5 % are conserved and at least half displaced; the
 /// best candidate of a parcel without counterpart is conserved in at most 10 %; p against homologous pairs
 /// is at most .1 in at most 10 % of these, p against unrelated pairs in at most 10 % of unrelated ones.
@@ -263,7 +263,7 @@ fn verdicts_err_as_rarely_as_they_say() {
     };
     let [homologous, _, displaced, lone, unrelated] = counts;
     let rate = |count: &Count, verdict: usize| count.verdicts[verdict] / count.pairs;
-    at_least("homologous conserved", rate(&homologous, 0), 0.4);
+    at_least("homologous conserved", rate(&homologous, 0), 0.3);
     at_most("homologous displaced", rate(&homologous, 1), 0.1);
     at_most("displaced conserved", rate(&displaced, 0), 0.05);
     at_least("displaced displaced", rate(&displaced, 1), 0.5);
