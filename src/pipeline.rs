@@ -57,10 +57,7 @@ pub fn run(
     if watch.interrupted() {
         return Err(Interrupted.into());
     }
-    let wall = Wall {
-        threads: pool.current_num_threads(),
-        wall_seconds: started.elapsed().as_secs_f64(),
-    };
+    let wall = wall(&pool, started);
     let record = Record::new(&study, &located, wall).json();
     let tables = report::tables(&study, &located);
     let page = if study.conduct.no_report {
@@ -105,6 +102,14 @@ fn workers(study: &Study) -> Result<rayon::ThreadPool, Error> {
         .num_threads(threads)
         .build()
         .map_err(|source| Error::Threads { threads, source })
+}
+
+/// What a command took so far.
+fn wall(pool: &rayon::ThreadPool, started: Instant) -> Wall {
+    Wall {
+        threads: pool.current_num_threads(),
+        wall_seconds: started.elapsed().as_secs_f64(),
+    }
 }
 
 /// A question that was answered.
@@ -198,10 +203,7 @@ pub fn hold_out(
     let tables = report::held_out_tables(&study, &found);
     let destination = match (folder, run) {
         (Some(folder), _) => {
-            let wall = Wall {
-                threads: pool.current_num_threads(),
-                wall_seconds: started.elapsed().as_secs_f64(),
-            };
+            let wall = wall(&pool, started);
             let asked = report::held_out_json(&study, &found);
             let record = AnswerRecord::new(&study, asked, &found.warnings, &tables, wall).json();
             Destination::Folder {
@@ -254,10 +256,7 @@ pub fn rank(
     let destination = match folder {
         Some(folder) => {
             let tables = report::ranked_tables(&study, &located);
-            let wall = Wall {
-                threads: pool.current_num_threads(),
-                wall_seconds: started.elapsed().as_secs_f64(),
-            };
+            let wall = wall(&pool, started);
             let asked = serde_json::json!({"command": "rank", "candidate-sets": located.set_level});
             let record = AnswerRecord::new(&study, asked, &located.warnings, &tables, wall).json();
             Destination::Folder {
@@ -310,10 +309,7 @@ pub fn check(
     let mut tables = report::checked_tables(&study, &found);
     let destination = match (folder, run) {
         (Some(folder), _) => {
-            let wall = Wall {
-                threads: pool.current_num_threads(),
-                wall_seconds: started.elapsed().as_secs_f64(),
-            };
+            let wall = wall(&pool, started);
             let asked = serde_json::json!({"command": "check", "questions": found.len()});
             let record = AnswerRecord::new(&study, asked, &warnings, &tables, wall).json();
             Destination::Folder {

@@ -4,7 +4,7 @@
 use super::contrast::pair_of;
 use super::ground::Ground;
 use super::nearer::nearer;
-use super::ruling::{level_of, reaches, Grounds, Ruling, Verdict, SEARCH};
+use super::ruling::{level_of, reaches, Grounds, Ruling, Verdict};
 use super::selected::Selected;
 use super::separation::{conformal, Separation};
 use super::spot::strained;
@@ -219,18 +219,9 @@ fn varied(
     selected: &Selected,
     setting: String,
 ) -> Variation {
-    let level = level_of(&study.settings);
     let p_further = conformal(separation.own, &separation.left_out);
     let p_selected = selected.p(from, None);
-    let least = 1.0 / (1 + separation.left_out.len()) as f64;
-    let grounds = Grounds {
-        is_further: reaches(p_further, level),
-        is_nearer: reaches(p_nearer, level),
-        is_no_selection: reaches(p_selected, SEARCH * level),
-        is_within: separation.is_within(),
-        limit_tells: separation.limit_tells(),
-        enough_landmarks: reaches(least, level),
-    };
+    let grounds = Grounds::of(&study.settings, p_further, p_nearer, p_selected, separation);
     Variation {
         setting,
         ranks,

@@ -2,7 +2,7 @@
 
 use super::ground::Ground;
 use super::nearer::nearer;
-use super::ruling::{level_of, reaches, Grounds, Ruling, Verdict, SEARCH};
+use super::ruling::{Grounds, Ruling, Verdict};
 use super::separation::{conformal, Separation};
 use super::spot::strained;
 use super::view::View;
@@ -33,7 +33,6 @@ pub fn leans(ground: &Ground, from: Side, pair: Pair<usize>, ruling: &Ruling) ->
         view,
         ..
     } = ground;
-    let level = level_of(&study.settings);
     let material = Material::new(study.species.as_ref(), &study.landmarks);
     let width = ruling.separation.interval.1 - ruling.separation.own;
     (0..view.without.len())
@@ -54,21 +53,14 @@ pub fn leans(ground: &Ground, from: Side, pair: Pair<usize>, ruling: &Ruling) ->
                 })
                 .collect();
             let p_further = conformal(own, &left_out);
-            let least = 1.0 / (1 + left_out.len()) as f64;
             let separation = Separation {
                 own,
                 interval: (own, own + width),
                 left_out,
                 unrelated: strained(&material, chosen, &[block], &nearer.pairs),
             };
-            let grounds = Grounds {
-                is_further: reaches(p_further, level),
-                is_nearer: reaches(nearer.p, level),
-                is_no_selection: reaches(ruling.selected.p(from, Some(block)), SEARCH * level),
-                is_within: separation.is_within(),
-                limit_tells: separation.limit_tells(),
-                enough_landmarks: reaches(least, level),
-            };
+            let p_search = ruling.selected.p(from, Some(block));
+            let grounds = Grounds::of(&study.settings, p_further, nearer.p, p_search, &separation);
             Lean {
                 block,
                 verdict: grounds.verdict(),

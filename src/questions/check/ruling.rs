@@ -19,7 +19,7 @@ use crate::settings::Settings;
 /// still lie as near as homologous pairs, so that both together let through less. At twice the level
 /// 13 % of parcels without counterpart were called conserved at medium noise (docs/validity.md); at the
 /// level itself sixteen landmarks could never do with a single one that happens to find something good.
-pub const SEARCH: f64 = 1.5;
+const SEARCH: f64 = 1.5;
 /// Room for rounding in the comparison of a p-value with a level.
 const ROUNDING: f64 = 1e-9;
 
@@ -69,6 +69,27 @@ pub struct Grounds {
 }
 
 impl Grounds {
+    /// From the p-values of the three tests and the separation, whose landmarks are those of the tests.
+    #[must_use]
+    pub fn of(
+        settings: &Settings,
+        p_further: f64,
+        p_nearer: f64,
+        p_search: f64,
+        separation: &Separation,
+    ) -> Grounds {
+        let level = level_of(settings);
+        let least = 1.0 / (1 + separation.left_out.len()) as f64;
+        Grounds {
+            is_further: reaches(p_further, level),
+            is_nearer: reaches(p_nearer, level),
+            is_no_selection: reaches(p_search, SEARCH * level),
+            is_within: separation.is_within(),
+            limit_tells: separation.limit_tells(),
+            enough_landmarks: reaches(least, level),
+        }
+    }
+
     /// The verdict.
     #[must_use]
     pub fn verdict(self) -> Verdict {
@@ -141,7 +162,6 @@ pub fn rule(ground: &Ground, from: Side, pair: Pair<usize>) -> Ruling {
         asked,
         ..
     } = ground;
-    let level = level_of(&study.settings);
     let index = ground.index(pair);
     let space = located.spaces[located.choice.evidence].params;
     let material = Material::new(study.species.as_ref(), &study.landmarks);
@@ -151,14 +171,8 @@ pub fn rule(ground: &Ground, from: Side, pair: Pair<usize>) -> Ruling {
     let further = further(study, study.settings.evidence.alignment(), pair);
     let selected = Selected::of(view, &ground.lie, pair, &study.landmarks, asked);
     let blocks = study.landmarks.blocks();
-    let grounds = Grounds {
-        is_further: reaches(further.p, level),
-        is_nearer: reaches(nearer.p, level),
-        is_no_selection: reaches(selected.p(from, None), SEARCH * level),
-        is_within: separation.is_within(),
-        limit_tells: separation.limit_tells(),
-        enough_landmarks: reaches(1.0 / (1 + blocks) as f64, level),
-    };
+    let p_search = selected.p(from, None);
+    let grounds = Grounds::of(&study.settings, further.p, nearer.p, p_search, &separation);
     let ranks = |of: &dyn Fn(&Pair<u32>) -> u32| -> Vec<u32> {
         watched.ranks.iter().map(|all| of(&all[index])).collect()
     };
